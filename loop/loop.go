@@ -1,0 +1,146 @@
+package loop
+
+import (
+	"math/big"
+
+	"steadytick/internal/exact"
+	"steadytick/sdomain"
+)
+
+// Loop is a loop file that has been read and found consistent. All times are
+// exact seconds, frequencies exact rad/s or Hz as named, in *big.Rat; nothing is nil unless said.
+type Loop struct {
+	File           string // name as given, for messages and the report
+	Source         []byte // the text as read
+	Name           string // loop:
+	Output, Effort string // unit names of the signals
+	Symbols        []Symbol
+	Plant          sdomain.Model // dead_time included in Delay
+	Sensor         Sensor
+	Controller     Controller
+	Actuator       Actuator
+	Timing         Timing
+	Inputs         []Input
+	Requirements   []Requirement
+	SettlingBand   float64 // fraction of the final value, default 0.02
+}
+
+// Symbol is a named number of the symbols section.
+type Symbol struct {
+	Name   string
+	Value  *big.Rat
+	Spread *big.Rat // fraction of the value, nil when not given
+}
+
+// Sensor is the analog path from y to the sampled m, and its converter.
+type Sensor struct {
+	Model sdomain.Model // 1 when the file has no sensor
+	Bits  int           // 0: no quantization
+	Range [2]float64    // of the converter, in output units; valid when Bits > 0
+}
+
+// Controller computes
+//
+//	u = Σ_terms Π_parts(term) · (Weight·F·r − m)  +  FF·r
+//
+// with the prefilter F (1 when nil) and the feedforward FF (0 when nil).
+type Controller struct {
+	Terms       []Term
+	Prefilter   *Part
+	Feedforward *Part
+	AntiWindup  AntiWindup
+	// Digital is true when any part is a z model: there is then no continuous column.
+	Digital bool
+}
+
+// Term is one summand of the controller: a product of parts that acts on
+// Weight·(filtered r) − m. Weight is 1 for a plain model, the set-point weight for the P part of
+// a PID, 0 for a derivative on the measurement.
+type Term struct {
+	Name   string // "model", "p", "i", "d", …
+	Parts  []Part
+	Weight *big.Rat
+}
+
+// Part is one model and how it becomes digital. Exactly one of Continuous and Digital is set.
+type Part struct {
+	Continuous *sdomain.Model
+	Digital    *exact.Ratio // in z, valid at Timing.Period
+	Map        Map          // for Continuous only
+}
+
+// Map names a controller map with its parameter.
+type Map struct {
+	Method string   // tustin prewarped matched forward backward hold triangle
+	At     *big.Rat // prewarped: frequency in rad/s, else nil
+}
+
+// AntiWindup is what the integrator does while the effort is limited.
+type AntiWindup struct {
+	Kind         string   // "none", "clamp" (stop integrating), "tracking" (back-calculation)
+	TrackingTime *big.Rat // seconds, for "tracking"
+}
+
+// Actuator is what limits the effort. Nil Limits: none.
+type Actuator struct {
+	Limits *[2]float64
+	Bits   int     // 0: no quantization; needs Limits
+	Slew   float64 // effort units per second, 0: unlimited
+}
+
+// UpdateRule tells when a new effort reaches the actuator.
+type UpdateRule int
+
+const (
+	// WhenReady applies the effort conversion + compute after the sample.
+	WhenReady UpdateRule = iota
+	// NextTick applies it at the next tick.
+	NextTick
+	// After applies it at a fixed offset from the sample.
+	After
+)
+
+// Timing is the time-line of a tick, exact seconds.
+type Timing struct {
+	Period              *big.Rat
+	Conversion, Compute *big.Rat
+	Update              UpdateRule
+	UpdateAfter         *big.Rat // for After
+	Jitter              *big.Rat // peak, of the sampling instant
+}
+
+// LoopDelay is the time from the sample to the update, exact seconds.
+func (t Timing) LoopDelay() *big.Rat {
+	switch t.Update {
+	case NextTick:
+		return new(big.Rat).Set(t.Period)
+	case After:
+		return new(big.Rat).Set(t.UpdateAfter)
+	}
+	return new(big.Rat).Add(t.Conversion, t.Compute)
+}
+
+// Input is one entry of inputs.
+type Input struct {
+	Kind      string  // step ramp parabola sine move file load_step
+	Size      float64 // step, ramp (slope), parabola (acceleration), sine amplitude, load_step
+	SizeExact *big.Rat
+	Frequency *big.Rat // sine: rad/s
+	Move      *Move
+	File      string    // file: path as written
+	Times     []float64 // file: seconds, rising
+	Values    []float64 // file: r
+}
+
+// Move is a rest-to-rest motion with limits, in output units and seconds.
+type Move struct{ Distance, Velocity, Acceleration, Jerk float64 }
+
+// Requirement is `name op number unit`; Limit is in the metric's base unit
+// (s for times, rad/s for frequencies, deg, dB, % as they are).
+type Requirement struct {
+	Name  string
+	Op    string // <= >= < >
+	Limit float64
+	Text  string // as written
+	Line  int
+}
