@@ -1,0 +1,196 @@
+package exact
+
+import (
+	"math"
+	"math/big"
+)
+
+// aberth finds all roots of p, simple ones, with prec bits by the iteration
+//
+//	z_i ← z_i − N_i/(1 − N_i·Σ_{j≠i} 1/(z_i − z_j)),   N_i = p(z_i)/p′(z_i)
+//
+// (Ehrlich 1967, Aberth 1973; from memory) from points on the Newton polygon. It
+// returns real roots (imaginary part 0) and those with positive imaginary
+// part. ok is false when the inclusion discs do not prove all of them to 2^−108.
+func (p Poly) aberth(prec uint) (roots []bigC, ok bool) {
+	c := make([]*big.Float, len(p))
+	for i, v := range p {
+		c[i] = new(big.Float).SetPrec(prec).SetRat(v)
+	}
+	z := newtonPolygon(c, prec)
+	// Cubic convergence near simple roots; the way there is short from these starting points.
+	// 60 + 2·degree rounds is several times what any tried polynomial took.
+	for range 60 + 2*len(p) {
+		if aberthRound(c, z) {
+			break
+		}
+	}
+	return certify(c, z)
+}
+
+// aberthRound moves every point once; true when no point moved by more than
+// 2^(40−prec) of its size, from where one more step could only be rounding.
+func aberthRound(c []*big.Float, z []bigC) bool {
+	done := true
+	for i := range z {
+		prec := z[i].prec()
+		v, d := horner(c, z[i])
+		if v.isZero() {
+			continue
+		}
+		if d.isZero() {
+			z[i] = z[i].mul(newC(prec, 1+1.0/256, 1.0/512))
+			done = false
+			continue
+		}
+		step := v.div(d)
+		sum := newC(prec, 0, 0)
+		for j := range z {
+			if diff := z[i].sub(z[j]); j != i && !diff.isZero() {
+				sum = sum.add(newC(prec, 1, 0).div(diff))
+			}
+		}
+		if f := newC(prec, 1, 0).sub(step.mul(sum)); !f.isZero() {
+			step = step.div(f)
+		}
+		z[i] = z[i].sub(step)
+		if exponent(step) > exponent(z[i])+40-int(prec) {
+			done = false
+		}
+	}
+	return done
+}
+
+// exponent returns e with max(|re|, |im|) in [2^(e−1), 2^e); very low for 0.
+func exponent(a bigC) int {
+	e := math.MinInt32
+	for _, x := range []*big.Float{a.re, a.im} {
+		if x.Sign() != 0 {
+			e = max(e, x.MantExp(nil))
+		}
+	}
+	return e
+}
+
+// horner returns p(z) and p′(z).
+func horner(c []*big.Float, z bigC) (v, d bigC) {
+	v, d = newC(z.prec(), 0, 0), newC(z.prec(), 0, 0)
+	for k := len(c) - 1; k >= 0; k-- {
+		d = d.mul(z).add(v)
+		v = v.mul(z)
+		v.re.Add(v.re, c[k])
+	}
+	return v, d
+}
+
+// certify encloses the roots in discs about z_i of radius
+//
+//	r_i = m·|p(z_i)| / (|p_m|·Π_{j≠i} |z_i − z_j|),   m = deg p
+//
+// whose union holds all roots, a disc apart from the others exactly one (Smith,
+// J. ACM 17, 1970; from memory). ok: every r_i <= 2^−108·|z_i|, and discs eight
+// times as large are disjoint. A disc that meets the real axis then holds a real root: its root
+// and the conjugate are at most 4·r_i apart, and no other disc is so near.
+func certify(c []*big.Float, z []bigC) (roots []bigC, ok bool) {
+	m := len(z)
+	radius := make([]*big.Float, m)
+	for i := range z {
+		radius[i] = inclusion(c, z, i)
+		if radius[i] == nil {
+			return nil, false
+		}
+		limit := z[i].abs()
+		if radius[i].Cmp(limit.SetMantExp(limit, -108)) > 0 {
+			return nil, false
+		}
+	}
+	for i := range z {
+		for j := range i {
+			sum := new(big.Float).Add(radius[i], radius[j])
+			if sum.SetMantExp(sum, 3).Cmp(z[i].sub(z[j]).abs()) >= 0 {
+				return nil, false
+			}
+		}
+	}
+	count := 0
+	for i, x := range z {
+		switch {
+		case new(big.Float).Abs(x.im).Cmp(radius[i]) <= 0:
+			roots = append(roots, bigC{x.re, new(big.Float)})
+			count++
+		case x.im.Sign() > 0:
+			roots = append(roots, x)
+			count += 2
+		}
+	}
+	return roots, count == m
+}
+
+// inclusion returns a bound of r_i that includes the rounding of p(z_i), nil when two points coincide.
+func inclusion(c []*big.Float, z []bigC, i int) *big.Float {
+	m := len(z)
+	prec := z[i].prec()
+	v, _ := horner(c, z[i])
+	// Horner's rule: each of the m steps rounds by at most 8·2^−prec of the sum of absolute values.
+	size := new(big.Float).SetPrec(prec)
+	abs := z[i].abs()
+	var t big.Float
+	for k := m; k >= 0; k-- {
+		size.Mul(size, abs)
+		size.Add(size, t.Abs(c[k]))
+	}
+	size.Mul(size, big.NewFloat(float64(8*m)))
+	r := new(big.Float).Add(v.abs(), size.SetMantExp(size, -int(prec)))
+	r.Mul(r, big.NewFloat(float64(m)))
+	r.Quo(r, new(big.Float).Abs(c[m]))
+	for j := range z {
+		if j == i {
+			continue
+		}
+		d := z[i].sub(z[j])
+		if d.isZero() {
+			return nil
+		}
+		r.Quo(r, d.abs())
+	}
+	return r
+}
+
+// newtonPolygon returns starting points: for each edge of the upper convex hull
+// of (k, log2|c_k|) from k = i to k = j, j − i points on the circle of radius
+// |c_i/c_j|^(1/(j−i)) (Bini, Numerical Algorithms 13, 1996; from memory).
+func newtonPolygon(c []*big.Float, prec uint) []bigC {
+	var hull []int
+	log := make([]float64, len(c))
+	for k, v := range c {
+		if v.Sign() == 0 {
+			continue
+		}
+		var mant big.Float
+		e := v.MantExp(&mant)
+		f, _ := mant.Float64()
+		log[k] = float64(e) + math.Log2(math.Abs(f))
+		for len(hull) > 1 {
+			a, b := hull[len(hull)-2], hull[len(hull)-1]
+			if (log[b]-log[a])*float64(k-a) > (log[k]-log[a])*float64(b-a) {
+				break
+			}
+			hull = hull[:len(hull)-1]
+		}
+		hull = append(hull, k)
+	}
+	var z []bigC
+	for n := 1; n < len(hull); n++ {
+		i, j := hull[n-1], hull[n]
+		whole, frac := math.Modf((log[i] - log[j]) / float64(j-i))
+		for t := range j - i {
+			// 0.7 and n turn the circles so that no point is real and no two are in line.
+			angle := 2*math.Pi*float64(t)/float64(j-i) + 0.7 + float64(n)
+			x := newC(prec, math.Exp2(frac)*math.Cos(angle), math.Exp2(frac)*math.Sin(angle))
+			x.re.SetMantExp(x.re, int(whole))
+			x.im.SetMantExp(x.im, int(whole))
+			z = append(z, x)
+		}
+	}
+	return z
+}
