@@ -37,18 +37,30 @@ func (a Complex) Mul(b Complex) Complex {
 // Scale returns a·x.
 func (a Complex) Scale(x Float) Complex { return Complex{a.Re.Mul(x), a.Im.Mul(x)} }
 
-// Div returns a/b, scaled so that no square overflows.
+// Div returns a/b, scaled so that no square overflows. The error is within
+// 12·Eps of |a/b| (norm-wise: a part much smaller than the other may lose digits).
 func (a Complex) Div(b Complex) Complex {
 	m := math.Max(math.Abs(b.Re.Hi), math.Abs(b.Im.Hi))
-	if m == 0 || math.IsInf(m, 0) || math.IsNaN(m) {
+	n := math.Max(math.Abs(a.Re.Hi), math.Abs(a.Im.Hi))
+	if moderate(m) && moderate(n) {
+		return a.div(b)
+	}
+	if m == 0 || n == 0 || overflowed(m) || overflowed(n) {
 		return FromComplex(a.Complex128() / b.Complex128())
 	}
-	_, e := math.Frexp(m)
-	bs := Complex{b.Re.Ldexp(-e), b.Im.Ldexp(-e)}
-	n := bs.Re.Mul(bs.Re).Add(bs.Im.Mul(bs.Im))
-	q := a.Mul(bs.Conj())
-	return Complex{q.Re.Div(n).Ldexp(-e), q.Im.Div(n).Ldexp(-e)}
+	_, em := math.Frexp(m)
+	_, en := math.Frexp(n)
+	return a.Ldexp(-en).div(b.Ldexp(-em)).Ldexp(en - em)
 }
+
+func (a Complex) div(b Complex) Complex {
+	n := b.Re.Mul(b.Re).Add(b.Im.Mul(b.Im))
+	q := a.Mul(b.Conj())
+	return Complex{q.Re.Div(n), q.Im.Div(n)}
+}
+
+// Ldexp returns a·2^n.
+func (a Complex) Ldexp(n int) Complex { return Complex{a.Re.Ldexp(n), a.Im.Ldexp(n)} }
 
 // Abs returns |a| in float64, good to float64 accuracy.
 func (a Complex) Abs() float64 { return math.Hypot(a.Re.Hi, a.Im.Hi) }

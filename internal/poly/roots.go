@@ -1,0 +1,155 @@
+package poly
+
+import (
+	"errors"
+	"fmt"
+	"math"
+	"sort"
+
+	"steadytick/internal/dd"
+)
+
+// ErrZeroPolynomial says that every number is a root.
+var ErrZeroPolynomial = errors.New("the zero polynomial has no set of roots")
+
+// RangeError says that a coefficient or a root is not a finite float64 number.
+type RangeError struct {
+	What  string // "coefficient" or "root"
+	Index int
+}
+
+func (e *RangeError) Error() string {
+	return fmt.Sprintf("%s %d is outside the range of the arithmetic", e.What, e.Index)
+}
+
+// Roots returns all roots, as many as the degree, in ascending modulus, the two
+// of a conjugate pair together with the positive imaginary part first. Pairs are
+// bitwise conjugate, real roots have an imaginary part of exactly zero, and low-order
+// coefficients that are exactly zero give exact zero roots.
+//
+// The error of a simple root is about 2^-100 times its condition number
+// Σ|p_k||x|^k/(|x||p'(x)|). An m-fold root comes as a cluster with a radius of about
+// 2^(-100/m): 1e-15 for a double, 1e-10 for a triple root. Two close real roots inside
+// that radius may come as a conjugate pair and the other way round (see pair).
+//
+// Errors: ErrZeroPolynomial, *RangeError, *ConvergenceError.
+func (p Poly) Roots() ([]dd.Complex, error) {
+	p = p.Trim()
+	for i, c := range p {
+		if !c.IsFinite() {
+			return nil, &RangeError{"coefficient", i}
+		}
+	}
+	if len(p) == 0 {
+		return nil, ErrZeroPolynomial
+	}
+	low := 0
+	for p[low].Sign() == 0 {
+		low++
+	}
+	x, err := nonzeroRoots(p[low:])
+	if err != nil {
+		return nil, err
+	}
+	for i, r := range x {
+		if !r.IsFinite() || r.IsZero() {
+			return nil, &RangeError{"root", i}
+		}
+	}
+	return append(make([]dd.Complex, low), order(pair(x))...), nil
+}
+
+// nonzeroRoots is Roots for p with p[0] ≠ 0 and a non-zero leading coefficient,
+// before the pairing.
+func nonzeroRoots(p Poly) ([]dd.Complex, error) {
+	switch len(p) {
+	case 1:
+		return nil, nil
+	case 2:
+		return []dd.Complex{dd.Real(p[0].Neg().Div(p[1]))}, nil
+	case 3:
+		return quadratic(p), nil
+	}
+	h := newHorner(p)
+	s := newSweeper(Starts(p))
+	// In float64 first: its end, good or bad, is only a better start.
+	s.run(singleSweeps, h.step(s, h.single))
+	clear(s.done)
+	if !s.run(doubleSweeps, h.step(s, h.double)) {
+		return nil, s.failure(doubleSweeps)
+	}
+	return s.x, nil
+}
+
+// step is the Newton correction by an evaluator, done where the value vanishes in
+// its rounding errors.
+func (h *horner) step(s *sweeper, eval func(dd.Complex) sample) func(int) (complex128, int, bool) {
+	return func(i int) (complex128, int, bool) {
+		if s.x[i].IsZero() || !s.x[i].IsFinite() {
+			return 0, 0, true // left to the range check of Roots
+		}
+		v := eval(s.x[i])
+		return v.p / v.dp, v.e, v.atRoot()
+	}
+}
+
+// quadratic solves c + b·x + a·x² = 0, after x = 2^e·y with |c| and |a| alike,
+//
+//	q = −(b + sign(b)·√(b² − 4ac))/2,  x1 = q/a,  x2 = c/q
+//
+// so that no difference but the discriminant cancels. A double root with
+// coefficients of up to 53 bits is exact.
+func quadratic(p Poly) []dd.Complex {
+	_, ec := math.Frexp(p[0].Hi)
+	_, ea := math.Frexp(p[2].Hi)
+	e := (ec - ea) / 2
+	v := &horner{p: p, views: map[int]*view{}}
+	c := v.view(e).c
+	half := c[1].Ldexp(-1)
+	disc := half.Mul(half).Sub(c[0].Mul(c[2]))
+	if disc.Sign() < 0 {
+		re, im := half.Neg().Div(c[2]), disc.Neg().Sqrt().Div(c[2]).Abs()
+		return []dd.Complex{
+			dd.Complex{Re: re, Im: im}.Ldexp(e),
+			dd.Complex{Re: re, Im: im.Neg()}.Ldexp(e),
+		}
+	}
+	root := disc.Sqrt()
+	if half.Sign() > 0 {
+		root = root.Neg()
+	}
+	q := root.Sub(half)
+	return []dd.Complex{
+		dd.Real(q.Div(c[2]).Ldexp(e)),
+		dd.Real(c[0].Div(q).Ldexp(e)),
+	}
+}
+
+// order sorts by modulus, the pairs kept together: pair leaves them side by side.
+func order(x []dd.Complex) []dd.Complex {
+	type group struct {
+		size float64
+		x    []dd.Complex
+	}
+	var groups []group
+	for i := 0; i < len(x); {
+		n := 1
+		if x[i].Im.Sign() != 0 {
+			n = 2
+		}
+		groups = append(groups, group{x[i].Abs(), x[i : i+n]})
+		i += n
+	}
+	sort.SliceStable(groups, func(i, j int) bool {
+		a, b := groups[i], groups[j]
+		if a.size != b.size {
+			return a.size < b.size
+		}
+		return a.x[0].Re.Cmp(b.x[0].Re) < 0
+	})
+	out := make([]dd.Complex, 0, len(x))
+	for _, g := range groups {
+		out = append(out, g.x...)
+	}
+	return out
+}
