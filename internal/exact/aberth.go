@@ -11,12 +11,9 @@ import (
 //
 // (Ehrlich 1967, Aberth 1973; from memory) from points on the Newton polygon. It
 // returns real roots (imaginary part 0) and those with positive imaginary
-// part. ok is false when the inclusion discs do not prove all of them to 2^−108.
+// part. ok is false when the inclusion discs do not prove all of them (certify).
 func (p Poly) aberth(prec uint) (roots []bigC, ok bool) {
-	c := make([]*big.Float, len(p))
-	for i, v := range p {
-		c[i] = new(big.Float).SetPrec(prec).SetRat(v)
-	}
+	c := p.floats(prec)
 	z := newtonPolygon(c, prec)
 	// Cubic convergence near simple roots; the way there is short from these starting points.
 	// 60 + 2·degree rounds is several times what any tried polynomial took.
@@ -26,6 +23,15 @@ func (p Poly) aberth(prec uint) (roots []bigC, ok bool) {
 		}
 	}
 	return certify(c, z)
+}
+
+// floats rounds the coefficients to prec bits.
+func (p Poly) floats(prec uint) []*big.Float {
+	c := make([]*big.Float, len(p))
+	for i, v := range p {
+		c[i] = new(big.Float).SetPrec(prec).SetRat(v)
+	}
+	return c
 }
 
 // aberthRound moves every point once; true when no point moved by more than
@@ -88,42 +94,66 @@ func horner(c []*big.Float, z bigC) (v, d bigC) {
 //	r_i = m·|p(z_i)| / (|p_m|·Π_{j≠i} |z_i − z_j|),   m = deg p
 //
 // whose union holds all roots, a disc apart from the others exactly one (Smith,
-// J. ACM 17, 1970; from memory). ok: every r_i <= 2^−108·|z_i|, and discs eight
-// times as large are disjoint. A disc that meets the real axis then holds a real root: its root
-// and the conjugate are at most 4·r_i apart, and no other disc is so near.
+// J. ACM 17, 1970; from memory). A disc that meets the real axis while discs eight times as
+// large are disjoint holds a real root: the root and its conjugate are at most 4·r_i
+// apart, and no other root is so near. The same holds for the imaginary axis when p is even,
+// with −x̄ in place of x̄. These parts become exactly 0; ok tells that every other
+// part is proved to 2^−108 of its own size.
 func certify(c []*big.Float, z []bigC) (roots []bigC, ok bool) {
-	m := len(z)
-	radius := make([]*big.Float, m)
+	radius := make([]*big.Float, len(z))
 	for i := range z {
 		radius[i] = inclusion(c, z, i)
-		if radius[i] == nil {
-			return nil, false
-		}
-		limit := z[i].abs()
-		if radius[i].Cmp(limit.SetMantExp(limit, -108)) > 0 {
+		if radius[i] == nil || !apart(z, radius, i) {
 			return nil, false
 		}
 	}
-	for i := range z {
-		for j := range i {
-			sum := new(big.Float).Add(radius[i], radius[j])
-			if sum.SetMantExp(sum, 3).Cmp(z[i].sub(z[j]).abs()) >= 0 {
-				return nil, false
-			}
-		}
-	}
+	even := isEven(c)
 	count := 0
 	for i, x := range z {
-		switch {
-		case new(big.Float).Abs(x.im).Cmp(radius[i]) <= 0:
-			roots = append(roots, bigC{x.re, new(big.Float)})
+		r := new(big.Float).SetMantExp(radius[i], 108)
+		re, im := x.re, x.im
+		if new(big.Float).Abs(im).Cmp(radius[i]) <= 0 {
+			im = new(big.Float)
+		} else if new(big.Float).Abs(im).Cmp(r) < 0 {
+			return nil, false
+		}
+		if even && new(big.Float).Abs(re).Cmp(radius[i]) <= 0 {
+			re = new(big.Float)
+		} else if new(big.Float).Abs(re).Cmp(r) < 0 {
+			return nil, false
+		}
+		switch im.Sign() {
+		case 0:
+			roots = append(roots, bigC{re, im})
 			count++
-		case x.im.Sign() > 0:
-			roots = append(roots, x)
+		case 1:
+			roots = append(roots, bigC{re, im})
 			count += 2
 		}
 	}
-	return roots, count == m
+	return roots, count == len(z)
+}
+
+// apart tells whether disc i and the discs before it stay disjoint when eight times as large.
+func apart(z []bigC, radius []*big.Float, i int) bool {
+	for j := range i {
+		sum := new(big.Float).Add(radius[i], radius[j])
+		sum.SetMantExp(sum, 3)
+		if sum.Mul(sum, sum).Cmp(z[i].sub(z[j]).norm()) >= 0 {
+			return false
+		}
+	}
+	return true
+}
+
+// isEven tells whether all odd coefficients are zero (exactly: rounding keeps zeros).
+func isEven(c []*big.Float) bool {
+	for k := 1; k < len(c); k += 2 {
+		if c[k].Sign() != 0 {
+			return false
+		}
+	}
+	return true
 }
 
 // inclusion returns a bound of r_i that includes the rounding of p(z_i), nil when two points coincide.
@@ -142,18 +172,16 @@ func inclusion(c []*big.Float, z []bigC, i int) *big.Float {
 	size.Mul(size, big.NewFloat(float64(8*m)))
 	r := new(big.Float).Add(v.abs(), size.SetMantExp(size, -int(prec)))
 	r.Mul(r, big.NewFloat(float64(m)))
-	r.Quo(r, new(big.Float).Abs(c[m]))
+	gaps := bigC{c[m], new(big.Float).SetPrec(prec)}
 	for j := range z {
-		if j == i {
-			continue
+		if j != i {
+			gaps = gaps.mul(z[i].sub(z[j]))
 		}
-		d := z[i].sub(z[j])
-		if d.isZero() {
-			return nil
-		}
-		r.Quo(r, d.abs())
 	}
-	return r
+	if gaps.isZero() {
+		return nil
+	}
+	return r.Quo(r, gaps.abs())
 }
 
 // newtonPolygon returns starting points: for each edge of the upper convex hull

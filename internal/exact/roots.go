@@ -19,7 +19,8 @@ var ErrRoots = errors.New("roots of a polynomial cannot be told apart")
 // Poles returns the poles outside the origin, hidden ones included, each as often
 // as its multiplicity and then as bitwise equal values. Complex poles come as
 // neighbours p, p̄ that are exact conjugates, the one with positive imaginary part
-// first. Each is the exact pole correctly rounded to double-double, up to the last bit.
+// first. Real and imaginary part each are those of the exact pole to 106 bits; a part
+// that is zero is exactly zero, so a pole on the imaginary axis is told from one beside it.
 // Hidden poles are bitwise equal to the zeros they meet.
 func (r Ratio) Poles() ([]dd.Complex, error) {
 	return r.rootsOf(func(c common) int { return c.b })
@@ -51,13 +52,45 @@ func (r Ratio) rootsOf(power func(common) int) ([]dd.Complex, error) {
 }
 
 // simpleRoots returns the roots of p, which has simple roots only and p(0) = 1.
+// Roots whose negative is a root too are split off first, so that a real part that is zero can be
+// proved to be zero (certify): roots on the imaginary axis are among them.
 func (p Poly) simpleRoots() ([]dd.Complex, error) {
+	if p.Degree() < 3 {
+		return p.isolate()
+	}
+	_, _, even := p.GCD(p.mirror()).Origin()
+	if d := even.Degree(); d == 0 || d == p.Degree() {
+		return p.isolate()
+	}
+	rest, _ := p.DivMod(even)
+	a, err := even.isolate()
+	if err != nil {
+		return nil, err
+	}
+	b, err := rest.isolate()
+	return append(a, b...), err
+}
+
+// mirror returns p(−x).
+func (p Poly) mirror() Poly {
+	out := NewPoly(p...)
+	for k := 1; k < len(out); k += 2 {
+		out[k].Neg(out[k])
+	}
+	return out
+}
+
+// isolate is simpleRoots for p that is even or has no root in common with p(−x).
+func (p Poly) isolate() ([]dd.Complex, error) {
 	switch p.Degree() {
 	case 1:
 		x := new(big.Rat).Inv(p[1])
 		return roundRoots([]bigC{{toFloat(x.Neg(x)), new(big.Float)}})
 	case 2:
 		return roundRoots(p.quadratic())
+	}
+	if x, ok := p.polished(256); ok {
+		return roundRoots(x)
 	}
 	// From 256 bits on, twice as many until the inclusion discs prove every digit.
 	// A polynomial of degree m with coefficients of b bits separates its roots by at least
