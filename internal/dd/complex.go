@@ -38,7 +38,7 @@ func (a Complex) Mul(b Complex) Complex {
 func (a Complex) Scale(x Float) Complex { return Complex{a.Re.Mul(x), a.Im.Mul(x)} }
 
 // Div returns a/b, scaled so that no square overflows. The error is within
-// 12·Eps of |a/b| (norm-wise: a part much smaller than the other may lose digits).
+// 6·Eps of |a/b| (norm-wise: a part much smaller than the other may lose digits).
 func (a Complex) Div(b Complex) Complex {
 	m := math.Max(math.Abs(b.Re.Hi), math.Abs(b.Im.Hi))
 	n := math.Max(math.Abs(a.Re.Hi), math.Abs(a.Im.Hi))

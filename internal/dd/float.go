@@ -110,7 +110,13 @@ func (a Float) MulFloat(x float64) Float {
 }
 
 // Ldexp returns a·2^n.
-func (a Float) Ldexp(n int) Float { return norm(math.Ldexp(a.Hi, n), math.Ldexp(a.Lo, n)) }
+func (a Float) Ldexp(n int) Float {
+	hi := math.Ldexp(a.Hi, n)
+	if overflowed(hi) {
+		return Float{Hi: hi}
+	}
+	return norm(hi, math.Ldexp(a.Lo, n))
+}
 
 // wide and narrow bound the magnitudes whose products, quotients and rounding
 // errors (2^-106 smaller, twice) are still normal float64 numbers.
