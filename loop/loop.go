@@ -23,6 +23,9 @@ type Loop struct {
 	Inputs         []Input
 	Requirements   []Requirement
 	SettlingBand   float64 // fraction of the final value, default 0.02
+
+	open    func(path string) ([]byte, error) // as given to Parse, for WithRate and WithMap
+	options Options
 }
 
 // Symbol is a named number of the symbols section.

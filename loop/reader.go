@@ -1,0 +1,328 @@
+package loop
+
+import (
+	"fmt"
+	"math/big"
+	"sort"
+	"strings"
+)
+
+// reader turns the tree of one file into a Loop and collects what is wrong.
+type reader struct {
+	file     string
+	lines    []string
+	problems Problems
+	options  Options
+	open     func(path string) ([]byte, error)
+	evaluator
+	zUsed      place    // where the first z model stands, for messages about rates
+	timingAt   place    // where the rate stands
+	filePeriod *big.Rat // seconds as the file says, nil when that is wrong
+	period     *big.Rat // seconds in force: the option's or the file's, nil when wrong
+}
+
+func (r *reader) line(n int) string {
+	if n < 1 || n > len(r.lines) {
+		return ""
+	}
+	return r.lines[n-1]
+}
+
+// clamp moves a place into the file.
+func (r *reader) clamp(p place) place {
+	if p.line < 1 {
+		return place{}
+	}
+	p.line = min(p.line, max(1, len(r.lines)))
+	p.column = min(max(p.column, 1), len([]rune(r.line(p.line)))+1)
+	return p
+}
+
+func (r *reader) report(at place, message, expected string) { r.reportNear(at, message, expected, "") }
+
+func (r *reader) reportNear(at place, message, expected, near string) {
+	r.problems = append(r.problems, Problem{r.file, at.line, at.column, r.line(at.line), message, expected, near})
+}
+
+// inText reports an error within the text of n at its character.
+func (r *reader) inText(n *node, e *exprError) {
+	at := n.at
+	if n.exact {
+		at = r.clamp(place{n.start.line, n.start.column + e.at})
+	}
+	r.reportNear(at, e.message, e.expected, e.nearest)
+}
+
+// section is a mapping whose keys are known.
+type section struct {
+	r      *reader
+	name   string // for messages
+	at     place  // of its key, or its first key
+	values map[string]entry
+}
+
+// section reads n as a mapping with the given keys; unknown ones are reported. It is
+// never nil: a section that is not a mapping is reported and empty, and broken is true.
+func (r *reader) section(n *node, name string, keys ...string) (s *section, broken bool) {
+	s = &section{r: r, name: name, at: n.at, values: map[string]entry{}}
+	if n.broken {
+		return s, true
+	}
+	if n.kind != mapNode {
+		r.report(n.at, fmt.Sprintf("%s is %s here", name, n.kind), "a mapping with "+list(keys))
+		return s, true
+	}
+	for _, e := range n.entries {
+		if !contains(keys, e.key) {
+			expected := "one of " + list(keys)
+			if near := nearest(e.key, keys); near != "" {
+				r.reportNear(e.at, fmt.Sprintf("unknown key %s in %s", quote(e.key), name), expected, near)
+			} else {
+				r.report(e.at, fmt.Sprintf("unknown key %s in %s", quote(e.key), name), expected)
+			}
+			continue
+		}
+		s.values[e.key] = e
+	}
+	return s, false
+}
+
+func contains(list []string, s string) bool {
+	for _, x := range list {
+		if x == s {
+			return true
+		}
+	}
+	return false
+}
+
+func list(words []string) string { return strings.Join(words, ", ") }
+
+// get is the value of a key, nil when it is not there or broken. A key without a value is
+// reported.
+func (s *section) get(key string) *node {
+	e, ok := s.values[key]
+	if !ok || e.value.broken {
+		return nil
+	}
+	if e.value.kind == emptyNode {
+		s.r.report(e.at, fmt.Sprintf("%s has no value", quote(key)), "a value after the colon, or no such key")
+		return nil
+	}
+	return e.value
+}
+
+func (s *section) has(key string) bool { _, ok := s.values[key]; return ok }
+
+// keyAt is where a key stands, the section's place when it does not.
+func (s *section) keyAt(key string) place {
+	if e, ok := s.values[key]; ok {
+		return e.at
+	}
+	return s.at
+}
+
+// need is get for a key that must be there.
+func (s *section) need(key, expected string) *node {
+	if !s.has(key) {
+		s.r.report(s.at, fmt.Sprintf("%s has no %s", s.name, key), expected)
+	}
+	return s.get(key)
+}
+
+// together reports keys of which only one may stand; it returns the one, "" for none.
+func (s *section) together(keys ...string) string {
+	found := ""
+	for _, k := range keys {
+		if !s.has(k) {
+			continue
+		}
+		if found != "" {
+			first, second := s.keyAt(found), s.keyAt(k)
+			if later(first, second) {
+				second = first
+			}
+			s.r.report(second, fmt.Sprintf("%s and %s exclude each other", found, k), "one of "+list(keys))
+			continue
+		}
+		found = k
+	}
+	return found
+}
+
+func later(a, b place) bool { return a.line > b.line || a.line == b.line && a.column > b.column }
+
+// text reads n as a single value. A nil n gives false without a word.
+func (r *reader) text(n *node, what string) (string, bool) {
+	if n == nil || n.broken {
+		return "", false
+	}
+	if n.kind != textNode {
+		r.report(n.at, fmt.Sprintf("%s is %s here", what, n.kind), "a single value")
+		return "", false
+	}
+	return n.text, true
+}
+
+// choice reads one of a few words.
+func (r *reader) choice(n *node, what string, words ...string) (string, bool) {
+	t, ok := r.text(n, what)
+	if !ok {
+		return "", false
+	}
+	if !contains(words, t) {
+		r.reportNear(n.at, fmt.Sprintf("%s is not a %s", quote(t), what), "one of "+list(words), nearest(t, words))
+		return "", false
+	}
+	return t, true
+}
+
+// constant reads a number or an expression of numbers and symbols.
+func (r *reader) constant(n *node, what string) (*big.Rat, bool) {
+	v, name, ok := r.expression(n, what)
+	if !ok {
+		return nil, false
+	}
+	if name != constant || v.c == nil {
+		r.report(n.at, fmt.Sprintf("%s depends on %s", what, name), "a number, or an expression of symbols")
+		return nil, false
+	}
+	if !inRange(v.c) {
+		r.report(n.at, fmt.Sprintf("%s is outside the range of numbers", what), "0, or a magnitude from 1e-200 to 1e200")
+		return nil, false
+	}
+	return v.c, true
+}
+
+// Bounds of the magnitude of every number that leaves the reader: the figures computed
+// from it must stay in the range of a float64, 1e±308.
+var smallest, largest = power10(-200), power10(200)
+
+func inRange(v *big.Rat) bool {
+	a := new(big.Rat).Abs(v)
+	return a.Sign() == 0 || a.Cmp(smallest) >= 0 && a.Cmp(largest) <= 0
+}
+
+// float is constant as a float64.
+func (r *reader) float(n *node, what string) (float64, bool) {
+	c, ok := r.constant(n, what)
+	if !ok {
+		return 0, false
+	}
+	f, _ := c.Float64()
+	return f, true
+}
+
+// whole reads an integer from low to high.
+func (r *reader) whole(n *node, what string, low, high int64) (int, bool) {
+	c, ok := r.constant(n, what)
+	if !ok {
+		return 0, false
+	}
+	if !c.IsInt() || c.Cmp(big.NewRat(low, 1)) < 0 || c.Cmp(big.NewRat(high, 1)) > 0 {
+		r.report(n.at, fmt.Sprintf("%s %s is not allowed", what, quote(n.text)), fmt.Sprintf("a whole number from %d to %d", low, high))
+		return 0, false
+	}
+	return int(c.Num().Int64()), true
+}
+
+// expression reads and computes the expression of n.
+func (r *reader) expression(n *node, what string) (v result, name variable, ok bool) {
+	t, ok := r.text(n, what)
+	if !ok {
+		return result{}, "", false
+	}
+	if word, bad := notFinite(t); bad {
+		r.report(n.at, fmt.Sprintf("%s is not a number that can be computed with", quote(word)), numberForm)
+		return result{}, "", false
+	}
+	e, err := parseExpression(t)
+	if err != nil {
+		r.inText(n, err)
+		return result{}, "", false
+	}
+	name, errs := r.names(e)
+	for _, err := range errs {
+		r.inText(n, err)
+	}
+	if len(errs) > 0 {
+		return result{}, "", false
+	}
+	if v, err = r.eval(e); err != nil {
+		r.inText(n, err)
+		return result{}, "", false
+	}
+	return v, name, true
+}
+
+// notFinite knows the ways to write infinity and "not a number".
+func notFinite(t string) (string, bool) {
+	word := strings.Trim(strings.ToLower(strings.TrimSpace(t)), "+-.")
+	return strings.TrimSpace(t), word == "inf" || word == "nan" || word == "infinity"
+}
+
+// quantity reads a number with a unit of one dimension, in the base unit.
+func (r *reader) quantity(n *node, what string, dim dimension, example string) (*big.Rat, bool) {
+	t, ok := r.text(n, what)
+	if !ok {
+		return nil, false
+	}
+	q, err := parseQuantity(t)
+	if err == nil {
+		var v *big.Rat
+		if v, err = q.inUnits(dim, example); err == nil {
+			return v, true
+		}
+	}
+	r.inText(n, err)
+	return nil, false
+}
+
+// seconds reads a time that is not negative.
+func (r *reader) seconds(n *node, what string) (*big.Rat, bool) {
+	t, ok := r.quantity(n, what, timeDim, "500 us")
+	if !ok {
+		return nil, false
+	}
+	if fault := checkSeconds(t); fault != "" {
+		r.report(n.at, fmt.Sprintf("%s: %s", what, fault), "0 s, or a time from 1e-15 s to 1e9 s")
+		return nil, false
+	}
+	return t, true
+}
+
+// positiveSeconds reads a time above zero.
+func (r *reader) positiveSeconds(n *node, what string) (*big.Rat, bool) {
+	t, ok := r.seconds(n, what)
+	if ok && t.Sign() == 0 {
+		r.report(n.at, what+" is zero", "a time above zero")
+		return nil, false
+	}
+	return t, ok
+}
+
+// angular reads a frequency above zero, in rad/s.
+func (r *reader) angular(n *node, what string) (*big.Rat, bool) {
+	f, ok := r.quantity(n, what, frequencyDim, "40 Hz")
+	if !ok {
+		return nil, false
+	}
+	if f.Sign() <= 0 || f.Cmp(power10(-12)) < 0 || f.Cmp(power10(15)) > 0 {
+		r.report(n.at, what+" is out of range", "a frequency from 1e-12 Hz to 1e15 Hz")
+		return nil, false
+	}
+	return radians(f), true
+}
+
+// radians converts Hz to rad/s, exact for a frequency that was written in rad/s.
+func radians(hz *big.Rat) *big.Rat { return new(big.Rat).Mul(hz, twoPi) }
+
+// names of a map in alphabetical order, for messages that must not vary.
+func sortedKeys[V any](m map[string]V) []string {
+	var out []string
+	for k := range m {
+		out = append(out, k)
+	}
+	sort.Strings(out)
+	return out
+}
