@@ -5,24 +5,47 @@ import (
 	"math/big"
 )
 
-// aberth finds all roots of p, simple ones, with prec bits by the iteration
+// maxWork bounds the search: rounds·degree² at 256 bits, some seconds. Ordinary polynomials that come
+// here at all take a hundredth of it; only coefficients made for it exhaust it.
+const maxWork = 5e5
+
+// aberth finds all roots of p, simple ones, by the iteration
 //
 //	z_i ← z_i − N_i/(1 − N_i·Σ_{j≠i} 1/(z_i − z_j)),   N_i = p(z_i)/p′(z_i)
 //
-// (Ehrlich 1967, Aberth 1973; from memory) from points on the Newton polygon. It
-// returns real roots (imaginary part 0) and those with positive imaginary
-// part. ok is false when the inclusion discs do not prove all of them (certify).
-func (p Poly) aberth(prec uint) (roots []bigC, ok bool) {
-	c := p.floats(prec)
-	z := newtonPolygon(c, prec)
-	// Cubic convergence near simple roots; the way there is short from these starting points.
-	// 60 + 2·degree rounds is several times what any tried polynomial took.
-	for range 60 + 2*len(p) {
-		if aberthRound(c, z) {
-			break
+// (Ehrlich 1967, Aberth 1973; from memory) from start or, where that is nil, from points on the Newton
+// polygon, with 256 bits and then twice as many until the inclusion discs prove every digit. It
+// returns real roots (imaginary part 0) and those with positive imaginary part.
+//
+// A polynomial of degree m with coefficients of b bits separates its roots by at
+// least 2^−(about m·(b + log2 m)) (Mahler, 1964; from memory), so this ends; ok is false when maxWork ends it first.
+func (p Poly) aberth(start []bigC) (roots []bigC, ok bool) {
+	z := append([]bigC(nil), start...)
+	if start == nil {
+		z = newtonPolygon(p.floats(256), 256)
+	}
+	work := 0.0
+	for prec := uint(256); ; prec *= 2 {
+		c := p.floats(prec)
+		for i := range z {
+			z[i] = z[i].at(prec)
+		}
+		// One unit is a round's cost for two points; below 1024 bits allocation is the most of it.
+		unit := float64(len(z)*len(z)) * (1 + float64(prec*prec)/(1<<20))
+		// Cubic convergence near simple roots, one bit and a half a round near
+		// clusters, which matter as far as half the digits.
+		for range 60 + 2*len(p) + int(prec) {
+			if work += unit; work > maxWork {
+				return nil, false
+			}
+			if aberthRound(c, z) {
+				break
+			}
+		}
+		if roots, ok = certify(c, z); ok {
+			return roots, true
 		}
 	}
-	return certify(c, z)
 }
 
 // floats rounds the coefficients to prec bits.
@@ -34,14 +57,14 @@ func (p Poly) floats(prec uint) []*big.Float {
 	return c
 }
 
-// aberthRound moves every point once; true when no point moved by more than
-// 2^(40−prec) of its size, from where one more step could only be rounding.
+// aberthRound moves every point once; true when every one has come to rest: its step is
+// below 2^(40−prec) of its size, or its value is nothing but rounding.
 func aberthRound(c []*big.Float, z []bigC) bool {
 	done := true
 	for i := range z {
 		prec := z[i].prec()
 		v, d := horner(c, z[i])
-		if v.isZero() {
+		if v.norm().Cmp(square(noise(c, z[i]))) <= 0 {
 			continue
 		}
 		if d.isZero() {
@@ -65,6 +88,23 @@ func aberthRound(c []*big.Float, z []bigC) bool {
 		}
 	}
 	return done
+}
+
+func square(x *big.Float) *big.Float { return new(big.Float).Mul(x, x) }
+
+// noise bounds the rounding error of horner's value at z: each of the m steps
+// rounds by less than 8·2^−prec of Σ|c_k||z|^k, and so do the coefficients.
+func noise(c []*big.Float, z bigC) *big.Float {
+	abs := new(big.Float).Abs(z.re)
+	var t big.Float
+	abs.Add(abs, t.Abs(z.im)) // at least |z|
+	size := new(big.Float).SetPrec(64)
+	for k := len(c) - 1; k >= 0; k-- {
+		size.Mul(size, abs)
+		size.Add(size, t.Abs(c[k]))
+	}
+	size.Mul(size, big.NewFloat(float64(8*len(c))))
+	return size.SetMantExp(size, -int(z.prec()))
 }
 
 // exponent returns e with max(|re|, |im|) in [2^(e−1), 2^e); very low for 0.
@@ -161,16 +201,7 @@ func inclusion(c []*big.Float, z []bigC, i int) *big.Float {
 	m := len(z)
 	prec := z[i].prec()
 	v, _ := horner(c, z[i])
-	// Horner's rule: each of the m steps rounds by at most 8·2^−prec of the sum of absolute values.
-	size := new(big.Float).SetPrec(prec)
-	abs := z[i].abs()
-	var t big.Float
-	for k := m; k >= 0; k-- {
-		size.Mul(size, abs)
-		size.Add(size, t.Abs(c[k]))
-	}
-	size.Mul(size, big.NewFloat(float64(8*m)))
-	r := new(big.Float).Add(v.abs(), size.SetMantExp(size, -int(prec)))
+	r := new(big.Float).Add(v.abs(), noise(c, z[i]))
 	r.Mul(r, big.NewFloat(float64(m)))
 	gaps := bigC{c[m], new(big.Float).SetPrec(prec)}
 	for j := range z {

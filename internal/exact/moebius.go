@@ -22,7 +22,8 @@ func (r Ratio) Moebius(a, b, c, d *big.Rat) (Ratio, error) {
 	if r.IsZero() {
 		return Const(new(big.Rat)), nil
 	}
-	up, down := NewPoly(b, a), NewPoly(d, c)
+	n, _ := Poly{b, a, d, c}.integers() // a common factor of all four changes nothing
+	up, down := intPair(n[0], n[1]), intPair(n[2], n[3])
 	out := Ratio{Gain: new(big.Rat).Set(r.Gain)}
 	out = out.times(up, r.OriginZeros).times(up, -r.OriginPoles)
 	for _, f := range r.Num {
@@ -34,17 +35,48 @@ func (r Ratio) Moebius(a, b, c, d *big.Rat) (Ratio, error) {
 	return out.times(down, r.RelativeDegree()), nil
 }
 
-// homogeneous returns Σ p_k·up^k·down^(m−k), m the degree of p.
+func intPair(c0, c1 *big.Int) Poly {
+	return NewPoly(new(big.Rat).SetInt(c0), new(big.Rat).SetInt(c1))
+}
+
+// homogeneous returns Σ p_k·up^k·down^(m−k), m the degree of p; up and down have
+// integer coefficients and degree at most 1. All steps are in integers, over one denominator.
 func (p Poly) homogeneous(up, down Poly) Poly {
-	p = p.trim()
-	m := len(p) - 1
-	var s Poly
-	power := IntPoly(1) // down^(m−k)
-	for k := m; k >= 0; k-- {
-		s = s.Mul(up).Add(power.Scale(p[k]))
-		power = power.Mul(down)
+	a, den := p.trim().integers()
+	u, _ := up.integers()
+	v, _ := down.integers()
+	var s []*big.Int
+	power := []*big.Int{big.NewInt(1)} // down^(m−k)
+	for k := len(a) - 1; k >= 0; k-- {
+		s = mulLinear(s, u)
+		for len(s) < len(power) {
+			s = append(s, new(big.Int))
+		}
+		for i, c := range power {
+			s[i].Add(s[i], new(big.Int).Mul(c, a[k]))
+		}
+		power = mulLinear(power, v)
 	}
-	return s
+	out := make(Poly, len(s))
+	for i, c := range s {
+		out[i] = new(big.Rat).SetFrac(c, den)
+	}
+	return out.trim()
+}
+
+// mulLinear returns a·b for b of one or two coefficients.
+func mulLinear(a, b []*big.Int) []*big.Int {
+	out := make([]*big.Int, len(a)+len(b)-1)
+	for i := range out {
+		out[i] = new(big.Int)
+	}
+	var t big.Int
+	for i, c := range a {
+		for j, d := range b {
+			out[i+j].Add(out[i+j], t.Mul(c, d))
+		}
+	}
+	return out
 }
 
 // times returns r·p^n for n of either sign, p not zero.

@@ -27,19 +27,21 @@ type Ratio struct {
 	Num, Den                 []Factor
 }
 
-// MaxOrder and MaxBits bound what Check accepts: far more than any loop needs
-// (20th order, 17 digits), and low enough that one operation takes under a second.
+// MaxOrder, MaxBits and MaxTotalBits bound what Check accepts: far more than any
+// loop needs (40 states of 17 digits take 2300 bits a coefficient, 100 000 in
+// all), and low enough that one operation takes about a second at most.
 const (
-	MaxOrder = 100
-	MaxBits  = 1 << 13 // bits of a numerator or denominator of one coefficient, 2466 digits
+	MaxOrder     = 100
+	MaxBits      = 1 << 13 // of a numerator or denominator of one coefficient, 2466 digits
+	MaxTotalBits = 1 << 17 // of all coefficients
 )
 
 // ErrZeroDivision is the division by the zero function.
 var ErrZeroDivision = errors.New("division by zero")
 
-// SizeError says that a function is beyond MaxOrder or MaxBits.
+// SizeError says that a function is beyond MaxOrder, MaxBits or MaxTotalBits.
 type SizeError struct {
-	What       string // "order" or "bits of a coefficient"
+	What       string // "order", "bits of a coefficient", …
 	Got, Limit int
 }
 
@@ -137,12 +139,12 @@ func (r Ratio) NumPoly() Poly {
 func (r Ratio) DenPoly() Poly { return expand(r.Den).Shift(r.OriginPoles) }
 
 // Check returns a *SizeError when r has more than MaxOrder poles or zeros, or a
-// coefficient of more than MaxBits bits.
+// coefficient of more than MaxBits bits, or MaxTotalBits in all.
 func (r Ratio) Check() error {
 	if n := max(r.Order(), r.OriginZeros+degree(r.Num)); n > MaxOrder {
 		return &SizeError{"order", n, MaxOrder}
 	}
-	n := 0
+	n, total := 0, 0
 	if r.Gain != nil {
 		n = ratBits(r.Gain)
 	}
@@ -150,11 +152,15 @@ func (r Ratio) Check() error {
 		for _, f := range list {
 			for _, c := range f.P {
 				n = max(n, ratBits(c))
+				total += c.Num().BitLen() + c.Denom().BitLen()
 			}
 		}
 	}
-	if n > MaxBits {
+	switch {
+	case n > MaxBits:
 		return &SizeError{"bits of a coefficient", n, MaxBits}
+	case total > MaxTotalBits:
+		return &SizeError{"bits of all coefficients", total, MaxTotalBits}
 	}
 	return nil
 }

@@ -13,7 +13,7 @@ import (
 var ErrRange = errors.New("a number of the model is outside the range of double precision")
 
 // ErrRoots says that the roots could not be told apart at the highest
-// precision. It takes coefficients of thousands of digits.
+// precision. It takes coefficients of thousands of digits, or made for it.
 var ErrRoots = errors.New("roots of a polynomial cannot be told apart")
 
 // Poles returns the poles outside the origin, hidden ones included, each as often
@@ -89,17 +89,12 @@ func (p Poly) isolate() ([]dd.Complex, error) {
 	case 2:
 		return roundRoots(p.quadratic())
 	}
-	if x, ok := p.polished(256); ok {
-		return roundRoots(x)
+	x, start, ok := p.polished(256)
+	if !ok {
+		x, ok = p.aberth(start)
 	}
-	// From 256 bits on, twice as many until the inclusion discs prove every digit.
-	// A polynomial of degree m with coefficients of b bits separates its roots by at least
-	// 2^−(about m·(b + log2 m)) (Mahler, 1964; from memory), so this ends for
-	// what Check accepts; ordinary models need the first round only.
-	for prec := uint(256); prec <= 1<<15; prec *= 2 {
-		if x, ok := p.aberth(prec); ok {
-			return roundRoots(x)
-		}
+	if ok {
+		return roundRoots(x)
 	}
 	return nil, fmt.Errorf("%w: degree %d", ErrRoots, p.Degree())
 }
