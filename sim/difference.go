@@ -1,0 +1,152 @@
+package sim
+
+// blockState is a block of a controller while it runs.
+type blockState struct {
+	*block
+	x, dx []float64
+	i     []float64 // integrators, i[0] goes to the output
+	queue []float64 // inputs on their way, when the block has a delay
+	head  int
+	in    float64 // input of this tick, after the delay
+}
+
+func (b *block) start() blockState {
+	return blockState{
+		block: b,
+		x:     make([]float64, b.chain.n), dx: make([]float64, b.chain.n),
+		i: make([]float64, len(b.rho)), queue: make([]float64, b.ticks),
+	}
+}
+
+// output is the output at this tick for the input e of this tick.
+func (s *blockState) output(e float64) float64 {
+	if len(s.queue) > 0 {
+		e, s.queue[s.head] = s.queue[s.head], e
+		if s.head++; s.head == len(s.queue) {
+			s.head = 0
+		}
+	}
+	s.in = e
+	sum := s.chain.d * e
+	for j, c := range s.chain.c {
+		sum += c * s.x[j]
+	}
+	if len(s.i) > 0 {
+		sum += s.i[0]
+	}
+	return sum
+}
+
+// next carries the states without the integrators to the next tick,
+//
+//	x ← x + T·(A·x + B·in)
+func (s *blockState) next(period float64) {
+	n := s.chain.n
+	for i := range s.dx {
+		sum := s.chain.b[i] * s.in
+		for j, a := range s.chain.a[i*n : (i+1)*n] {
+			sum += a * s.x[j]
+		}
+		s.dx[i] = sum
+	}
+	for i, v := range s.dx {
+		s.x[i] += period * v
+	}
+}
+
+// slope is what the last integrator integrates, per second.
+func (s *blockState) slope() float64 {
+	switch len(s.i) {
+	case 0:
+		return 0
+	case 1:
+		return s.rho[0] * s.in
+	}
+	return s.rho[0]*s.in + s.i[1]
+}
+
+// integrate carries the integrators to the next tick,
+//
+//	i[j] ← i[j] + T·(ρ[j]·in + i[j+1])
+//
+// extra is added to the last one; with hold, the increments stay away (those of the
+// last one only when all is true).
+func (s *blockState) integrate(period, extra float64, hold, all bool) {
+	for j := range s.i {
+		up := 0.0
+		if j+1 < len(s.i) {
+			up = s.i[j+1]
+		}
+		if !hold || j == 0 && !all {
+			s.i[j] += period * (s.rho[j]*s.in + up)
+		}
+	}
+	if len(s.i) > 0 {
+		s.i[0] += extra
+	}
+}
+
+// controllerState is a controller while it runs.
+type controllerState struct {
+	*Controller
+	terms                  []blockState
+	prefilter, feedforward *blockState
+}
+
+func (c *Controller) start() *controllerState {
+	s := &controllerState{Controller: c, terms: make([]blockState, len(c.terms))}
+	for i := range c.terms {
+		s.terms[i] = c.terms[i].start()
+	}
+	if c.prefilter != nil {
+		b := c.prefilter.start()
+		s.prefilter = &b
+	}
+	if c.feedforward != nil {
+		b := c.feedforward.start()
+		s.feedforward = &b
+	}
+	return s
+}
+
+// effort returns the computed effort v of this tick, before any limit.
+func (s *controllerState) effort(r float64, m []float64) float64 {
+	v := 0.0
+	if s.feedforward != nil {
+		v = s.feedforward.output(r)
+		s.feedforward.next(s.period)
+	}
+	if s.prefilter != nil {
+		in := r
+		r = s.prefilter.output(in)
+		s.prefilter.next(s.period)
+	}
+	for k := range s.terms {
+		v += s.terms[k].output(s.weights[k]*r - m[s.reads[k]])
+	}
+	return v
+}
+
+// advance goes on to the next tick, knowing the computed effort v and the held one u.
+func (s *controllerState) advance(v, u float64) {
+	if s.antiWindup == NoAntiWindup {
+		for k := range s.terms {
+			s.terms[k].next(s.period)
+		}
+		return
+	}
+	slope := 0.0
+	for k := range s.terms {
+		slope += s.terms[k].slope()
+	}
+	outward := v > u && slope > 0 || v < u && slope < 0
+	for k := range s.terms {
+		t := &s.terms[k]
+		t.next(s.period)
+		if s.antiWindup == Clamp {
+			t.integrate(s.period, 0, outward, true)
+		} else {
+			t.integrate(s.period, s.trackGain*(u-v), outward, false)
+		}
+	}
+}

@@ -1,0 +1,26 @@
+// Package sim runs a loop in time: the sampled loop along the time-line of a
+// tick (Run), and the continuous loop as designed beside it (Twin).
+//
+// The time-line of a tick, for each task on its own period:
+//
+//	k·T + offset + jitter   sample r and the outputs (quantize m)
+//	  + delay               the effort computed from them reaches the actuator
+//	                        (limited, slewed, quantized), held until the next one
+//	  + dead time           the plant feels it
+//
+// At equal instants the order is: the outputs are sampled; the tasks that sample there
+// compute, in the order of the list; new efforts are applied; the plant feels what
+// arrives. So a sample at k·T sees the plant before the effort computed from it, and before
+// the effort of the tick before that is due at the same instant.
+//
+// Between events the plant is linear with a held input and is propagated exactly, by the matrix
+// exponential in increments x += (Φ−I)·x + Γ·u; dead times and loop delays are queues, so
+// 10 000 ticks of them cost what one costs. Instants are exact rational phases within a
+// common period, so nothing drifts: the time printed is k·T from the integer k.
+//
+// Everything starts at rest at t = 0: signals, states and efforts are 0 before.
+//
+// Conventions: times in seconds, signals in the loop's own units, frequencies in rad/s.
+// Matrices are rows of rows. Limits: a run stops, and says so, when a signal passes
+// 1e100; total order 120.
+package sim

@@ -1,0 +1,352 @@
+package sim
+
+import (
+	"fmt"
+	"math"
+	"math/big"
+)
+
+// tooLarge is where a run stops: far beyond any machine, far from overflow, so that no
+// Inf or NaN comes out of an unstable loop.
+const tooLarge = 1e100
+
+// probe is one output as a row over states and columns.
+type probe struct {
+	c, d   []float64
+	direct bool // some d is not 0
+}
+
+func (p *probe) value(x, w []float64) float64 {
+	sum := 0.0
+	for i, c := range p.c {
+		sum += c * x[i]
+	}
+	if p.direct {
+		for i, d := range p.d {
+			sum += d * w[i]
+		}
+	}
+	return sum
+}
+
+// taskState is a task while it runs.
+type taskState struct {
+	*Task
+	state     *controllerState
+	act       actuator
+	reads     []*probe
+	m         []float64
+	skip      int64 // instants of the cycle before the first sample
+	efforts   efforts
+	applied   int64 // number of the sample whose effort is applied next
+	held      float64
+	reference cursor
+}
+
+// efforts keeps the efforts on their way, by the number of their sample.
+type efforts struct {
+	ring  []float64
+	count int64 // samples so far
+}
+
+// push stores the next effort; oldest is the lowest number still wanted.
+func (q *efforts) push(u float64, oldest int64) {
+	if oldest = max(oldest, 0); q.count-oldest >= int64(len(q.ring)) {
+		grown := make([]float64, max(8, 2*len(q.ring)))
+		for k := oldest; k < q.count; k++ {
+			grown[k%int64(len(grown))] = q.at(k)
+		}
+		q.ring = grown
+	}
+	q.ring[q.count%int64(len(q.ring))] = u
+	q.count++
+}
+
+func (q *efforts) at(k int64) float64 { return q.ring[k%int64(len(q.ring))] }
+
+// engine is a run in progress.
+type engine struct {
+	cfg     *Config
+	layout  *layout
+	flow    *flow
+	key     string
+	outputs []probe
+	y, m    *probe
+	x, w    []float64
+	dx      []float64
+	change  float64 // earliest change of piece of a driven column
+	tasks   []taskState
+	line    timeline
+	r       cursor
+
+	points *decimator
+	ticks  *decimator
+	sum    errorSum
+	effort float64 // largest magnitude held by the first task
+	watch  watcher
+}
+
+// watcher looks at the run between its points, for the step figures. A segment starts at t and is
+// h seconds long; the state at its start is given, before it is propagated.
+type watcher interface {
+	segment(e *engine, t, h float64)
+	done(e *engine, t float64)
+}
+
+func newEngine(cfg *Config) (*engine, error) {
+	if err := cfg.check(); err != nil {
+		return nil, err
+	}
+	s := cfg.System
+	e := &engine{cfg: cfg, layout: newLayout(cfg), tasks: make([]taskState, len(cfg.Tasks))}
+	e.flow, e.key = e.layout.flow(s)
+	e.x, e.dx, e.w = make([]float64, s.n), make([]float64, s.n), make([]float64, e.layout.columns)
+	for k := range s.outputs {
+		p := probe{c: s.c[k*s.n : (k+1)*s.n], d: e.layout.through(s, k)}
+		for _, v := range p.d {
+			p.direct = p.direct || v != 0
+		}
+		e.outputs = append(e.outputs, p)
+	}
+	e.y, e.m = &e.outputs[0], &e.outputs[cfg.Tasks[0].Reads[0]]
+	e.r = cursor{signal: &cfg.Reference}
+	for i := range e.tasks {
+		e.tasks[i] = e.newTask(&cfg.Tasks[i])
+	}
+	line, err := newCycle(e)
+	if err != nil {
+		return nil, err
+	}
+	perTick := int64(roundParts(cfg.PointsPerTick)) + 8
+	if line != nil {
+		e.line = line
+		perTick = line.points(e)
+	} else {
+		d := newAgenda(e)
+		e.line = d
+		perTick = d.points(e, perTick)
+	}
+	e.points = newDecimator(cfg.Ticks*perTick+1, cfg.MaxPoints)
+	e.ticks = newDecimator(cfg.Ticks+1, cfg.MaxPoints)
+	e.change = math.Inf(1)
+	for i := range e.layout.driven {
+		e.change = math.Min(e.change, e.layout.driven[i].change)
+	}
+	return e, nil
+}
+
+func (e *engine) newTask(t *Task) taskState {
+	s := taskState{
+		Task: t, state: t.Controller.start(), m: make([]float64, len(t.Reads)),
+		act:       actuator{limits: t.Limits, converter: t.effortConverter(), rise: math.Inf(1)},
+		reference: cursor{signal: &e.cfg.Reference},
+	}
+	if t.Slew > 0 {
+		s.act.rise = t.Slew * t.Controller.period
+	}
+	s.act.last = t.Limits.clip(0)
+	for _, k := range t.Reads {
+		s.reads = append(s.reads, &e.outputs[k])
+	}
+	return s
+}
+
+// interval prepares what follows an instant.
+func (e *engine) interval(in *instant, gap *big.Rat) error {
+	in.length, _ = gap.Float64()
+	e.divide(in)
+	if in.length == 0 {
+		return nil
+	}
+	part := new(big.Rat).Quo(gap, new(big.Rat).SetInt64(int64(in.parts)))
+	var err error
+	in.step, err = e.cfg.System.step(e.flow, e.key, part)
+	return err
+}
+
+// divide chooses the points of an interval by its share of a tick.
+func (e *engine) divide(in *instant) {
+	share := in.length / e.tasks[0].Controller.period
+	in.parts = roundParts(int(math.Round(share * float64(e.cfg.PointsPerTick))))
+	in.weights = quadrature(in.parts, in.length)
+}
+
+// act does what is due at an instant.
+func (e *engine) act(in *instant) {
+	if in.t >= e.change {
+		e.turn(in.t)
+	}
+	for _, i := range in.samples {
+		t := &e.tasks[i]
+		if t.skip > 0 {
+			t.skip--
+			continue
+		}
+		for k, p := range t.reads {
+			t.m[k] = t.Measure.Value(p.value(e.x, e.w))
+		}
+		e.compute(i, t, in.t)
+	}
+	for _, i := range in.updates {
+		e.apply(&e.tasks[i])
+	}
+	for _, k := range in.arrive {
+		h := &e.layout.held[k]
+		if q := &e.tasks[h.task].efforts; h.next >= 0 && h.next < q.count {
+			e.w[h.column] = q.at(h.next)
+		}
+		h.next++
+	}
+}
+
+// compute is the controller of task i with what it has sampled at t.
+func (e *engine) compute(i int, t *taskState, now float64) {
+	var r float64
+	if t.Reference > 0 {
+		r = e.tasks[t.Reference-1].held
+	} else {
+		r = t.reference.at(now)
+	}
+	v := t.state.effort(r, t.m)
+	u := t.act.hold(v)
+	t.state.advance(v, t.act.last)
+	oldest := t.applied
+	for k := range e.layout.held {
+		if h := &e.layout.held[k]; h.task == i {
+			oldest = min(oldest, h.next)
+		}
+	}
+	t.efforts.push(u, oldest)
+	if orZeroSign(t.Delay) == 0 {
+		t.held = u // tasks later in the list see it at once
+	}
+	if i == 0 {
+		e.ticks.add(row{t: now, r: r, y: e.y.value(e.x, e.w), m: t.m[0], u: u})
+	}
+}
+
+// apply makes the next effort of a task the held one.
+func (e *engine) apply(t *taskState) {
+	if t.applied >= 0 && t.applied < t.efforts.count {
+		t.held = t.efforts.at(t.applied)
+		if t == &e.tasks[0] {
+			e.effort = math.Max(e.effort, math.Abs(t.held))
+		}
+	}
+	t.applied++
+}
+
+func orZeroSign(r *big.Rat) int { return orZero(r).Sign() }
+
+// turn sets the driven columns for the instant t.
+func (e *engine) turn(t float64) {
+	e.change = math.Inf(1)
+	for i := range e.layout.driven {
+		d := &e.layout.driven[i]
+		d.start(t, e.w)
+		e.change = math.Min(e.change, d.change)
+	}
+}
+
+// propagate goes from t to end, h seconds, p being the prepared step of h or nil.
+func (e *engine) propagate(p *advance, t, h float64) error {
+	end := t + h
+	// A change of piece within a rounding of the end waits for the next step.
+	const near = 1e-12
+	for last := end - near*h; e.change < last; p = nil {
+		if c := e.change; c > t {
+			if err := e.free(nil, t, c-t); err != nil {
+				return err
+			}
+			t = c
+			h = end - t
+		}
+		e.turn(t)
+	}
+	if err := e.free(p, t, h); err != nil {
+		return err
+	}
+	for i := range e.layout.driven {
+		if d := &e.layout.driven[i]; d.width > 1 {
+			d.start(end, e.w)
+		}
+	}
+	return nil
+}
+
+// free propagates over h seconds without a change of the inputs.
+func (e *engine) free(p *advance, t, h float64) error {
+	if e.watch != nil {
+		e.watch.segment(e, t, h)
+	}
+	if p != nil {
+		p.apply(e.x, e.w, e.dx)
+		return nil
+	}
+	return e.flow.advanceBy(e.x, e.w, h)
+}
+
+// look records the point at t and returns the tracking error.
+func (e *engine) look(t float64) (err float64, ok bool) {
+	p := row{t: t, r: e.r.at(t), y: e.y.value(e.x, e.w), u: e.tasks[0].held}
+	p.m = p.y
+	if e.m != e.y {
+		p.m = e.m.value(e.x, e.w)
+	}
+	if !(math.Abs(p.y) < tooLarge && math.Abs(p.m) < tooLarge && math.Abs(p.u) < tooLarge && math.Abs(p.r) < tooLarge) {
+		return 0, false
+	}
+	e.points.add(p)
+	err = p.r - p.y
+	e.sum.look(t, err)
+	return err, true
+}
+
+// span propagates over the interval after an instant whose tracking error is err; ok is false when a
+// signal is too large.
+func (e *engine) span(in *instant, err float64) (ok bool, fault error) {
+	h := in.length / float64(in.parts)
+	sum := in.weights[0] * err * err
+	for j := 1; j <= in.parts; j++ {
+		from := in.t + float64(j-1)*h
+		if fault = e.propagate(in.step, from, h); fault != nil {
+			return false, fault
+		}
+		if j < in.parts {
+			if err, ok = e.look(in.t + float64(j)*h); !ok {
+				return false, nil
+			}
+		} else {
+			t := in.t + in.length
+			err = e.r.at(t) - e.y.value(e.x, e.w)
+			if !(math.Abs(err) < tooLarge) {
+				return false, nil
+			}
+			if e.y.direct {
+				e.sum.look(t, err)
+			}
+		}
+		sum += in.weights[j] * err * err
+	}
+	e.sum.add(sum)
+	e.sum.time += in.length
+	return true, nil
+}
+
+// points is how many rows a period of the first task has at most.
+func (c *cycle) points(e *engine) int64 {
+	n := 0
+	for i := range c.list {
+		n += c.list[i].parts
+	}
+	ticks := c.period.Float64() / e.tasks[0].Controller.period
+	return int64(math.Ceil(float64(n)/math.Round(ticks) - 1e-9))
+}
+
+// name describes task i in messages.
+func (t *taskState) name(i int) string {
+	if t.Name != "" {
+		return t.Name
+	}
+	return fmt.Sprintf("task %d", i)
+}

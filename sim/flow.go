@@ -1,0 +1,211 @@
+package sim
+
+import (
+	"fmt"
+	"math"
+
+	"steadytick/internal/dd"
+)
+
+// flow propagates a linear system whose inputs are themselves the outputs of an
+// autonomous system: held values (S = 0), the derivatives of a polynomial, or a sine pair,
+//
+//	x' = A·x + B·w,   w' = S·w
+//
+// over any time, exactly: x(t+h) = x + E·(x, w), with E the top rows of
+// e^([A B; 0 S]·h) − I. w is given afresh at the start of every step.
+type flow struct {
+	n, m  int    // states, inputs
+	aug   square // [A B; 0 S], inputs scaled by powers of two
+	scale []float64
+	norm  float64 // of aug
+	byExp map[int]*advance
+}
+
+// advance is one prepared step: x += E·(x, w).
+type advance struct {
+	n, m int
+	e    []float64 // n rows of n+m
+}
+
+// newFlow takes A (n×n), B (n×m) and S (m×m) row by row.
+func newFlow(n, m int, a, b, s []float64) *flow {
+	f := &flow{n: n, m: m, scale: make([]float64, m), byExp: map[int]*advance{}}
+	size := 0.0
+	for i := range n {
+		sum := 0.0
+		for _, v := range a[i*n : (i+1)*n] {
+			sum += math.Abs(v)
+		}
+		size = math.Max(size, sum)
+	}
+	if size == 0 {
+		size = 1
+	}
+	N := n + m
+	f.aug = square{N, make([]dd.Float, N*N)}
+	for j := range m {
+		f.scale[j] = columnScale(b, m, j, size)
+		if f.scale[j] == 0 && j > 0 {
+			f.scale[j] = f.scale[j-1] // a derivative of the input before it
+		} else if f.scale[j] == 0 {
+			f.scale[j] = 1
+		}
+	}
+	for i := range n {
+		for j := range n {
+			f.aug.v[i*N+j] = dd.New(a[i*n+j])
+		}
+		for j := range m {
+			f.aug.v[i*N+n+j] = dd.New(b[i*m+j] * f.scale[j])
+		}
+	}
+	for i := range m {
+		for j := range m {
+			// w = scale·w̃, so S̃ = scale⁻¹·S·scale.
+			f.aug.v[(n+i)*N+n+j] = dd.New(s[i*m+j] / f.scale[i] * f.scale[j])
+		}
+	}
+	f.norm = f.aug.norm()
+	return f
+}
+
+// columnScale is the power of two that brings column j of b to the size of A, so
+// that a large input gain does not cost squarings; 0 for a column of zeros.
+func columnScale(b []float64, m, j int, size float64) float64 {
+	most := 0.0
+	for i := j; i < len(b); i += m {
+		most = math.Max(most, math.Abs(b[i]))
+	}
+	if most == 0 {
+		return 0
+	}
+	_, e := math.Frexp(size / most)
+	return math.Ldexp(1, e-1)
+}
+
+// step prepares a step of h seconds. Error: a growth that overflows.
+func (f *flow) step(h dd.Float) (*advance, error) {
+	e := expm1(f.aug, h)
+	N := f.n + f.m
+	out := &advance{n: f.n, m: f.m, e: make([]float64, f.n*N)}
+	for i := range f.n {
+		for j := range N {
+			v := e.v[i*N+j].Float64()
+			if j >= f.n {
+				v /= f.scale[j-f.n]
+			}
+			if math.IsNaN(v) || math.IsInf(v, 0) {
+				return nil, fmt.Errorf("sim: the plant grows beyond the range of the arithmetic within %g s", h.Hi)
+			}
+			out.e[i*N+j] = v
+		}
+	}
+	return out, nil
+}
+
+// apply does x += E·(x, w); dx is scratch of length n.
+func (p *advance) apply(x, w, dx []float64) {
+	n, m := p.n, p.m
+	x, dx, w = x[:n], dx[:n], w[:m]
+	for i := range dx {
+		row := p.e[i*(n+m) : (i+1)*(n+m)]
+		sum := 0.0
+		for j, v := range x {
+			sum += row[j] * v
+		}
+		row = row[n:]
+		for j, v := range w {
+			sum += row[j] * v
+		}
+		dx[i] = sum
+	}
+	for i, v := range dx {
+		x[i] += v
+	}
+}
+
+// advanceBy propagates by any h >= 0: the binary digits of h by prepared steps of
+// 2^k seconds, kept, and the rest, where norm·h <= 1/4, by the series. w is taken along and
+// changed. Error as for step.
+func (f *flow) advanceBy(x, w []float64, h float64) error {
+	dx := make([]float64, f.n)
+	for h*f.norm > 0.25 {
+		_, k := math.Frexp(h)
+		k--
+		p, ok := f.byExp[k]
+		if !ok {
+			var err error
+			if p, err = f.step(dd.New(math.Ldexp(1, k))); err != nil {
+				return err
+			}
+			f.byExp[k] = p
+		}
+		p.apply(x, w, dx)
+		f.turn(w, math.Ldexp(1, k))
+		h -= math.Ldexp(1, k)
+	}
+	f.series(x, w, h)
+	return nil
+}
+
+// series adds Σ (M·h)^k/k!·(x, w) for norm·h <= 1/4: 14 terms leave 4^-14/14! = 4e-20.
+func (f *flow) series(x, w []float64, h float64) {
+	N := f.n + f.m
+	v, next := make([]float64, N), make([]float64, N)
+	copy(v, x)
+	for j := range w {
+		v[f.n+j] = w[j] / f.scale[j]
+	}
+	for k := 1; k <= 14; k++ {
+		for i := range next {
+			sum := 0.0
+			for j, a := range f.aug.v[i*N : (i+1)*N] {
+				sum += a.Hi * v[j]
+			}
+			next[i] = sum * h / float64(k)
+		}
+		v, next = next, v
+		for i := range x {
+			x[i] += v[i]
+		}
+		for j := range w {
+			w[j] += v[f.n+j] * f.scale[j]
+		}
+	}
+}
+
+// turn propagates w alone by h: its system is nilpotent (at most degree 3) or a sine
+// pair, so its exponential is taken afresh only for the inputs that move.
+func (f *flow) turn(w []float64, h float64) {
+	N := f.n + f.m
+	for i := 0; i < f.m; i++ {
+		// A moving input i is followed by its derivative in i+1 (chain) or paired with it (sine).
+		up := f.entry(N, i, i+1)
+		if up == 0 {
+			continue
+		}
+		if down := f.entry(N, i+1, i); down != 0 {
+			om := math.Sqrt(-up * down)
+			s, c := math.Sincos(om * h)
+			r := math.Sqrt(-up / down)
+			w[i], w[i+1] = w[i]*c+w[i+1]*s*r, w[i+1]*c-w[i]*s/r
+			i++
+			continue
+		}
+		sum, p := 0.0, 1.0
+		for k := 1; i+k < f.m && f.entry(N, i+k-1, i+k) != 0; k++ {
+			p *= h / float64(k) * f.entry(N, i+k-1, i+k)
+			sum += p * w[i+k]
+		}
+		w[i] += sum
+	}
+}
+
+// entry is S[i][j] unscaled, 0 outside.
+func (f *flow) entry(N, i, j int) float64 {
+	if i >= f.m || j >= f.m {
+		return 0
+	}
+	return f.aug.v[(f.n+i)*N+f.n+j].Hi * f.scale[i] / f.scale[j]
+}

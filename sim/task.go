@@ -1,0 +1,153 @@
+package sim
+
+import (
+	"errors"
+	"fmt"
+	"math/big"
+)
+
+// Task is one controller on its own clock. Its tick k, k = 0, 1, …:
+//
+//	Offset + k·Period + jitter            sample the reference and the outputs
+//	  + Delay                             the effort computed from them is applied
+//
+// and held until the next. Delay may be longer than the period.
+type Task struct {
+	Name   string
+	Period *big.Rat // seconds, positive
+	Offset *big.Rat // seconds, not negative; nil is 0
+	Delay  *big.Rat // seconds from the sample to the update, not negative; nil is 0
+
+	// Jitter, when set, shifts the sample of tick k by that many seconds. Instants must keep their
+	// order, and none comes before 0. It must be a function of k alone for two runs to agree.
+	Jitter func(k int64) float64
+	// UpdateOnGrid: the update keeps its place when the sample is shifted, as where updates
+	// wait for the next tick.
+	UpdateOnGrid bool
+
+	Controller *Controller
+	Reads      []int // outputs sampled, in the order of Term.Read; Reads[0] is "m"
+	Drives     []int // inputs of the system driven by the effort; none for an outer loop
+	// Reference: 0 takes the reference of the run; i > 0 takes the effort held by task i−1 of the
+	// list, as the inner of two nested loops does.
+	Reference int
+
+	Measure Converter // of every output read; zero value: none
+	Limits  Limits    // of the effort; zero value: none
+	Bits    int       // of the effort over Limits; 0: no quantization
+	Slew    float64   // largest change of the effort in units a second; 0: no limit
+}
+
+// check finds mistakes of task i in a list of n for the system.
+func (t *Task) check(i, n int, s *Continuous) error {
+	bad := func(what string) error { return fmt.Errorf("sim: task %d: %s", i, what) }
+	switch {
+	case t.Period == nil || t.Period.Sign() <= 0:
+		return bad("the period must be positive")
+	case t.Offset != nil && t.Offset.Sign() < 0 || t.Delay != nil && t.Delay.Sign() < 0:
+		return bad("offset and delay must not be negative")
+	case t.Controller == nil:
+		return bad("no controller")
+	case t.Controller.exactPeriod.Cmp(t.Period) != 0:
+		return bad("the controller is for another period")
+	case t.Reference < 0 || t.Reference > n || t.Reference == i+1:
+		return bad("no such reference")
+	case !t.Measure.valid() || !t.Limits.valid() || !finite([]float64{t.Slew}) || t.Slew < 0:
+		return bad("limits or converters that are not in order")
+	case t.Bits != 0 && !t.effortConverter().valid():
+		return bad("bits of the effort need limits")
+	case len(t.Reads) == 0:
+		return bad("reads nothing")
+	}
+	for _, k := range t.Controller.reads {
+		if k >= len(t.Reads) {
+			return bad("a term reads an output that the task does not sample")
+		}
+	}
+	for _, k := range t.Reads {
+		if k < 0 || k >= s.outputs {
+			return bad("no such output")
+		}
+	}
+	for _, k := range t.Drives {
+		if k < 0 || k >= s.inputs {
+			return bad("no such input")
+		}
+	}
+	return nil
+}
+
+func (t *Task) effortConverter() Converter {
+	c := Converter{Bits: t.Bits, Low: t.Limits.Low, High: t.Limits.High}
+	if t.Bits > 0 && !t.Limits.On {
+		c.High, c.Low = 0, 0 // not valid
+	}
+	return c
+}
+
+// orZero is r, or 0 for nil.
+func orZero(r *big.Rat) *big.Rat {
+	if r == nil {
+		return new(big.Rat)
+	}
+	return r
+}
+
+// Drive is a signal on an input of the system, added to what tasks put there.
+type Drive struct {
+	Input  int
+	Signal Signal
+}
+
+// Config describes a run.
+type Config struct {
+	System       *Continuous
+	Tasks        []Task
+	Reference    Signal
+	Disturbances []Drive
+	// Ticks is how many periods of the first task are run, at least 1. The run ends with the
+	// instant Ticks·Period, whose sample is still taken.
+	Ticks int64
+	// PointsPerTick is the number of points in a period of the first task at which the run looks at the
+	// signals (peak, rms, trace), besides every sample and update; 0 means 8.
+	PointsPerTick int
+	// MaxPoints bounds the points kept in the trace, and the ticks kept; 0 means 2000, at least 16.
+	MaxPoints int
+	// Progress, when set, is called now and then with the part done, 0 to 1.
+	Progress func(part float64)
+}
+
+// check fills in defaults and finds mistakes.
+func (c *Config) check() error {
+	if c.System == nil || len(c.Tasks) == 0 {
+		return errors.New("sim: a run needs a system and a task")
+	}
+	if c.Ticks < 1 || c.Ticks > 1<<50 || c.PointsPerTick < 0 || c.PointsPerTick > 1000 || c.MaxPoints < 0 {
+		return errors.New("sim: a run needs at least one tick and counts that are not negative")
+	}
+	for i := range c.Tasks {
+		if err := c.Tasks[i].check(i, len(c.Tasks), c.System); err != nil {
+			return err
+		}
+	}
+	if err := c.Reference.check(); err != nil {
+		return err
+	}
+	for i := range c.Disturbances {
+		d := &c.Disturbances[i]
+		if d.Input < 0 || d.Input >= c.System.inputs {
+			return fmt.Errorf("sim: disturbance %d: no such input", i)
+		}
+		if err := d.Signal.check(); err != nil {
+			return err
+		}
+	}
+	if c.PointsPerTick == 0 {
+		c.PointsPerTick = 8
+	}
+	if c.MaxPoints == 0 {
+		c.MaxPoints = 2000
+	}
+	c.MaxPoints = max(c.MaxPoints, 16)
+	return nil
+}
