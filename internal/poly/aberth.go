@@ -67,12 +67,15 @@ func (s *sweeper) move(i int, n complex128, e int) {
 	w := n / (1 - n*s.repulsion(i, e))
 	x := s.x[i]
 	size := x.Ldexp(-e).Abs()
+	if size == 0 {
+		size = 1
+	}
 	length := cmplx.Abs(w)
 	if math.IsNaN(length) || math.IsInf(length, 0) {
 		// p' = 0 or coincident points: step aside in a direction that depends on i.
 		w, length = cmplx.Rect(0.1*size, float64(i+1)), 0.1*size
 	}
-	if size > 0 && length > 2*size {
+	if length > 2*size {
 		w *= complex(2*size/length, 0)
 	}
 	s.last[i] = length / size
@@ -124,9 +127,11 @@ const (
 // Aberth improves start to as many roots of an analytic function, one for each
 // starting point. eval returns the function and its derivative. A root is taken as
 // converged when its correction is below 2^-98 of |x|, when the function is
-// exactly zero there, or when the correction has been below 1e-7 of |x| and has
-// not shrunk for 10 sweeps (the noise of eval is reached, as in a cluster).
-// The roots come in the order of the starting points. The error is a *ConvergenceError.
+// exactly zero there, or when the correction has been below 1e-4 of |x| and has not
+// shrunk for 20 sweeps: the noise of eval is reached, as in a cluster (1e-5 for a
+// sixfold root in double-double). The accuracy is then that noise, and not known here.
+// The roots come in the order of the starting points. The error is a *ConvergenceError;
+// with it comes the state reached.
 func Aberth(eval func(x dd.Complex) (p, dp dd.Complex), start []dd.Complex) ([]dd.Complex, error) {
 	s := newSweeper(start)
 	best := make([]float64, len(start))
@@ -139,7 +144,7 @@ func Aberth(eval func(x dd.Complex) (p, dp dd.Complex), start []dd.Complex) ([]d
 		if s.last[i] < best[i] {
 			best[i], stale[i] = s.last[i], 0
 		}
-		if best[i] < 0x1p-98 || best[i] < 1e-7 && stale[i] >= 10 {
+		if best[i] < 0x1p-98 || best[i] < 1e-4 && stale[i] >= 20 {
 			return 0, 0, true
 		}
 		p, dp := eval(s.x[i])

@@ -13,9 +13,11 @@ import (
 //	q(y) = 2^-s·p(2^e·y),  q_k = p_k·2^(e·k − s),  max |q_k| in [1/2, 1)
 //
 // with y = x/2^e, 1/2 <= |y| < √2. A q_k that underflows is below 2^-900 of the
-// largest one. The scaled coefficients are kept, one set for each e met.
+// largest one. The scaled coefficients are kept, one set for each e met. Points are
+// given as x/2^shift, so that roots near the ends of the range keep their low words.
 type horner struct {
 	p     Poly
+	shift int
 	views map[int]*view
 }
 
@@ -24,7 +26,9 @@ type view struct {
 	f []float64
 }
 
-func newHorner(p Poly) *horner { return &horner{p: p, views: map[int]*view{}} }
+func newHorner(p Poly, shift int) *horner {
+	return &horner{p: p, shift: shift, views: map[int]*view{}}
+}
 
 // binade returns the e of x; x must be finite and not zero.
 func binade(x dd.Complex) int {
@@ -32,20 +36,21 @@ func binade(x dd.Complex) int {
 	return e
 }
 
+// view is the scaled polynomial for points near 2^e.
 func (h *horner) view(e int) *view {
 	if v, ok := h.views[e]; ok {
 		return v
 	}
-	s := math.MinInt
+	s, g := math.MinInt, e+h.shift
 	for k, c := range h.p {
 		if c.Hi != 0 {
 			_, ec := math.Frexp(c.Hi)
-			s = max(s, ec+e*k)
+			s = max(s, ec+g*k)
 		}
 	}
 	v := &view{c: make([]dd.Float, len(h.p)), f: make([]float64, len(h.p))}
 	for k, c := range h.p {
-		v.c[k] = c.Ldexp(e*k - s)
+		v.c[k] = c.Ldexp(g*k - s)
 		v.f[k] = v.c[k].Hi
 	}
 	h.views[e] = v
@@ -61,7 +66,10 @@ type sample struct {
 }
 
 // atRoot tells that the value cannot be told from zero.
-func (s sample) atRoot() bool { return cmplx.Abs(s.p) <= s.bound }
+func (s sample) atRoot() bool { return s.noise() <= 1 }
+
+// noise is the value in units of its error bound.
+func (s sample) noise() float64 { return cmplx.Abs(s.p) / s.bound }
 
 // double evaluates in double-double. The bound of |computed − exact| is the
 // running one. With ε = dd.Eps for one real operation, a complex product errs by
