@@ -49,6 +49,7 @@ type Compare struct {
 	// LoopFile is the text of the loop file, for the foot of the report.
 	LoopFile string `json:"-"`
 	File     string `json:"-"`
+	Version  string `json:"-"`
 }
 
 // Units are the loop's own unit names.
@@ -75,6 +76,7 @@ type Column struct {
 	DelayMarginS    Figure `json:"delay_margin_s"`
 	CrossoverRadS   Figure `json:"crossover_rad_s"`
 	BandwidthRadS   Figure `json:"bandwidth_rad_s"`
+	JitterMarginS   Figure `json:"jitter_margin_s"`
 
 	GainCrossings  []Crossing `json:"gain_crossings"`  // |L| = 1
 	PhaseCrossings []Crossing `json:"phase_crossings"` // arg L = −180°
@@ -154,6 +156,7 @@ type DegradeRow struct {
 	PeakError   Figure `json:"peak_tracking_error"`
 	RMSError    Figure `json:"rms_tracking_error"`
 	SteadyError Figure `json:"steady_tracking_error"`
+	Note        string `json:"note"` // why there are no figures, or what to know about them
 }
 
 // Curve is a polyline; X and Y have equal length and hold finite numbers only.

@@ -1,0 +1,168 @@
+package charts
+
+import (
+	"bytes"
+	_ "embed"
+	"errors"
+	"fmt"
+	"html/template"
+	"io"
+
+	"steadytick/study"
+)
+
+//go:embed page/report.html
+var pageText string
+
+//go:embed page/report.css
+var pageStyle string
+
+//go:embed page/report.js
+var pageScript string
+
+var page = template.Must(template.New("report").Funcs(template.FuncMap{
+	"swatch": func(s style, dots bool) template.HTML { return s.swatch(dots) },
+	"inc":    func(i int) int { return i + 1 },
+}).Parse(pageText))
+
+// view is what the page template is given.
+type view struct {
+	C               *study.Compare
+	Rate            figure
+	Period, Delay   figure
+	PeriodU, DelayU string
+	Met             int
+	Trouble         bool // a requirement is missed or the sampled loop unstable
+	Compare, Series []group
+	Steady          []group
+	Ledger          []ledgerRow
+	LedgerUnit      string
+	Requirements    []requirementRow
+	Inputs          []inputView
+	Frequency       section
+	Crossings       []crossingRow
+	Poles           section
+	PoleTables      []poleTable
+	Rates           []section
+	PointLimit      int
+	DotLimit        int
+
+	Style          template.CSS
+	Drawings       template.JS
+	Runtime        template.JS
+	RuntimeAddress string
+	Script         template.JS
+}
+
+// inputView is one input: how its tracking degrades, in a table and in charts.
+type inputView struct {
+	section
+	Table *degradeTable
+}
+
+// Report writes c as one HTML file. Nothing is written when it fails; the errors are a CurveError for a
+// curve that cannot be drawn, and what w returns. The same c gives the same bytes.
+func Report(w io.Writer, c *study.Compare) error {
+	if c == nil {
+		return errors.New("charts: no result to report")
+	}
+	v, err := newView(c)
+	if err != nil {
+		return fmt.Errorf("report: %w", err)
+	}
+	var b bytes.Buffer
+	if err := page.Execute(&b, v); err != nil {
+		return fmt.Errorf("report: %w", err)
+	}
+	_, err = w.Write(b.Bytes())
+	return err
+}
+
+func newView(c *study.Compare) (*view, error) {
+	t := tables{c: c, notes: c.Warnings}
+	v := &view{C: c, Trouble: c.Sampled != nil && !c.Sampled.Stable,
+		Compare: t.compare(), Series: t.series(), Steady: t.steady(), Requirements: t.requirements(),
+		Crossings: t.crossings(), PoleTables: t.poles(), PointLimit: maxPoints, DotLimit: maxDots,
+		Style: template.CSS(pageStyle), Script: template.JS(pageScript)}
+	v.Ledger, v.LedgerUnit = t.ledger()
+	v.setFacts()
+	cv := &canvas{drawings: []drawing{}}
+	if c.Curves != nil {
+		if err := v.draw(cv); err != nil {
+			return nil, err
+		}
+	}
+	v.Inputs = joinInputs(v.Inputs, t.degrade(&cv.styles))
+	text, err := encode(cv.drawings)
+	if err != nil {
+		return nil, err
+	}
+	v.Drawings = template.JS(text)
+	if v.Runtime = template.JS(runtimeScript()); v.Runtime == "" {
+		v.RuntimeAddress = RuntimeAddress()
+	}
+	return v, nil
+}
+
+// setFacts words the line under the verdict.
+func (v *view) setFacts() {
+	pu, du := seconds(v.C.PeriodS), seconds(v.C.LoopDelayS)
+	v.Period, v.PeriodU = showFloat("period_s", v.C.PeriodS, pu), pu.name
+	v.Delay, v.DelayU = showFloat("loop_delay_s", v.C.LoopDelayS, du), du.name
+	v.Rate.Text = notApplicable
+	if v.C.PeriodS > 0 {
+		v.Rate.Text = formatNumber(1 / v.C.PeriodS)
+	}
+	for _, r := range v.C.Requirements {
+		if r.Met != nil {
+			if *r.Met {
+				v.Met++
+			} else {
+				v.Trouble = true
+			}
+		}
+	}
+}
+
+// draw makes all charts.
+func (v *view) draw(cv *canvas) error {
+	inputs, err := cv.inputs(v.C)
+	if err != nil {
+		return err
+	}
+	for _, s := range inputs {
+		v.Inputs = append(v.Inputs, inputView{section: s})
+	}
+	if v.Frequency, err = cv.frequency(v.C); err != nil {
+		return err
+	}
+	if v.Poles, err = cv.poles(v.C); err != nil {
+		return err
+	}
+	v.Rates, err = cv.rates(v.C)
+	return err
+}
+
+// joinInputs puts each degradation table with the charts of its input: the one of the same name, else,
+// when there are as many tables as inputs, the one at the same place. A table left over stands alone.
+func joinInputs(inputs []inputView, degrade []*degradeTable) []inputView {
+	used := map[*degradeTable]bool{}
+	for i := range inputs {
+		for _, d := range degrade {
+			if d.Input == inputs[i].Title {
+				inputs[i].Table, used[d] = d, true
+			}
+		}
+	}
+	if len(used) == 0 && len(degrade) == len(inputs) {
+		for i := range inputs {
+			inputs[i].Table, used[degrade[i]] = degrade[i], true
+		}
+	}
+	for i, d := range degrade {
+		if !used[d] {
+			inputs = append(inputs, inputView{section: section{ID: fmt.Sprintf("variants-%d", i+1), Title: d.Input}, Table: d})
+		}
+	}
+	return inputs
+}
