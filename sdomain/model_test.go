@@ -162,6 +162,10 @@ func TestZerosPoles(t *testing.T) {
 	if !errors.As(err, &conj) || conj.What != "pole" {
 		t.Errorf("a pole without conjugate gave %v", err)
 	}
+	_, err = sdomain.FromZerosPoles(nil, [][2]*big.Rat{pair("-1", "2"), pair("-1", "2"), pair("-1", "-2")}, rat("3"))
+	if !errors.As(err, &conj) {
+		t.Errorf("one conjugate for two poles gave %v", err)
+	}
 	_, err = sdomain.FromZerosPoles([][2]*big.Rat{pair("-1", "2"), pair("-1.000001", "-2")}, nil, rat("3"))
 	if !errors.As(err, &conj) || conj.What != "zero" {
 		t.Errorf("a zero without conjugate gave %v", err)

@@ -56,6 +56,18 @@ func TestSumFindsFactorsInside(t *testing.T) {
 	}
 }
 
+// 3/x² + 4(1+x)/(x²(1+2x)³) has x²(1+2x)³ below, and 5/x² + 1/x³ has x³.
+func TestSumTakesHigherPower(t *testing.T) {
+	a := mustRatio(t, exact.IntPoly(3), exact.IntPoly(0, 0, 1))
+	b := mustRatio(t, exact.IntPoly(4, 4), exact.IntPoly(0, 0, 1).Mul(exact.IntPoly(1, 2).Pow(3)))
+	if s := a.Add(b); s.OriginPoles != 2 || s.Order() != 5 {
+		t.Errorf("got %v", s)
+	}
+	if s := a.Add(mustRatio(t, exact.IntPoly(1), exact.IntPoly(0, 0, 0, 1))); s.OriginPoles != 3 || s.OriginZeros != 0 {
+		t.Errorf("got %v", s)
+	}
+}
+
 func TestProductsNeverCancel(t *testing.T) {
 	x := exact.X()
 	lead := div(t, factor("0.2"), factor("0.01"))
