@@ -92,8 +92,8 @@ func (s *sweeper) repulsion(i, e int) complex128 {
 		if j == i {
 			continue
 		}
-		re := ((a.Re.Hi - b.Re.Hi) + (a.Re.Lo - b.Re.Lo)) * scale
-		im := ((a.Im.Hi - b.Im.Hi) + (a.Im.Lo - b.Im.Lo)) * scale
+		d := difference(a, b)
+		re, im := real(d)*scale, imag(d)*scale
 		q := re*re + im*im
 		if q == 0 || math.IsInf(q, 0) {
 			continue
@@ -101,6 +101,11 @@ func (s *sweeper) repulsion(i, e int) complex128 {
 		sum += complex(re/q, -im/q)
 	}
 	return sum
+}
+
+// difference is a − b, of full float64 accuracy also for close points.
+func difference(a, b dd.Complex) complex128 {
+	return complex((a.Re.Hi-b.Re.Hi)+(a.Re.Lo-b.Re.Lo), (a.Im.Hi-b.Im.Hi)+(a.Im.Lo-b.Im.Lo))
 }
 
 func (s *sweeper) failure(limit int) error {

@@ -22,8 +22,9 @@ type horner struct {
 }
 
 type view struct {
-	c []dd.Float
-	f []float64
+	c     []dd.Float
+	f     []float64
+	scale int // s
 }
 
 func newHorner(p Poly, shift int) *horner {
@@ -48,7 +49,7 @@ func (h *horner) view(e int) *view {
 			s = max(s, ec+g*k)
 		}
 	}
-	v := &view{c: make([]dd.Float, len(h.p)), f: make([]float64, len(h.p))}
+	v := &view{c: make([]dd.Float, len(h.p)), f: make([]float64, len(h.p)), scale: s}
 	for k, c := range h.p {
 		v.c[k] = c.Ldexp(g*k - s)
 		v.f[k] = v.c[k].Hi

@@ -38,6 +38,32 @@ func drawRoots(t *rapid.T, most int, low, high float64) []dd.Complex {
 	return r
 }
 
+// A pair of roots beside ten real ones between −1.0091 and −1: the noise of the ten is
+// wide enough for an eleventh point, and the pair was lost to it once.
+func TestCrowdedCluster(t *testing.T) {
+	z := dd.C(-0.9632239692028498, 0.26974413386636614)
+	r := []dd.Complex{z, z.Conj()}
+	for _, v := range []float64{
+		1.00028111678778, 1.0045073642544624, 11.599870077289447, 10000, 1.0090350448414473, 4.27424463261162,
+		1.0001405485169472, 1.0002108301829544, 1.0000000002680562, 0.02996142741004364, 1.0000702717894114,
+		1.0001702788165903, 0.020535250264571463, 1.0000087837036347, 1.0000175674844227,
+	} {
+		r = append(r, dd.C(-v, 0))
+	}
+	for _, w := range []dd.Complex{dd.C(-0.7355760827049593, 0.6907094528603241), dd.C(-0.788836493281219, 0.61561404157122), dd.C(0.11098839136808016, 0.9938570565080963)} {
+		r = append(r, w, w.Conj())
+	}
+	x, err := FromRoots(r).Roots()
+	if err != nil || len(x) != len(r) {
+		t.Fatal(x, err)
+	}
+	checkSymmetry(t, x)
+	// The bound of TestRootsOfFromRoots for this root.
+	if d := nearest(&x, z); !(d <= 1.7e-17) {
+		t.Errorf("the pair is off by %.3g: %v", d, x)
+	}
+}
+
 // radii are the Newton radii n(|p(x)| + bound)/|p'(x)|: within each lies a root.
 func radii(p Poly, x []dd.Complex) []float64 {
 	h := newHorner(p, 0)

@@ -91,6 +91,7 @@ func nonzeroRoots(p Poly) ([]dd.Complex, error) {
 	if !s.run(doubleSweeps, h.step(s, h.double)) {
 		return nil, s.failure(doubleSweeps)
 	}
+	h.settle(s)
 	h.polish(s)
 	for i, x := range s.x {
 		s.x[i] = x.Ldexp(h.shift)
