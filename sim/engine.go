@@ -83,14 +83,7 @@ type engine struct {
 	ticks  *decimator
 	sum    errorSum
 	effort float64 // largest magnitude held by the first task
-	watch  watcher
-}
-
-// watcher looks at the run between its points, for the step figures. A segment starts at t and is
-// h seconds long; the state at its start is given, before it is propagated.
-type watcher interface {
-	segment(e *engine, t, h float64)
-	done(e *engine, t float64)
+	watch  *stepWatch
 }
 
 func newEngine(cfg *Config) (*engine, error) {
@@ -131,6 +124,9 @@ func newEngine(cfg *Config) (*engine, error) {
 	e.change = math.Inf(1)
 	for i := range e.layout.driven {
 		e.change = math.Min(e.change, e.layout.driven[i].change)
+	}
+	if cfg.Step != nil && cfg.Step.applies() {
+		e.watch = newStepWatch(e, cfg.Step)
 	}
 	return e, nil
 }
@@ -277,13 +273,22 @@ func (e *engine) propagate(p *advance, t, h float64) error {
 // free propagates over h seconds without a change of the inputs.
 func (e *engine) free(p *advance, t, h float64) error {
 	if e.watch != nil {
-		e.watch.segment(e, t, h)
+		e.watch.before(e)
 	}
-	if p != nil {
+	if p == nil {
+		if err := e.flow.advanceBy(e.x, e.w, h); err != nil {
+			return err
+		}
+	} else {
 		p.apply(e.x, e.w, e.dx)
-		return nil
 	}
-	return e.flow.advanceBy(e.x, e.w, h)
+	if e.watch != nil {
+		if p != nil {
+			e.flow.turn(e.w, h)
+		}
+		e.watch.after(e, t, h)
+	}
+	return nil
 }
 
 // look records the point at t and returns the tracking error.

@@ -113,6 +113,8 @@ type Config struct {
 	PointsPerTick int
 	// MaxPoints bounds the points kept in the trace, and the ticks kept; 0 means 2000, at least 16.
 	MaxPoints int
+	// Step, when set, asks for the step figures of output 0 (its first value being 0).
+	Step *StepSpec
 	// Progress, when set, is called now and then with the part done, 0 to 1.
 	Progress func(part float64)
 }
@@ -141,6 +143,13 @@ func (c *Config) check() error {
 		if err := d.Signal.check(); err != nil {
 			return err
 		}
+	}
+	if c.Step != nil {
+		spec := *c.Step
+		if err := spec.check(); err != nil {
+			return err
+		}
+		c.Step = &spec
 	}
 	if c.PointsPerTick == 0 {
 		c.PointsPerTick = 8
