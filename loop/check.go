@@ -92,7 +92,7 @@ func (r *reader) checkDelay(l *Loop, top *section) {
 	ticks.Quo(ticks, l.Timing.Period)
 	if ticks.Cmp(big.NewRat(maxTicks, 1)) > 0 {
 		f, _ := ticks.Float64()
-		r.report(within(top, "plant", "dead_time"), fmt.Sprintf("all delay together is %.3g ticks", f),
+		r.report(within(top, "plant", "dead_time"), fmt.Sprintf("all delay together is %.7g ticks", f),
 			fmt.Sprintf("at most %d ticks: a slower rate, or less dead time", maxTicks))
 	}
 }

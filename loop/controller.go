@@ -35,7 +35,7 @@ func (r *reader) controller(l *Loop, n *node, timed bool) {
 		}
 		l.Controller.Terms = r.pid(l, s.get("pid"), timed)
 	default:
-		r.report(s.at, "controller has neither model nor pid", "one of model and pid")
+		s.missing("controller has neither model nor pid", "one of model and pid", "model", "pid")
 	}
 	l.Controller.Feedforward = r.sidePart(s.get("feedforward"), "feedforward")
 	l.Controller.Prefilter = r.sidePart(s.get("prefilter"), "prefilter")

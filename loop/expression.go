@@ -127,8 +127,7 @@ func (p *exprParser) product() *expr {
 		t := p.take()
 		right, joined := p.unary()
 		if t.text == "/" && joined && p.err == nil {
-			one, two := twoReadings(left, right)
-			p.fail(t.at, "a division followed by a product without * can be read in two ways", one+" or "+two, "")
+			p.fail(t.at, "a division followed by a product without * can be read in two ways", twoReadings(left, right), "")
 		}
 		left = &expr{kind: exprKind(t.text[0]), at: t.at, x: left, y: right}
 	}
@@ -136,7 +135,7 @@ func (p *exprParser) product() *expr {
 }
 
 // twoReadings writes left/right, right being a product without *, in its two readings.
-func twoReadings(left, right *expr) (string, string) {
+func twoReadings(left, right *expr) string {
 	minus := right.kind == exprMinus
 	if minus {
 		right = right.x
@@ -153,7 +152,10 @@ func twoReadings(left, right *expr) (string, string) {
 	for _, e := range rest {
 		two += "*" + print(e, levelPower)
 	}
-	return one, two
+	if len(one)+len(two) > 120 {
+		return "a/(b*c) or (a/b)*c"
+	}
+	return one + " or " + two
 }
 
 // unary also tells whether what it read is a product without *.

@@ -10,10 +10,12 @@ import (
 // Limits of a loop file as text. They are far above what a loop needs and keep the
 // reading of any file under a second.
 const (
-	maxBytes  = 256 << 10 // size of the file; the YAML reader takes about 1 ms per KiB of the worst text
-	maxIndent = 200       // columns of indentation
-	maxNest   = 50        // brackets [ { within each other, and "- - - a" on one line
-	maxDigits = 200       // digits of one number
+	maxBytes  = 64 << 10 // size of the file: the time of the YAML reader grows with its square
+	maxIndent = 200      // columns of indentation
+	maxNest   = 50       // brackets [ { within each other, and "- - - a" on one line
+	maxDigits = 200      // digits of one number
+
+	maxProblems = 200 // kept for one file
 )
 
 // guard refuses text that must not reach the YAML reader: too long, not UTF-8, control

@@ -34,6 +34,7 @@ type node struct {
 	start   place // of the first character of text, when exact
 	exact   bool  // text stands in the source from start on, character by character
 	broken  bool  // reported already: readers stay quiet about it
+	partial bool  // of a mapping: some keys were refused and reported
 	entries []entry
 	items   []*node
 }
@@ -88,8 +89,11 @@ func parseYAML(r *reader, text string) (file *ast.File) {
 		return file
 	}
 	var syntax *yaml.SyntaxError
-	if errors.As(err, &syntax) {
-		r.report(converter{r}.place(syntax.Token), "not YAML: "+syntax.Message, "")
+	if errors.As(err, &syntax) && strings.Contains(syntax.Message, "\t") {
+		r.report(converter{r}.place(syntax.Token), "a tab where YAML needs spaces", "spaces as indentation")
+	} else if errors.As(err, &syntax) {
+		r.report(converter{r}.place(syntax.Token), "not YAML: "+syntax.Message,
+			"keys of one section under each other, brackets closed, text that holds \": \" or \" #\" in quotes")
 	} else {
 		r.report(place{}, "not YAML: "+err.Error(), "")
 	}
@@ -155,10 +159,8 @@ func (c converter) scalar(t *token.Token) *node {
 	if t.Type == token.SingleQuoteType || t.Type == token.DoubleQuoteType {
 		start.column++
 	}
-	line := []rune(c.r.line(start.line))
-	if start.column >= 1 && start.column-1 <= len(line) && strings.HasPrefix(string(line[start.column-1:]), out.text) {
-		out.start, out.exact = start, true
-	}
+	out.exact = c.r.stands(out.text, start)
+	out.start = start
 	return out
 }
 
@@ -176,6 +178,7 @@ func (c converter) mapping(values []*ast.MappingValueNode, t *token.Token, depth
 		}
 		key, ok := c.key(v.Key)
 		if !ok {
+			out.partial = true
 			continue
 		}
 		if first, ok := seen[key]; ok {

@@ -19,6 +19,9 @@ type Options struct {
 	Map string
 }
 
+// maxSymbols bounds the symbols section.
+const maxSymbols = 200
+
 // maxCSV bounds an input file in bytes.
 const maxCSV = 32 << 20
 
@@ -79,15 +82,15 @@ func ParseWith(file string, src []byte, open func(path string) ([]byte, error), 
 	r.symbols = map[string]*big.Rat{}
 	guard(r, src)
 	if len(r.problems) > 0 {
-		return nil, r.problems.sorted()
+		return nil, r.problems.sorted(file)
 	}
 	root := yamlTree(r, text)
 	if root == nil || root.broken {
-		return nil, r.problems.sorted()
+		return nil, r.problems.sorted(file)
 	}
 	l := r.loop(root)
 	if len(r.problems) > 0 {
-		return nil, r.problems.sorted()
+		return nil, r.problems.sorted(file)
 	}
 	l.File, l.Source, l.open, l.options = file, append([]byte(nil), src...), open, o
 	return l, nil
@@ -124,6 +127,7 @@ func (r *reader) loop(root *node) *Loop {
 	if t, ok := r.text(s.get("effort"), "effort"); ok {
 		l.Effort = t
 	}
+	r.own = []string{l.Output, l.Effort}
 	r.readSymbols(l, s.get("symbols"))
 	timed := r.timing(&l.Timing, s)
 	r.plant(l, s.need("plant", "plant: {model: …}"))
@@ -146,6 +150,10 @@ func (r *reader) readSymbols(l *Loop, n *node) {
 	}
 	if n.kind != mapNode {
 		r.report(n.at, fmt.Sprintf("symbols is %s here", n.kind), "a mapping such as {J: 0.018, b: 0.09}")
+		return
+	}
+	if len(n.entries) > maxSymbols {
+		r.report(n.at, fmt.Sprintf("%d symbols", len(n.entries)), fmt.Sprintf("at most %d", maxSymbols))
 		return
 	}
 	for _, e := range n.entries {

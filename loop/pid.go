@@ -94,7 +94,7 @@ func (r *reader) pidGains(f *pidForm, s *section) {
 	}
 	gain := s.together("Kp", "K")
 	if gain == "" {
-		r.report(s.at, "pid has no Kp", "Kp: the gain of the "+f.form+" form")
+		s.missing("pid has no Kp", "Kp: the gain of the "+f.form+" form", "Kp", "K")
 	} else {
 		f.kp = read(gain)
 	}

@@ -156,9 +156,12 @@ func quote(s string) string {
 	return `"` + s + `"`
 }
 
-// sorted orders by place and drops what is said twice of one place.
-func (p Problems) sorted() Problems {
+// sorted orders by place, the loop file itself first, and drops what is said twice.
+func (p Problems) sorted(file string) Problems {
 	sort.SliceStable(p, func(i, j int) bool {
+		if p[i].File != p[j].File {
+			return p[i].File == file || p[j].File != file && p[i].File < p[j].File
+		}
 		if p[i].Line != p[j].Line {
 			return p[i].Line < p[j].Line
 		}

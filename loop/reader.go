@@ -12,9 +12,14 @@ type reader struct {
 	file     string
 	lines    []string
 	problems Problems
-	options  Options
-	open     func(path string) ([]byte, error)
+	kept     struct { // the line that runes split last
+		n    int
+		line []rune
+	}
+	options Options
+	open    func(path string) ([]byte, error)
 	evaluator
+	own        []string // the unit names of output and effort
 	zUsed      place    // where the first z model stands, for messages about rates
 	timingAt   place    // where the rate stands
 	filePeriod *big.Rat // seconds as the file says, nil when that is wrong
@@ -34,13 +39,40 @@ func (r *reader) clamp(p place) place {
 		return place{}
 	}
 	p.line = min(p.line, max(1, len(r.lines)))
-	p.column = min(max(p.column, 1), len([]rune(r.line(p.line)))+1)
+	p.column = min(max(p.column, 1), len(r.runes(p.line))+1)
 	return p
+}
+
+// runes are the characters of a line. They are kept: long lines hold many places.
+func (r *reader) runes(n int) []rune {
+	if r.kept.n != n {
+		r.kept.n, r.kept.line = n, []rune(r.line(n))
+	}
+	return r.kept.line
+}
+
+// stands reports whether text is what the line of p holds from p on.
+func (r *reader) stands(text string, p place) bool {
+	line := r.runes(p.line)
+	if p.line < 1 || p.column < 1 || p.column-1 > len(line) {
+		return false
+	}
+	line = line[p.column-1:]
+	for _, c := range text {
+		if len(line) == 0 || line[0] != c {
+			return false
+		}
+		line = line[1:]
+	}
+	return true
 }
 
 func (r *reader) report(at place, message, expected string) { r.reportNear(at, message, expected, "") }
 
 func (r *reader) reportNear(at place, message, expected, near string) {
+	if len(r.problems) >= maxProblems {
+		return
+	}
 	r.problems = append(r.problems, Problem{r.file, at.line, at.column, r.line(at.line), message, expected, near})
 }
 
@@ -59,12 +91,16 @@ type section struct {
 	name   string // for messages
 	at     place  // of its key, or its first key
 	values map[string]entry
+	meant  map[string]bool // keys that an unknown key was probably meant to be
+	// partial: some keys of the section were refused and reported, so that missing
+	// ones are not worth a word.
+	partial bool
 }
 
 // section reads n as a mapping with the given keys; unknown ones are reported. It is
 // never nil: a section that is not a mapping is reported and empty, and broken is true.
 func (r *reader) section(n *node, name string, keys ...string) (s *section, broken bool) {
-	s = &section{r: r, name: name, at: n.at, values: map[string]entry{}}
+	s = &section{r: r, name: name, at: n.at, values: map[string]entry{}, meant: map[string]bool{}, partial: n.partial}
 	if n.broken {
 		return s, true
 	}
@@ -74,12 +110,9 @@ func (r *reader) section(n *node, name string, keys ...string) (s *section, brok
 	}
 	for _, e := range n.entries {
 		if !contains(keys, e.key) {
-			expected := "one of " + list(keys)
-			if near := nearest(e.key, keys); near != "" {
-				r.reportNear(e.at, fmt.Sprintf("unknown key %s in %s", quote(e.key), name), expected, near)
-			} else {
-				r.report(e.at, fmt.Sprintf("unknown key %s in %s", quote(e.key), name), expected)
-			}
+			near := nearest(e.key, keys)
+			s.meant[near] = true
+			r.reportNear(e.at, fmt.Sprintf("unknown key %s in %s", quote(e.key), name), "one of "+list(keys), near)
 			continue
 		}
 		s.values[e.key] = e
@@ -125,9 +158,21 @@ func (s *section) keyAt(key string) place {
 // need is get for a key that must be there.
 func (s *section) need(key, expected string) *node {
 	if !s.has(key) {
-		s.r.report(s.at, fmt.Sprintf("%s has no %s", s.name, key), expected)
+		s.missing(fmt.Sprintf("%s has no %s", s.name, key), expected, key)
 	}
 	return s.get(key)
+}
+
+// missing reports that none of the keys is there, unless another message explains it.
+func (s *section) missing(message, expected string, keys ...string) {
+	for _, k := range keys {
+		if s.meant[k] {
+			return
+		}
+	}
+	if !s.partial {
+		s.r.report(s.at, message, expected)
+	}
 }
 
 // together reports keys of which only one may stand; it returns the one, "" for none.
@@ -171,7 +216,7 @@ func (r *reader) choice(n *node, what string, words ...string) (string, bool) {
 		return "", false
 	}
 	if !contains(words, t) {
-		r.reportNear(n.at, fmt.Sprintf("%s is not a %s", quote(t), what), "one of "+list(words), nearest(t, words))
+		r.reportNear(n.at, fmt.Sprintf("%s is not a value of %s", quote(t), what), "one of "+list(words), nearest(t, words))
 		return "", false
 	}
 	return t, true
@@ -179,6 +224,9 @@ func (r *reader) choice(n *node, what string, words ...string) (string, bool) {
 
 // constant reads a number or an expression of numbers and symbols.
 func (r *reader) constant(n *node, what string) (*big.Rat, bool) {
+	if r.strayUnit(n, what) {
+		return nil, false
+	}
 	v, name, ok := r.expression(n, what)
 	if !ok {
 		return nil, false
@@ -192,6 +240,23 @@ func (r *reader) constant(n *node, what string) (*big.Rat, bool) {
 		return nil, false
 	}
 	return v.c, true
+}
+
+// strayUnit reports a number with a unit where a bare one belongs.
+func (r *reader) strayUnit(n *node, what string) bool {
+	if n == nil || n.kind != textNode {
+		return false
+	}
+	q, err := parseQuantity(n.text)
+	if err != nil || q.unit == "" || q.unit == "s" {
+		return false
+	}
+	if _, known := findUnit(q.unit); !known && !contains(r.own, q.unit) {
+		return false
+	}
+	r.inText(n, &exprError{at: q.unitAt, message: fmt.Sprintf("%s carries no unit", what),
+		expected: "a bare number: signals are in the units that output and effort name"})
+	return true
 }
 
 // Bounds of the magnitude of every number that leaves the reader: the figures computed

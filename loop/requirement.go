@@ -48,10 +48,10 @@ func (r *reader) requirement(l *Loop, n *node, text string) (Requirement, *exprE
 	}
 	m, ok := FindMetric(name)
 	if !ok {
-		e := &exprError{0, fmt.Sprintf("%s is not the name of a metric", quote(name)), requirementForm,
+		e := &exprError{0, fmt.Sprintf("%s is not the name of a metric", quote(name)), "one of " + list(metricNames()),
 			nearest(name, metricNames())}
 		if name == "" {
-			e.message, e.nearest = "the requirement does not begin with a name", ""
+			e = &exprError{0, "the requirement does not begin with a name", requirementForm, ""}
 		}
 		return Requirement{}, e
 	}

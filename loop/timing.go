@@ -80,7 +80,7 @@ func (r *reader) tick(s *section, period **big.Rat) bool {
 		*period = p
 		return true
 	}
-	r.report(s.at, s.name+" has neither rate nor period", "one of rate: 2 kHz and period: 500 us")
+	s.missing(s.name+" has neither rate nor period", "one of rate: 2 kHz and period: 500 us", "rate", "period")
 	return false
 }
 

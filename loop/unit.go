@@ -10,11 +10,11 @@ import (
 type dimension string
 
 const (
-	timeDim      dimension = "time"      // base unit s
-	frequencyDim dimension = "frequency" // base unit Hz or rad/s, as the reader asks
-	angleDim     dimension = "angle"     // base unit deg
-	percentDim   dimension = "share"     // base unit %
-	decibelDim   dimension = "ratio"     // base unit dB
+	timeDim      dimension = "time"       // base unit s
+	frequencyDim dimension = "frequency"  // base unit Hz or rad/s, as the reader asks
+	angleDim     dimension = "angle"      // base unit deg
+	percentDim   dimension = "percentage" // base unit %
+	decibelDim   dimension = "ratio"      // base unit dB
 )
 
 // unit is a name with its size: a value in the unit times factor is in the base unit.
@@ -80,6 +80,9 @@ func parseQuantity(text string) (quantity, *exprError) {
 		sign, body = body[:1], strings.TrimLeft(body[1:], " \t")
 	}
 	n := scanNumber(body)
+	if n == 0 && body == "" {
+		return quantity{}, &exprError{len([]rune(text)), "the number is missing", numberForm, ""}
+	}
 	if n == 0 {
 		return quantity{}, &exprError{at, fmt.Sprintf("%s is not a number", quote(strings.TrimSpace(text))), numberForm, ""}
 	}
@@ -98,19 +101,22 @@ func parseQuantity(text string) (quantity, *exprError) {
 // inUnits converts q to the base unit of the dimension dim. example is a value for the
 // message, such as "500 us".
 func (q quantity) inUnits(dim dimension, example string) (*big.Rat, *exprError) {
-	possible := strings.Join(unitNames(dim), ", ")
+	possible := "one of " + strings.Join(unitNames(dim), ", ")
+	if names := unitNames(dim); len(names) == 1 {
+		possible = names[0]
+	}
 	if q.unit == "" {
 		return nil, &exprError{0, fmt.Sprintf("the unit is missing (%s)", dim),
-			fmt.Sprintf("a number with one of %s, such as %s", possible, example), ""}
+			fmt.Sprintf("a number with %s, such as %s", possible, example), ""}
 	}
 	u, ok := findUnit(q.unit)
 	if !ok {
 		return nil, &exprError{q.unitAt, fmt.Sprintf("%s is not a unit", quote(q.unit)),
-			fmt.Sprintf("one of %s", possible), nearestUnit(q.unit, dim)}
+			possible, nearestUnit(q.unit, dim)}
 	}
 	if u.dim != dim {
 		return nil, &exprError{q.unitAt, fmt.Sprintf("%s is a unit of %s, not of %s", quote(q.unit), u.dim, dim),
-			fmt.Sprintf("one of %s", possible), ""}
+			possible, ""}
 	}
 	return new(big.Rat).Mul(q.value, u.factor), nil
 }
