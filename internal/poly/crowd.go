@@ -96,3 +96,19 @@ func (h *horner) relocate(s *sweeper, i int, w float64) bool {
 	s.x[i] = old
 	return false
 }
+
+// discs are the error radii of the points: n times the Weierstrass discs, since a
+// point of a cluster of up to n may be a sum of so many disc radii from its root.
+// 2^-100·|x| is added for the rounding of the point itself.
+func (h *horner) discs(s *sweeper) []float64 {
+	n := float64(len(s.x))
+	out := make([]float64, len(s.x))
+	for i, x := range s.x {
+		out[i] = math.Inf(1)
+		if !x.IsZero() && x.IsFinite() {
+			_, w := h.weierstrass(s.x, i, x)
+			out[i] = n*n*w + 0x1p-100*x.Abs()
+		}
+	}
+	return out
+}

@@ -19,7 +19,10 @@ import (
 // the noise of their cluster it is a choice, and as good as the coefficients allow:
 // they come as real roots when their real parts lie further apart than twice
 // the larger imaginary part.
-func pair(x []dd.Complex) []dd.Complex {
+//
+// moved is the longest way a root was moved, in units of what its error radius
+// allows: the set is not that of a real polynomial if it is large.
+func pair(x []dd.Complex, radius []float64) (out []dd.Complex, moved float64) {
 	idx := make([]int, len(x))
 	for i := range idx {
 		idx[i] = i
@@ -28,7 +31,7 @@ func pair(x []dd.Complex) []dd.Complex {
 		return math.Abs(x[idx[a]].Im.Hi) > math.Abs(x[idx[b]].Im.Hi)
 	})
 	used := make([]bool, len(x))
-	out := make([]dd.Complex, 0, len(x))
+	out = make([]dd.Complex, 0, len(x))
 	for _, i := range idx {
 		if used[i] {
 			continue
@@ -45,12 +48,14 @@ func pair(x []dd.Complex) []dd.Complex {
 		}
 		if best < 0 {
 			out = append(out, dd.Real(x[i].Re))
+			moved = math.Max(moved, math.Abs(x[i].Im.Hi)/radius[i])
 			continue
 		}
 		used[best] = true
+		moved = math.Max(moved, gap/2/math.Max(radius[i], radius[best]))
 		m := x[i].Add(x[best].Conj()).Ldexp(-1)
 		m.Im = m.Im.Abs()
 		out = append(out, m, m.Conj())
 	}
-	return out
+	return out, moved
 }

@@ -23,6 +23,16 @@ func (e *RangeError) Error() string {
 	return fmt.Sprintf("%s %d is outside the range of the arithmetic", e.What, e.Index)
 }
 
+// AsymmetryError says that the approximations found, each good by itself, cannot
+// be the roots of a real polynomial: a root was found twice and another one not at all.
+type AsymmetryError struct {
+	Moved float64 // how far a root would have to move to its conjugate, in error radii
+}
+
+func (e *AsymmetryError) Error() string {
+	return fmt.Sprintf("the roots found are not symmetric: off by %.3g times their error radius", e.Moved)
+}
+
 // Roots returns all roots, as many as the degree, in ascending modulus, the two
 // of a conjugate pair together with the positive imaginary part first. Pairs are
 // bitwise conjugate, real roots have an imaginary part of exactly zero, and low-order
@@ -38,7 +48,7 @@ func (e *RangeError) Error() string {
 // double, 1e-10 for a triple root, 1e-3 for an eightfold one. Two close real roots inside
 // that radius may come as a conjugate pair and the other way round (see pair).
 //
-// Errors: ErrZeroPolynomial, *RangeError, *ConvergenceError.
+// Errors: ErrZeroPolynomial, *RangeError, *ConvergenceError, *AsymmetryError.
 func (p Poly) Roots() ([]dd.Complex, error) {
 	for i, c := range p {
 		if !c.IsFinite() {
@@ -62,11 +72,11 @@ func (p Poly) Roots() ([]dd.Complex, error) {
 			return nil, &RangeError{"root", i}
 		}
 	}
-	return append(make([]dd.Complex, low), order(pair(x))...), nil
+	return append(make([]dd.Complex, low), order(x)...), nil
 }
 
 // nonzeroRoots is Roots for p with p[0] ≠ 0 and a non-zero leading coefficient,
-// before the pairing.
+// pairs side by side but not in order. A root out of range is Inf or zero.
 func nonzeroRoots(p Poly) ([]dd.Complex, error) {
 	switch len(p) {
 	case 1:
@@ -93,10 +103,14 @@ func nonzeroRoots(p Poly) ([]dd.Complex, error) {
 	}
 	h.settle(s)
 	h.polish(s)
-	for i, x := range s.x {
-		s.x[i] = x.Ldexp(h.shift)
+	x, moved := pair(s.x, h.discs(s))
+	if !(moved <= 1) {
+		return nil, &AsymmetryError{moved}
 	}
-	return s.x, nil
+	for i := range x {
+		x[i] = x[i].Ldexp(h.shift)
+	}
+	return x, nil
 }
 
 // polish applies one more correction where it makes the value smaller. The

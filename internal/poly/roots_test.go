@@ -257,6 +257,14 @@ func TestRootsOfDegenerate(t *testing.T) {
 	if x, err := floats(0, 0, 7).Roots(); err != nil || len(x) != 2 || !x[0].IsZero() || !x[1].IsZero() {
 		t.Errorf("7x²: %v, %v", x, err)
 	}
+	// x² ± 1e20·x + 1: the small root is 1e-20·(1 + 1e-40); 3 roundings.
+	for _, sign := range []float64{1, -1} {
+		x, err := floats(1, sign*1e20, 1).Roots()
+		w := dd.New(-sign).Div(dd.New(1e20))
+		if err != nil || len(x) != 2 || !(x[0].Re.Sub(w).Abs().Float64() <= 3*dd.Eps*1e-20) {
+			t.Errorf("x² + %vx + 1: %v, %v", sign*1e20, x, err)
+		}
+	}
 	var out *RangeError
 	for _, p := range []Poly{
 		floats(1, inf, 1), floats(1, 2, math.NaN()), floats(math.NaN(), 1),
