@@ -112,4 +112,3 @@ func TestHoldKnown(t *testing.T) {
 		}
 	}
 }
-
