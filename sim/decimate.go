@@ -30,39 +30,42 @@ func newDecimator(n int64, max int) *decimator {
 	return d
 }
 
-func (d *decimator) add(p row) {
-	d.last, d.any = p, true
+func (d *decimator) add(p *row) {
+	d.last, d.any = *p, true
 	if d.group == 1 {
-		d.kept = append(d.kept, p)
+		d.kept = append(d.kept, *p)
 		return
 	}
-	if d.seen == 0 {
-		for i := range d.best {
-			d.best[i] = p
-		}
-	}
 	b := &d.best
-	if p.y < b[1].y {
-		b[1] = p
-	}
-	if p.y > b[2].y {
-		b[2] = p
-	}
-	if p.u < b[3].u {
-		b[3] = p
-	}
-	if p.u > b[4].u {
-		b[4] = p
-	}
-	e := p.r - p.y
-	if e < b[5].r-b[5].y {
-		b[5] = p
-	}
-	if e > b[6].r-b[6].y {
-		b[6] = p
+	if d.seen == 0 {
+		for i := range b {
+			b[i] = *p
+		}
+	} else {
+		d.compare(p)
 	}
 	if d.seen++; d.seen == d.group {
 		d.flush()
+	}
+}
+
+// compare notes where p is extreme in its group.
+func (d *decimator) compare(p *row) {
+	b := &d.best
+	if p.y < b[1].y {
+		b[1] = *p
+	} else if p.y > b[2].y {
+		b[2] = *p
+	}
+	if p.u < b[3].u {
+		b[3] = *p
+	} else if p.u > b[4].u {
+		b[4] = *p
+	}
+	if e := p.r - p.y; e < b[5].r-b[5].y {
+		b[5] = *p
+	} else if e > b[6].r-b[6].y {
+		b[6] = *p
 	}
 }
 

@@ -10,21 +10,26 @@ import (
 // Inf or NaN comes out of an unstable loop.
 const tooLarge = 1e100
 
-// probe is one output as a row over states and columns.
+// probe is one output as a row over states and columns, cut short where it is 0.
 type probe struct {
-	c, d   []float64
-	direct bool // some d is not 0
+	row    []float64
+	direct bool // some column goes straight to the output
 }
 
-func (p *probe) value(x, w []float64) float64 {
-	sum := 0.0
-	for i, c := range p.c {
-		sum += c * x[i]
+func newProbe(c, d []float64) probe {
+	row := append(append([]float64(nil), c...), d...)
+	for len(row) > 0 && row[len(row)-1] == 0 {
+		row = row[:len(row)-1]
 	}
-	if p.direct {
-		for i, d := range p.d {
-			sum += d * w[i]
-		}
+	return probe{row, len(row) > len(c)}
+}
+
+// value is the output at z = (x, w).
+func (p *probe) value(z []float64) float64 {
+	sum := 0.0
+	z = z[:len(p.row)]
+	for i, c := range p.row {
+		sum += c * z[i]
 	}
 	return sum
 }
@@ -72,7 +77,8 @@ type engine struct {
 	key     string
 	outputs []probe
 	y, m    *probe
-	x, w    []float64
+	z       []float64 // states, then columns
+	w       []float64 // the columns of z
 	dx      []float64
 	change  float64 // earliest change of piece of a driven column
 	tasks   []taskState
@@ -93,13 +99,10 @@ func newEngine(cfg *Config) (*engine, error) {
 	s := cfg.System
 	e := &engine{cfg: cfg, layout: newLayout(cfg), tasks: make([]taskState, len(cfg.Tasks))}
 	e.flow, e.key = e.layout.flow(s)
-	e.x, e.dx, e.w = make([]float64, s.n), make([]float64, s.n), make([]float64, e.layout.columns)
+	e.z, e.dx = make([]float64, s.n+e.layout.columns), e.flow.scratch()
+	e.w = e.z[s.n:]
 	for k := range s.outputs {
-		p := probe{c: s.c[k*s.n : (k+1)*s.n], d: e.layout.through(s, k)}
-		for _, v := range p.d {
-			p.direct = p.direct || v != 0
-		}
-		e.outputs = append(e.outputs, p)
+		e.outputs = append(e.outputs, newProbe(s.c[k*s.n:(k+1)*s.n], e.layout.through(s, k)))
 	}
 	e.y, e.m = &e.outputs[0], &e.outputs[cfg.Tasks[0].Reads[0]]
 	e.r = cursor{signal: &cfg.Reference}
@@ -179,7 +182,7 @@ func (e *engine) act(in *instant) {
 			continue
 		}
 		for k, p := range t.reads {
-			t.m[k] = t.Measure.Value(p.value(e.x, e.w))
+			t.m[k] = t.Measure.Value(p.value(e.z))
 		}
 		e.compute(i, t, in.t)
 	}
@@ -217,7 +220,7 @@ func (e *engine) compute(i int, t *taskState, now float64) {
 		t.held = u // tasks later in the list see it at once
 	}
 	if i == 0 {
-		e.ticks.add(row{t: now, r: r, y: e.y.value(e.x, e.w), m: t.m[0], u: u})
+		e.ticks.add(&row{t: now, r: r, y: e.y.value(e.z), m: t.m[0], u: u})
 	}
 }
 
@@ -276,11 +279,11 @@ func (e *engine) free(p *advance, t, h float64) error {
 		e.watch.before(e)
 	}
 	if p == nil {
-		if err := e.flow.advanceBy(e.x, e.w, h); err != nil {
+		if err := e.flow.advanceBy(e.z, h); err != nil {
 			return err
 		}
 	} else {
-		p.apply(e.x, e.w, e.dx)
+		p.apply(e.z, e.dx)
 	}
 	if e.watch != nil {
 		if p != nil {
@@ -293,17 +296,19 @@ func (e *engine) free(p *advance, t, h float64) error {
 
 // look records the point at t and returns the tracking error.
 func (e *engine) look(t float64) (err float64, ok bool) {
-	p := row{t: t, r: e.r.at(t), y: e.y.value(e.x, e.w), u: e.tasks[0].held}
+	p := row{t: t, r: e.r.at(t), y: e.y.value(e.z), u: e.tasks[0].held}
 	p.m = p.y
 	if e.m != e.y {
-		p.m = e.m.value(e.x, e.w)
+		p.m = e.m.value(e.z)
 	}
-	if !(math.Abs(p.y) < tooLarge && math.Abs(p.m) < tooLarge && math.Abs(p.u) < tooLarge && math.Abs(p.r) < tooLarge) {
+	if !(math.Abs(p.y)+math.Abs(p.m)+math.Abs(p.u)+math.Abs(p.r) < tooLarge) {
 		return 0, false
 	}
-	e.points.add(p)
+	e.points.add(&p)
 	err = p.r - p.y
-	e.sum.look(t, err)
+	if math.Abs(err) > e.sum.peak {
+		e.sum.look(t, err)
+	}
 	return err, true
 }
 
@@ -323,7 +328,7 @@ func (e *engine) span(in *instant, err float64) (ok bool, fault error) {
 			}
 		} else {
 			t := in.t + in.length
-			err = e.r.at(t) - e.y.value(e.x, e.w)
+			err = e.r.at(t) - e.y.value(e.z)
 			if !(math.Abs(err) < tooLarge) {
 				return false, nil
 			}

@@ -22,10 +22,10 @@ type flow struct {
 	byExp map[int]*advance
 }
 
-// advance is one prepared step: x += E·(x, w).
+// advance is one prepared step: x += E·z, z = (x, w).
 type advance struct {
-	n, m int
-	e    []float64 // n rows of n+m
+	n int
+	e []float64 // E in blocks of four rows (the last filled up with zeros), each block by columns
 }
 
 // newFlow takes A (n×n), B (n×m) and S (m×m) row by row.
@@ -88,7 +88,7 @@ func columnScale(b []float64, m, j int, size float64) float64 {
 func (f *flow) step(h dd.Float) (*advance, error) {
 	e := expm1(f.aug, h)
 	N := f.n + f.m
-	out := &advance{n: f.n, m: f.m, e: make([]float64, f.n*N)}
+	out := &advance{n: f.n, e: make([]float64, (f.n+3)/4*4*N)}
 	for i := range f.n {
 		for j := range N {
 			v := e.v[i*N+j].Float64()
@@ -98,38 +98,44 @@ func (f *flow) step(h dd.Float) (*advance, error) {
 			if math.IsNaN(v) || math.IsInf(v, 0) {
 				return nil, fmt.Errorf("sim: the plant grows beyond the range of the arithmetic within %g s", h.Hi)
 			}
-			out.e[i*N+j] = v
+			out.e[i/4*4*N+4*j+i%4] = v
 		}
 	}
 	return out, nil
 }
 
-// apply does x += E·(x, w); dx is scratch of length n.
-func (p *advance) apply(x, w, dx []float64) {
-	n, m := p.n, p.m
-	x, dx, w = x[:n], dx[:n], w[:m]
-	for i := range dx {
-		row := p.e[i*(n+m) : (i+1)*(n+m)]
-		sum := 0.0
-		for j, v := range x {
-			sum += row[j] * v
+// apply does x += E·z on z = (x, w); dx is scratch for the states filled up to fours.
+func (p *advance) apply(z, dx []float64) {
+	e := p.e
+	for i := 0; i+4 <= len(dx); i += 4 {
+		var a, b, c, d float64
+		for _, v := range z {
+			q := e[:4]
+			a += q[0] * v
+			b += q[1] * v
+			c += q[2] * v
+			d += q[3] * v
+			e = e[4:]
 		}
-		row = row[n:]
-		for j, v := range w {
-			sum += row[j] * v
-		}
-		dx[i] = sum
+		r := dx[i : i+4]
+		r[0], r[1], r[2], r[3] = a, b, c, d
 	}
-	for i, v := range dx {
-		x[i] += v
+	x := z[:p.n]
+	dx = dx[:len(x)]
+	for i := range x {
+		x[i] += dx[i]
 	}
 }
 
+// scratch is what apply needs.
+func (f *flow) scratch() []float64 { return make([]float64, (f.n+3)/4*4) }
+
 // advanceBy propagates by any h >= 0: the binary digits of h by prepared steps of
-// 2^k seconds, kept, and the rest, where norm·h <= 1/4, by the series. w is taken along and
-// changed. Error as for step.
-func (f *flow) advanceBy(x, w []float64, h float64) error {
-	dx := make([]float64, f.n)
+// 2^k seconds, kept, and the rest, where norm·h <= 1/4, by the series. w is taken along. Error
+// as for step.
+func (f *flow) advanceBy(z []float64, h float64) error {
+	dx := f.scratch()
+	w := z[f.n:]
 	for h*f.norm > 0.25 {
 		_, k := math.Frexp(h)
 		k--
@@ -141,17 +147,18 @@ func (f *flow) advanceBy(x, w []float64, h float64) error {
 			}
 			f.byExp[k] = p
 		}
-		p.apply(x, w, dx)
+		p.apply(z, dx)
 		f.turn(w, math.Ldexp(1, k))
 		h -= math.Ldexp(1, k)
 	}
-	f.series(x, w, h)
+	f.series(z, h)
 	return nil
 }
 
 // series adds Σ (M·h)^k/k!·(x, w) for norm·h <= 1/4: 14 terms leave 4^-14/14! = 4e-20.
-func (f *flow) series(x, w []float64, h float64) {
+func (f *flow) series(z []float64, h float64) {
 	N := f.n + f.m
+	x, w := z[:f.n], z[f.n:]
 	v, next := make([]float64, N), make([]float64, N)
 	copy(v, x)
 	for j := range w {

@@ -5,7 +5,7 @@ type stepWatch struct {
 	find  *finder
 	final float64
 	slope []float64 // y' as a row over states and columns
-	x, w  []float64 // at the start of the stretch
+	z     []float64 // at the start of the stretch
 	v0, d float64
 }
 
@@ -15,10 +15,9 @@ func newStepWatch(e *engine, spec *StepSpec) *stepWatch {
 	N := f.n + f.m
 	s := &stepWatch{
 		find: newFinder(spec.Band), final: spec.Final, slope: make([]float64, N),
-		x: make([]float64, f.n), w: make([]float64, f.m),
+		z: make([]float64, N),
 	}
-	row := append(append([]float64(nil), e.y.c...), e.y.d...)
-	for i, c := range row {
+	for i, c := range e.y.row {
 		if c == 0 {
 			continue
 		}
@@ -37,31 +36,27 @@ func newStepWatch(e *engine, spec *StepSpec) *stepWatch {
 }
 
 // value and slope at a state, as parts of the final value.
-func (s *stepWatch) at(e *engine, x, w []float64) (v, d float64) {
-	for i, a := range x {
+func (s *stepWatch) at(e *engine, z []float64) (v, d float64) {
+	for i, a := range z {
 		d += s.slope[i] * a
 	}
-	for i, a := range w {
-		d += s.slope[len(x)+i] * a
-	}
-	return e.y.value(x, w) / s.final, d / s.final
+	return e.y.value(z) / s.final, d / s.final
 }
 
 // before is called at the start of a stretch.
 func (s *stepWatch) before(e *engine) {
-	copy(s.x, e.x)
-	copy(s.w, e.w)
-	s.v0, s.d = s.at(e, e.x, e.w)
+	copy(s.z, e.z)
+	s.v0, s.d = s.at(e, e.z)
 }
 
 // after is called at its end, t + h, with the columns turned to that instant.
 func (s *stepWatch) after(e *engine, t, h float64) {
-	v1, d1 := s.at(e, e.x, e.w)
+	v1, d1 := s.at(e, e.z)
 	s.find.add(span01{t: t, h: h, v0: s.v0, d0: s.d, v1: v1, d1: d1, at: func(theta float64) (float64, float64) {
-		x, w := append([]float64(nil), s.x...), append([]float64(nil), s.w...)
-		if err := e.flow.advanceBy(x, w, theta); err != nil {
+		z := append([]float64(nil), s.z...)
+		if err := e.flow.advanceBy(z, theta); err != nil {
 			return s.v0, 0 // cannot be: the whole stretch was passed without overflow
 		}
-		return s.at(e, x, w)
+		return s.at(e, z)
 	}})
 }
