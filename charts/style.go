@@ -15,14 +15,14 @@ type style struct {
 	Cross  string // "+" or "×" for poles, in place of a line
 }
 
-// palette: dark to light and blue against orange, so that it survives a grey printer and the three
-// kinds of colour-blind sight (style_test.go measures both).
+// The palette is told apart by people with any kind of colour-blind sight and stands out from white
+// (palette_test.go measures both); dash and symbol tell the curves apart without it.
 const (
 	ink    = "#1d2b36"
 	rust   = "#b8420f"
 	blue   = "#1f6f9f"
 	ochre  = "#c28a14"
-	violet = "#6d4a94"
+	violet = "#7433b0"
 	steel  = "#7d95a5"
 	grey   = "#8a9298"
 )

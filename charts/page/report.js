@@ -187,11 +187,13 @@
   function forPaper(on) {
     printing = on;
     for (const c of charts) {
+      const input = c.group.startsWith('input-'), grid = c.option.grid[0] || c.option.grid;
       const height = parseInt(document.getElementById(c.id).style.height, 10);
-      c.chart.resize(on ? { width: paperWidth, height: Math.round(height * (c.group.startsWith('input-') ? 0.58 : 0.74)) } : { width: 'auto', height: 'auto' });
+      c.chart.resize(on ? { width: paperWidth, height: Math.round(height * (input ? 0.6 : 0.74)) } : { width: 'auto', height: 'auto' });
       c.chart.setOption({
         dataZoom: c.option.dataZoom.map(z => z.type === 'slider' ? { show: !on } : {}),
-        toolbox: [{ show: !on }], grid: { bottom: on ? 24 : c.option.grid.bottom },
+        toolbox: [{ show: !on }], grid: { bottom: on ? 24 : grid.bottom, top: on && input ? 28 : grid.top },
+        yAxis: [{ nameGap: on && input ? 8 : c.option.yAxis[0].nameGap }],
       });
       if (!on) fit(c);
     }
