@@ -139,6 +139,7 @@ func (r *reader) csv(in *Input, name string, src []byte) bool {
 		if len(text) > 200 {
 			text = text[:200]
 		}
+		r.faults++
 		r.problems = append(r.problems, Problem{File: name, Line: line, Column: min(line, 1), LineText: text,
 			Message: message, Expected: expected})
 		return false

@@ -29,7 +29,7 @@ func (r *reader) pid(l *Loop, n *node, timed bool) []Term {
 	if broken {
 		return nil
 	}
-	faults := len(r.problems)
+	faults := r.faults
 	f := &pidForm{weight: big.NewRat(1, 1)}
 	var ok bool
 	if f.form, ok = r.choice(s.need("form", "form: parallel, standard or series"), "form", "parallel", "standard", "series"); !ok {
@@ -50,13 +50,11 @@ func (r *reader) pid(l *Loop, n *node, timed bool) []Term {
 			f.weight = c
 		}
 	}
-	if len(r.problems) == faults {
+	if r.faults == faults && !s.damaged() {
 		r.pidFilter(f, s)
-	}
-	if len(r.problems) == faults {
 		r.pidMaps(f, s)
 	}
-	if len(r.problems) > faults {
+	if r.faults > faults || s.damaged() {
 		return nil
 	}
 	terms := f.terms()

@@ -12,6 +12,7 @@ type reader struct {
 	file     string
 	lines    []string
 	problems Problems
+	faults   int // problems reported, those beyond maxProblems included
 	kept     struct { // the line that runes split last
 		n    int
 		line []rune
@@ -70,6 +71,7 @@ func (r *reader) stands(text string, p place) bool {
 func (r *reader) report(at place, message, expected string) { r.reportNear(at, message, expected, "") }
 
 func (r *reader) reportNear(at place, message, expected, near string) {
+	r.faults++
 	if len(r.problems) >= maxProblems {
 		return
 	}
@@ -153,6 +155,16 @@ func (s *section) keyAt(key string) place {
 		return e.at
 	}
 	return s.at
+}
+
+// damaged reports whether something of the section was reported and is missing now.
+func (s *section) damaged() bool {
+	for _, e := range s.values {
+		if e.value.broken || e.value.kind == emptyNode {
+			return true
+		}
+	}
+	return s.partial
 }
 
 // need is get for a key that must be there.
