@@ -46,8 +46,9 @@ type table [][]dd.Complex
 //	exp[2y_j, …, 2y_i] = 2^(j−i) Σ_k exp[y_k, …, y_i]·exp[y_j, …, y_k]
 //
 // For real nodes every E is positive and the doubling adds positive terms only.
-// Relative error of an entry about (s+n)·n·2^-104 then; measured below 1e-29 up to
-// |x| = 600, n = 13. len(x) is at most maxNodes (a larger one is a bug in the caller).
+// Relative error of an entry about (s+n)·n·2^-104 then, and |x|·2^-104 more where nodes are
+// imaginary; hold equivalents made from it agree with 300-digit ones to 4e-31 at
+// |x| = 5e4, n = 13 (TestReference, "twelve, mixed"). len(x) is at most maxNodes (a larger one is a bug in the caller).
 func expTable(x []dd.Complex) table {
 	r, s := 0.0, 0
 	for _, v := range x {
@@ -70,7 +71,7 @@ func expTable(x []dd.Complex) table {
 }
 
 // taylorTerms returns the number of terms after which r^m/m!, which bounds each
-// term of the Taylor sum relative to its first, is below 2^-108 (an eighth of dd.Eps·2^-1).
+// term of the Taylor sum relative to its first, is below 2^-108 (dd.Eps/16).
 func taylorTerms(r float64) int {
 	t := 1.0
 	for m := 1; m < 30; m++ {

@@ -32,12 +32,15 @@ func (e *DelayError) Error() string {
 	return fmt.Sprintf("%s: a delay of %s ticks: %s", e.Method, e.Ticks.FloatString(6), e.Reason)
 }
 
-// GrowthError tells of unstable poles so fast that the plant grows by more than
-// e^600 within one period.
-type GrowthError struct{ PT float64 } // sum of Re p·T over the unstable poles
+// GrowthError tells of poles (or, for the matched map, zeros) so far on the right
+// that e^{pT} multiplies to more than e^600.
+type GrowthError struct {
+	What string  // "pole" or "zero"
+	PT   float64 // sum of Re p·T over those with Re p > 0
+}
 
 func (e *GrowthError) Error() string {
-	return fmt.Sprintf("the plant's unstable poles grow by e^%.4g within one period (limit e^%d): no sampled model at this rate is meaningful", e.PT, maxGrowth)
+	return fmt.Sprintf("the unstable %ss of the model grow by e^%.4g within one period (limit e^%d): no sampled model at this rate is meaningful", e.What, e.PT, maxGrowth)
 }
 
 // RangeError tells of numbers outside what the arithmetic can hold.
@@ -47,7 +50,7 @@ type RangeError struct {
 }
 
 func (e *RangeError) Error() string {
-	return fmt.Sprintf("%s is %.4g, the limit is %.4g", e.What, e.Value, e.Limit)
+	return fmt.Sprintf("%s is %.4g, outside what the arithmetic holds (limit %.4g)", e.What, e.Value, e.Limit)
 }
 
 // PeriodError tells of a period that is not positive.

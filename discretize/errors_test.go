@@ -43,6 +43,10 @@ func TestErrors(t *testing.T) {
 		{"unstable, triangle", mapped(fast, "triangle", "", "1"), isType[*GrowthError], "e^700"},
 		{"too fast a pole", hold(lag, "1e13", "0"), isType[*RangeError], "1e+13"},
 		{"overflow", hold(model(t, []int64{1}, []int64{0, 0, 0, 0, 0, 0, 0, 1}), "1e60", "0"), isType[*RangeError], ""},
+		{"zero far right, matched", mapped(model(t, []int64{-800, 1}, []int64{1, 2, 1}), "matched", "", "1"), isType[*GrowthError], "zeros"},
+		{"pole next to nothing", hold(fromFactors(t, [][]string{{"1"}}, [][]string{{"1e-290", "1"}}), "1", "0"), isType[*RangeError], "1e-290"},
+		{"gain next to nothing", hold(fromFactors(t, [][]string{{"1e-400"}}, [][]string{{"1", "1"}}), "1", "0"), isType[*RangeError], "leading"},
+		{"gain beyond all bounds", mapped(fromFactors(t, [][]string{{"1e400"}}, [][]string{{"1", "1"}}), "matched", "", "1"), isType[*RangeError], "gain"},
 		{"no period", hold(lag, "0", "0"), isType[*PeriodError], "positive"},
 		{"negative period", mapped(lag, "tustin", "", "-1"), isType[*PeriodError], "-1"},
 		{"more than a tick ahead", hold(lag, "1", "-1.25"), isType[*DelayError], "-1.25"},
@@ -132,6 +136,15 @@ func TestPathological(t *testing.T) {
 		if a := find(m, dec(t, T)); len(a) != 0 {
 			t.Errorf("T = %s: %+v", T, a)
 		}
+	}
+	// a double mode is one alias, not four
+	m = model(t, []int64{1}, []int64{10001, 2, 1})
+	m, err := m.Mul(m)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if a := find(m, dec(t, "0.0314159")); len(a) != 1 {
+		t.Errorf("double mode: %+v", a)
 	}
 	// an integrator and an undamped mode at ωT = 2π, and the mode's own pair at k = 2
 	m = model(t, []int64{1}, []int64{0, 1, 0, 1})

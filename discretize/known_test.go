@@ -289,3 +289,38 @@ func mustAdd(t testing.TB, a, b sdomain.Model) sdomain.Model {
 	}
 	return out
 }
+
+// TestMatchedZeros: of three zeros at infinity one stays there and two go to z = −1;
+// a finite zero goes to e^{sT} (closed form).
+func TestMatchedZeros(t *testing.T) {
+	den := []int64{24, 50, 35, 10, 1} // (s+1)(s+2)(s+3)(s+4)
+	for _, c := range []struct {
+		num  []int64
+		want []float64
+	}{
+		{[]int64{1}, []float64{-1, -1, -1}},
+		{[]int64{5, 1}, []float64{-1, -1, math.Exp(-1.25)}},
+		{[]int64{5, 6, 1}, []float64{-1, math.Exp(-1.25), math.Exp(-0.25)}},
+	} {
+		h := mustMap(t, model(t, c.num, den), "matched", big.NewRat(1, 4))
+		want := make([]dd.Complex, len(c.want))
+		for i, z := range c.want {
+			want[i] = dd.C((z-1)*4, 0)
+		}
+		p := poly.FromRoots(want)
+		if len(h.TF.Num) != len(p) {
+			t.Errorf("%v: %d zeros, want %d", c.num, len(h.TF.Num)-1, len(want))
+			continue
+		}
+		lead := h.TF.Num[len(p)-1]
+		for i := range p {
+			// e^x rounded at 2^-53 and 1 − e^x > 0.2: a factor of 5 for each of three zeros
+			if got := h.TF.Num[i].Div(lead).Float64(); !(math.Abs(got-p[i].Float64()) <= 16*0x1p-53*math.Abs(got)) {
+				t.Errorf("%v: coefficient %d is %.17g, want %.17g", c.num, i, got, p[i].Float64())
+			}
+		}
+	}
+	if got := MatchedGain(model(t, []int64{1, 1}, []int64{0, 1, 1})); got != -1 {
+		t.Errorf("one integrator: gain matched at order %d, want −1", got)
+	}
+}

@@ -1,6 +1,7 @@
 package discretize
 
 import (
+	"math"
 	"math/big"
 
 	"steadytick/internal/dd"
@@ -34,11 +35,11 @@ func matched(m sdomain.Model, _ Spec, T *big.Rat) (zdomain.Model, error) {
 	if rel < 0 {
 		return zdomain.Model{}, &ImproperError{Method: "matched", Excess: -rel}
 	}
-	poles, err := matchedRoots(r.Poles, td)
+	poles, err := matchedRoots("pole", r.Poles, td)
 	if err != nil {
 		return zdomain.Model{}, err
 	}
-	zeros, err := matchedRoots(r.Zeros, td)
+	zeros, err := matchedRoots("zero", r.Zeros, td)
 	if err != nil {
 		return zdomain.Model{}, err
 	}
@@ -48,6 +49,9 @@ func matched(m sdomain.Model, _ Spec, T *big.Rat) (zdomain.Model, error) {
 	_, lead := r.Laurent(1)
 	num := poly.FromRoots(zeros)
 	gain := dd.FromRat(lead[0]).Mul(negProduct(poles))
+	if g := math.Abs(gain.Hi); !(g >= 1/maxGain && g <= maxGain) {
+		return zdomain.Model{}, &RangeError{"the gain of the mapped controller", g, maxGain}
+	}
 	num = num.Scale(gain.Div(num[0]))
 	num[0] = gain
 	return sampled(lti.TF{
@@ -57,13 +61,13 @@ func matched(m sdomain.Model, _ Spec, T *big.Rat) (zdomain.Model, error) {
 }
 
 // matchedRoots maps roots one by one, conjugates and equal ones alike.
-func matchedRoots(roots func() ([]dd.Complex, error), T dd.Float) ([]dd.Complex, error) {
+func matchedRoots(what string, roots func() ([]dd.Complex, error), T dd.Float) ([]dd.Complex, error) {
 	x, err := roots()
 	if err != nil {
 		return nil, err
 	}
 	p := Plant{lambda: sortPoles(x), num: len(x)}
-	if err := p.check(T); err != nil {
+	if err := checkRoots(what, x, T); err != nil {
 		return nil, err
 	}
 	return p.deltaPoles(T), nil

@@ -14,6 +14,8 @@ import (
 const (
 	maxGrowth = 600              // e^600 ≈ 1e260 leaves room for the other factors below 1e308
 	maxPT     = float64(1 << 40) // |p|·T: phases are then still good to 2^-104+40 ≈ 1e-19
+	minPT     = 1e-280           // below it e^{pT} − 1 underflows
+	maxGain   = 1e290            // and 1/maxGain: both words of a double-double hold digits
 	maxOrder  = 120              // nodes of an expTable less the two of the input
 )
 
@@ -75,6 +77,9 @@ func Prepare(m sdomain.Model) (*Plant, error) {
 	p.newton(a)
 	start, c := r.Laurent(1)
 	p.start, p.gain = start, dd.FromRat(c[0])
+	if g := math.Abs(p.gain.Hi); !(g >= 1/maxGain && g <= maxGain) {
+		return nil, &RangeError{"the leading coefficient of the model at s = 0", g, maxGain}
+	}
 	return p, nil
 }
 
@@ -117,17 +122,23 @@ func sortPoles(poles []dd.Complex) []dd.Complex {
 	return out
 }
 
-// check reports poles that this period is too long for.
-func (p *Plant) check(T dd.Float) error {
+// check reports poles for which this period is too long or too short.
+func (p *Plant) check(T dd.Float) error { return checkRoots("pole", p.lambda[:p.num], T) }
+
+// checkRoots does the same for any roots off the origin; what is "pole" or "zero".
+func checkRoots(what string, roots []dd.Complex, T dd.Float) error {
 	t, growth := T.Float64(), 0.0
-	for _, v := range p.lambda {
+	for _, v := range roots {
 		growth += math.Max(0, v.Re.Float64()*t)
-		if a := v.Abs() * t; !(a <= maxPT) {
-			return &RangeError{"the magnitude of a pole times the period", a, maxPT}
+		switch a := v.Abs() * t; {
+		case !(a <= maxPT):
+			return &RangeError{"the magnitude of a " + what + " times the period", a, maxPT}
+		case a < minPT:
+			return &RangeError{"the magnitude of a " + what + " times the period", a, minPT}
 		}
 	}
 	if !(growth <= maxGrowth) {
-		return &GrowthError{growth}
+		return &GrowthError{what, growth}
 	}
 	return nil
 }

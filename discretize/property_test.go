@@ -294,3 +294,60 @@ func TestMatchedPoles(t *testing.T) {
 		}
 	})
 }
+
+// TestExtremes: whatever the magnitudes, a method answers with finite numbers or an
+// error; it neither panics nor leaves a NaN.
+func TestExtremes(t *testing.T) {
+	number := func(t *rapid.T, name string, span int) *big.Rat {
+		e := rapid.IntRange(-span, span).Draw(t, name)
+		r := new(big.Rat).SetInt(new(big.Int).Exp(big.NewInt(10), big.NewInt(int64(max(e, -e))), nil))
+		if e < 0 {
+			r.Inv(r)
+		}
+		return r.Mul(r, big.NewRat(rapid.Int64Range(-3, 9).Draw(t, name+" digit"), 1))
+	}
+	rapid.Check(t, func(t *rapid.T) {
+		span := rapid.SampledFrom([]int{2, 12, 120, 400}).Draw(t, "span")
+		var num, den exact.Poly
+		for range rapid.IntRange(1, 4).Draw(t, "num") {
+			num = append(num, number(t, "b", span))
+		}
+		for range rapid.IntRange(1, 5).Draw(t, "den") {
+			den = append(den, number(t, "a", span))
+		}
+		r, err := exact.FromPolys(exact.NewPoly(num...), exact.NewPoly(den...))
+		if err != nil {
+			return
+		}
+		m := sdomain.Model{Ratio: r, Delay: new(big.Rat)}
+		T := period().Draw(t, "T")
+		for _, method := range Methods() {
+			h, err := Map(m, Spec{Method: method, At: big.NewRat(1, 10)}, T)
+			checkFinite(t, method, h, err)
+		}
+		h, err := Hold(m, T, new(big.Rat).Mul(T, big.NewRat(7, 3)))
+		checkFinite(t, "Hold", h, err)
+		if _, err := Pathological(m, T); err != nil {
+			t.Log(err)
+		}
+	})
+}
+
+func checkFinite(t *rapid.T, name string, h zdomain.Model, err error) {
+	if err != nil {
+		if err.Error() == "" {
+			t.Fatalf("%s: empty message", name)
+		}
+		return
+	}
+	for i, v := range h.TF.Num {
+		if !v.IsFinite() || i == 0 && v.Sign() == 0 {
+			t.Fatalf("%s: numerator %v", name, h.TF.Num)
+		}
+	}
+	for _, v := range h.TF.Poles {
+		if !v.IsFinite() || v.IsZero() {
+			t.Fatalf("%s: poles %v", name, h.TF.Poles)
+		}
+	}
+}

@@ -17,8 +17,8 @@ import (
 //	Γ1_k = T^(k+1)·exp[0, λ_0T, …, λ_kT],   Γ2_k = T^(k+1)·exp[0, 0, λ_0T, …, λ_kT]
 //
 // Preserved: stability, order, DC gain, integrators, the step and ramp response at the
-// ticks, up to two zeros at s = 0. Distortion: gain and phase are off by order (ωT)²
-// only. It passes its newest sample straight through even where G does not.
+// ticks, up to two zeros at s = 0. Distortion: a little gain is lost,
+// H − G ≈ T²·(s²/12)·G(s), no phase. It passes its newest sample straight through even where G does not.
 // (Franklin, Powell, Workman, Digital Control of Dynamic Systems, "triangle-hold
 // equivalent"; from memory.)
 func triangle(m sdomain.Model, _ Spec, T *big.Rat) (zdomain.Model, error) {
