@@ -19,7 +19,7 @@ type factored struct {
 }
 
 // maxFactored bounds what is kept; the lengths come from a ladder of halvings, so few are needed.
-const maxFactored = 256
+const maxFactored = 64
 
 // collocate solves the loop over h from the present state,
 //

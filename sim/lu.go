@@ -2,51 +2,78 @@ package sim
 
 import "math"
 
-// lu is a square matrix factored by rows with the largest pivot of each column.
+// lu is a square matrix with its factors, the pivot of each column being the largest entry.
 type lu struct {
-	n    int
-	v    []float64
-	perm []int
+	n       int
+	a, v    []float64 // the matrix, its factors; rows one after the other
+	perm    []int
+	x, rest []float64
 }
 
-// factor decomposes a (n×n, rows one after the other), which it overwrites; ok is false for a
+// factor decomposes a (n×n, rows one after the other), which it keeps; ok is false for a
 // singular matrix.
 func factor(a []float64, n int) (f *lu, ok bool) {
-	f = &lu{n: n, v: a, perm: make([]int, n)}
+	v := append([]float64(nil), a...)
+	f = &lu{n: n, a: a, v: v, perm: make([]int, n), x: make([]float64, n), rest: make([]float64, n)}
 	for k := range n {
 		p := k
 		for i := k + 1; i < n; i++ {
-			if math.Abs(a[i*n+k]) > math.Abs(a[p*n+k]) {
+			if math.Abs(v[i*n+k]) > math.Abs(v[p*n+k]) {
 				p = i
 			}
 		}
 		f.perm[k] = p
 		if p != k {
 			for j := range n {
-				a[k*n+j], a[p*n+j] = a[p*n+j], a[k*n+j]
+				v[k*n+j], v[p*n+j] = v[p*n+j], v[k*n+j]
 			}
 		}
-		if v := math.Abs(a[k*n+k]); v == 0 || math.IsNaN(v) || math.IsInf(v, 0) {
+		if top := math.Abs(v[k*n+k]); top == 0 || math.IsNaN(top) || math.IsInf(top, 0) {
 			return nil, false
 		}
-		top := a[k*n+k+1 : (k+1)*n]
-		for i := k + 1; i < n; i++ {
-			if a[i*n+k] == 0 {
-				continue
-			}
-			m := a[i*n+k] / a[k*n+k]
-			a[i*n+k] = m
-			row := a[i*n+k+1 : (i+1)*n]
-			for j, t := range top {
-				row[j] -= m * t
-			}
-		}
+		f.eliminate(k)
 	}
 	return f, true
 }
 
-// solve overwrites b with the solution.
+// eliminate takes row k from the rows below it.
+func (f *lu) eliminate(k int) {
+	n, v := f.n, f.v
+	top := v[k*n+k+1 : (k+1)*n]
+	for i := k + 1; i < n; i++ {
+		if v[i*n+k] == 0 {
+			continue
+		}
+		m := v[i*n+k] / v[k*n+k]
+		v[i*n+k] = m
+		row := v[i*n+k+1 : (i+1)*n]
+		for j, t := range top {
+			row[j] -= m * t
+		}
+	}
+}
+
+// solve overwrites b with the solution. One step of refinement in the same precision makes the
+// error small in each row by itself (Skeel, 1980), so that small unknowns keep their digits
+// beside large ones.
 func (f *lu) solve(b []float64) {
+	n := f.n
+	copy(f.x, b)
+	f.substitute(f.x)
+	for i := range n {
+		sum := b[i]
+		for j, v := range f.a[i*n : (i+1)*n] {
+			sum -= v * f.x[j]
+		}
+		f.rest[i] = sum
+	}
+	f.substitute(f.rest)
+	for i := range n {
+		b[i] = f.x[i] + f.rest[i]
+	}
+}
+
+func (f *lu) substitute(b []float64) {
 	n := f.n
 	for k, p := range f.perm {
 		b[k], b[p] = b[p], b[k]
@@ -68,7 +95,7 @@ func (f *lu) solve(b []float64) {
 	}
 }
 
-// inverse of a small well-conditioned matrix, which it overwrites.
+// inverse of a small well-conditioned matrix.
 func inverse(a []float64, n int) []float64 {
 	f, ok := factor(a, n)
 	if !ok {

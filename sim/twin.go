@@ -59,7 +59,7 @@ var ErrTwinLength = errors.New("sim: the continuous loop changes too fast for so
 
 // maxPieces bounds the work: a piece follows about a sixth of a period of the fastest
 // oscillation that has not died out.
-const maxPieces = 2_000_000
+const maxPieces = 500_000
 
 func (c *TwinConfig) check() error {
 	if !(c.Duration > 0) || math.IsInf(c.Duration, 0) {
@@ -307,6 +307,9 @@ func (w *twin) try(room float64) (s *stretch, next float64, err error) {
 		}
 		// A tail that no longer falls by 2^3 with half the length is rounding, not signal.
 		if rest < 1e-9 && rest > last/8 {
+			if last < 1e-9 {
+				return s, 4 * h, nil // the length that failed was rounding, too
+			}
 			return s, 2 * h, nil
 		}
 		if rest <= resolved {
