@@ -161,8 +161,9 @@ In place of model, with e = r − m, T the period, Td = Kd/Kp:
 
 Each part is mapped by itself and the parts are then added and multiplied. In the series
 form i is the map of Kp·(1 + 1/(Ti·s)) and d that of the lead (Td·s + 1)/(Tf·s + 1); with
-the derivative on the measurement d is the map of lead − 1, which is the same for every map
-but matched. A proportional part alone needs no map.
+the derivative on the measurement d is the map of lead − 1, and with a setpoint_weight other
+than 1 i is the map of Kp/(Ti·s) alone; only with matched does that make a difference. A
+proportional part alone needs no map.
 
 # Actuator
 
@@ -194,13 +195,13 @@ as an algebraic loop, and so is one whose continuous equations have no solution
 At most 20, each a mapping of one key. A kind may stand more than once; metrics refer to
 the first of it.
 
-	- step: 1                                     of r
-	- ramp: 2                                     slope of r
-	- parabola: 1.5                               acceleration a, r = a·t²/2
-	- sine: {size: 0.1, frequency: 3 Hz}          amplitude
-	- move: {distance: 1, velocity: 2, acceleration: 10, jerk: 200}    all above 0
-	- file: ref.csv                               r over time, looked up beside the loop file
-	- load_step: 0.5                              step of d
+  - step: 1                                     of r
+  - ramp: 2                                     slope of r
+  - parabola: 1.5                               acceleration a, r = a·t²/2
+  - sine: {size: 0.1, frequency: 3 Hz}          amplitude
+  - move: {distance: 1, velocity: 2, acceleration: 10, jerk: 200}    all above 0
+  - file: ref.csv                               r over time, looked up beside the loop file
+  - load_step: 0.5                              step of d
 
 A file has the header t_s,r and two rows or more (at most a million), rising times from 0 on
 in seconds.

@@ -147,10 +147,10 @@ func twoReadings(left, right *expr) string {
 	if minus {
 		right, first = &expr{kind: exprMinus, x: right}, &expr{kind: exprMinus, x: first}
 	}
-	one := print(&expr{kind: exprDiv, x: left, y: right}, 0)
-	two := "(" + print(&expr{kind: exprDiv, x: left, y: first}, 0) + ")"
+	one := writeExpr(&expr{kind: exprDiv, x: left, y: right}, 0)
+	two := "(" + writeExpr(&expr{kind: exprDiv, x: left, y: first}, 0) + ")"
 	for _, e := range rest {
-		two += "*" + print(e, levelPower)
+		two += "*" + writeExpr(e, levelPower)
 	}
 	if len(one)+len(two) > 120 {
 		return "a/(b*c) or (a/b)*c"
@@ -273,72 +273,4 @@ func (p *exprParser) stray(t lexeme) *expr {
 		return p.fail(t.at, "this parenthesis was never opened", "", "")
 	}
 	return p.fail(t.at, fmt.Sprintf("%s does not fit here", quote(t.text)), operand, "")
-}
-
-// Levels of binding, loosest first.
-const (
-	levelSum = iota
-	levelProduct
-	levelUnary
-	levelPower
-	levelAtom
-)
-
-func (e *expr) level() int {
-	switch e.kind {
-	case exprAdd, exprSub:
-		return levelSum
-	case exprMul, exprDiv:
-		return levelProduct
-	case exprMinus:
-		return levelUnary
-	case exprPow:
-		return levelPower
-	}
-	return levelAtom
-}
-
-// String writes the expression so that parsing it gives the same tree again.
-func (e *expr) String() string { return print(e, levelSum) }
-
-// print writes e, in parentheses when it binds looser than level.
-func print(e *expr, level int) string {
-	var s string
-	switch e.kind {
-	case exprNumber, exprName:
-		s = e.text
-	case exprSqrt:
-		s = "sqrt(" + print(e.x, levelSum) + ")"
-	case exprExp:
-		s = "exp(" + print(e.x, levelSum) + ")"
-	case exprMinus:
-		s = "-" + print(e.x, levelPower)
-	case exprPow:
-		s = print(e.x, levelAtom) + "^" + printExponent(e.y)
-	default:
-		l := e.level()
-		s = print(e.x, l) + string(e.kind) + print(e.y, l+1)
-		if e.y.kind == exprMinus {
-			s = print(e.x, l) + string(e.kind) + "(" + print(e.y, levelSum) + ")"
-		}
-	}
-	if e.level() < level {
-		return "(" + s + ")"
-	}
-	return s
-}
-
-func printExponent(e *expr) string {
-	if e.kind == exprMinus && e.x.level() == levelAtom {
-		return "-" + print(e.x, levelAtom)
-	}
-	return print(e, levelAtom)
-}
-
-// same reports whether two expressions are the same tree, places apart.
-func (e *expr) same(f *expr) bool {
-	if e == nil || f == nil {
-		return e == f
-	}
-	return e.kind == f.kind && e.text == f.text && e.x.same(f.x) && e.y.same(f.y)
 }

@@ -67,8 +67,8 @@ func (q Problem) print(b *strings.Builder) {
 	}
 }
 
-// Columns of a terminal kept before and after the place of a long line.
-const before, after = 50, 28
+// Columns of a terminal that are kept before and behind the place of a long line.
+const keepBefore, keepAfter = 50, 28
 
 // excerpt returns the line as shown and the pointer line that belongs under it. Tabs
 // become four spaces, characters without a shape become U+FFFD, a long line is cut
@@ -82,10 +82,10 @@ func excerpt(line string, column int) (text, pointer string) {
 	}
 	at := min(max(column-1, 0), len(cells))
 	from, to := at, at
-	for w := 0; from > 0 && w+widths[from-1] <= before; from-- {
+	for w := 0; from > 0 && w+widths[from-1] <= keepBefore; from-- {
 		w += widths[from-1]
 	}
-	for w := 0; to < len(cells) && w+widths[to] <= after+(before-sum(widths[from:at])); to++ {
+	for w := 0; to < len(cells) && w+widths[to] <= keepAfter+(keepBefore-sum(widths[from:at])); to++ {
 		w += widths[to]
 	}
 	text, pad := strings.Join(cells[from:to], ""), sum(widths[from:at])
