@@ -95,7 +95,8 @@ const converged = 0x1p-96
 
 // polish improves a root by Newton's method. From 1e-6 three steps reach the
 // arithmetic; at a multiple root steps shrink by less and end in noise: 12 steps are
-// the bound, and a step that is small and not smaller than the last ends it.
+// the bound, and a step that is small and not smaller than the last ends it. A real
+// root stays real: rounding in conjugate factors would move it off the axis.
 func (c characteristic) polish(x dd.Complex) dd.Complex {
 	last := math.Inf(1)
 	for range 12 {
@@ -104,6 +105,9 @@ func (c characteristic) polish(x dd.Complex) dd.Complex {
 			return x
 		}
 		step := f.Div(df)
+		if x.Im.Sign() == 0 {
+			step.Im = dd.Zero
+		}
 		size := step.Abs()
 		if !step.IsFinite() || size > last/2 && size < 1e-6*x.Abs() {
 			return x

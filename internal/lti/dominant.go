@@ -28,7 +28,7 @@ func dominant(ch characteristic, f factored, limit int) (half []dd.Complex, comp
 		case want == total(half)+ch.hiddenRight(sigma):
 			return half, true
 		case round < 3:
-			c.fill(half, sigma, round)
+			c.fill(sigma, round)
 		}
 	}
 	half, _, _ = cutAt(half, ch, limit)
@@ -128,8 +128,13 @@ func countRight(f factored, sigma float64) (n int, ok bool) {
 	return n, !marginal || p.hidden && !p.exhausted
 }
 
-// fill makes further starts over the rectangle that the roots known so far span.
-func (c *chain) fill(half []dd.Complex, sigma float64, round int) {
+// fill makes further starts: in the gaps of the chain, then over the rectangle that the
+// roots known so far span.
+func (c *chain) fill(sigma float64, round int) {
+	if round == 0 {
+		c.gaps()
+		return
+	}
 	top, right := 1/c.tau, sigma+1/c.tau
 	for _, s := range c.found {
 		if real(s) >= sigma {
@@ -149,4 +154,30 @@ func (c *chain) fill(half []dd.Complex, sigma float64, round int) {
 		}
 	}
 	c.near(places)
+}
+
+// gaps starts between neighbours of the chain that are further apart in height than
+// 1.2 times the spacing 2π/τ, and below the first.
+func (c *chain) gaps() {
+	list := append([]complex128(nil), c.found...)
+	sort.Slice(list, func(i, j int) bool { return imag(list[i]) < imag(list[j]) })
+	spacing := 2 * math.Pi / c.tau
+	var places []complex128
+	last := complex(0, 0)
+	for i, s := range list {
+		if i == 0 {
+			last = complex(real(s), 0)
+		}
+		n := int(math.Min(imag(s-last)/spacing+0.8, 16))
+		for k := 1; k < n; k++ {
+			f := complex(float64(k)/float64(n), 0)
+			places = append(places, last+(s-last)*f)
+		}
+		last = s
+	}
+	for _, p := range places[:min(len(places), 200)] {
+		if r, ok := c.deflated(p); ok {
+			c.add(r)
+		}
+	}
 }

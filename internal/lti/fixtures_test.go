@@ -71,3 +71,8 @@ func wantNear(t *testing.T, what string, got, want, tol float64) {
 		t.Errorf("%s = %.17g, want %.17g (relative error %.2g, allowed %.2g)", what, got, want, relative(got, want), tol)
 	}
 }
+
+// fromRoots is a monic polynomial.
+func fromRoots(r []dd.Complex) poly.Poly { return poly.FromRoots(r) }
+
+func abs128(v complex128) float64 { return math.Hypot(real(v), imag(v)) }

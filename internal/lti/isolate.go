@@ -35,11 +35,14 @@ type span struct {
 //	|f(t) − f(m)| <= |f'(m)|·h + M·h²/2
 //
 // excludes intervals without a level, and |f'(m)| > M·h makes f monotone, so
-// that the ends tell all (of up to 256 levels); everything else is halved. A point where the curve only touches
-// a level shrinks to the last halving and is returned when it is within 1e-12 of it.
+// that the ends tell all (of up to 256 levels); everything else is halved. Where the curve
+// stays within 1e-12 of a level, at a tangent or over a band, it only touches: a single
+// level (|L| = 1) then yields one point for the whole stretch, repeated ones (phase) none,
+// rounding being all that could tell where to put it.
 // The search stops when *budget evaluations are used up.
 func (c curve) crossings(lo, hi float64, budget *int) []float64 {
 	var out []float64
+	touched := math.Inf(-1) // end of the last stretch that touches
 	stack := []span{{lo, hi, 0}}
 	for len(stack) > 0 && *budget > 0 && len(out) < maxLevels {
 		s := stack[len(stack)-1]
@@ -59,10 +62,12 @@ func (c curve) crossings(lo, hi float64, budget *int) []float64 {
 		case math.Abs(df) > bend*h && (reach < 256*c.step || c.step == 0):
 			*budget -= 2
 			out = c.monotone(s.lo, s.hi, out)
-		case s.depth >= maxHalvings || !(s.lo < m && m < s.hi):
-			if at, ok := c.first(f - touching); ok && at <= f+touching {
+		case reach <= touching || s.depth >= maxHalvings || !(s.lo < m && m < s.hi):
+			near, ok := c.first(f - touching)
+			if ok && near <= f+touching && c.step == 0 && s.lo > touched {
 				out = append(out, m)
 			}
+			touched = s.hi
 		default:
 			stack = append(stack, span{m, s.hi, s.depth + 1}, span{s.lo, m, s.depth + 1})
 		}

@@ -70,7 +70,9 @@ func noMargins(stable bool) MarginSet {
 func (p *plane) margins(l TF, gains []float64, stable bool) MarginSet {
 	m := noMargins(stable)
 	for _, nu := range gains {
-		m.GainCrossings = append(m.GainCrossings, p.gainCrossing(l, nu))
+		if c := p.gainCrossing(l, nu); c.W > 0 && !math.IsInf(c.W, 1) {
+			m.GainCrossings = append(m.GainCrossings, c)
+		}
 	}
 	last := 0.0
 	if len(gains) > 0 {
@@ -92,8 +94,9 @@ func (p *plane) margins(l TF, gains []float64, stable bool) MarginSet {
 	if !math.IsInf(nu, 1) {
 		m.ModulusW = p.omega(nu)
 		if nu > 0 {
-			v := l.response(dd.New(m.ModulusW))
-			m.Modulus = math.Min(m.Modulus, v.Add(dd.Real(dd.One)).Abs())
+			if v := l.response(dd.New(m.ModulusW)); v.IsFinite() {
+				m.Modulus = magnitude(v.Add(dd.Real(dd.One)))
+			}
 		}
 	} else if p.period != 0 {
 		m.ModulusW = p.omega(nu)

@@ -2,6 +2,7 @@ package lti
 
 import (
 	"math"
+	"math/cmplx"
 
 	"steadytick/internal/dd"
 )
@@ -42,7 +43,10 @@ func reversePhase(v dd.Complex) float64 {
 // convergence from float64 accuracy needs one or two steps; four are the bound.
 func refine(l TF, p *plane, nu, df float64, miss func(dd.Complex) float64) place {
 	at := place{w: dd.New(p.omega(nu))}
-	at.l = l.response(at.w)
+	if at.l = l.response(at.w); !at.l.IsFinite() {
+		at.l = p.response(nu) // partial products leave the range of float64
+		return at
+	}
 	err := miss(at.l)
 	slope := df * p.stretch(nu) * math.Ldexp(1, -p.scale)
 	for range 4 {
@@ -52,10 +56,17 @@ func refine(l TF, p *plane, nu, df float64, miss func(dd.Complex) float64) place
 		}
 		next.l = l.response(next.w)
 		e := miss(next.l)
-		if !(math.Abs(e) < math.Abs(err)) {
+		if !next.l.IsFinite() || !(math.Abs(e) < math.Abs(err)) {
 			break
 		}
 		at, err = next, e
 	}
 	return at
+}
+
+// response is L(jν) in float64.
+func (p *plane) response(nu float64) dd.Complex {
+	f, _ := p.gain(nu)
+	a, _ := p.phase(nu)
+	return dd.FromComplex(cmplx.Rect(math.Exp(f), a))
 }

@@ -1,0 +1,9 @@
+package lti
+
+// lambertHalf is W_m(-1/2), the branches with Im > 0, from the right: mpmath lambertw.
+var lambertHalf = []complex128{
+	complex(-0.79402363234468936796, 0.77011175051037910968),
+	complex(-2.7720690151530819682, 7.499943028341875789),
+	complex(-3.3533515988111112499, 13.900449335276884513),
+	complex(-3.717333782718220872, 20.238702410031968396),
+}
