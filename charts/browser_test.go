@@ -111,7 +111,7 @@ func (b *tab) open(t *testing.T, page string, width int64) string {
 	if err := os.WriteFile(file, []byte(page), 0o644); err != nil {
 		t.Fatal(err)
 	}
-	ctx, cancel := context.WithTimeout(b.ctx, 60*time.Second)
+	ctx, cancel := context.WithTimeout(b.ctx, 120*time.Second)
 	defer cancel()
 	if err := chromedp.Do(ctx, chromedp.EmulateViewport(width, 900), chromedp.Navigate("file://"+file)); err != nil {
 		t.Fatal(err)
@@ -121,7 +121,7 @@ func (b *tab) open(t *testing.T, page string, width int64) string {
 
 func eval[T any](t *testing.T, b *tab, script string) T {
 	t.Helper()
-	ctx, cancel := context.WithTimeout(b.ctx, 60*time.Second)
+	ctx, cancel := context.WithTimeout(b.ctx, 120*time.Second)
 	defer cancel()
 	v, err := chromedp.Run(ctx, chromedp.Evaluate[T](script, chromedp.EvalAwaitPromise))
 	if err != nil {
@@ -261,7 +261,7 @@ func TestReportPrints(t *testing.T) {
 	b := openTab(t)
 	address := b.open(t, render(t, winch()), 1280)
 	before := eval[json.RawMessage](t, b, `[...document.querySelectorAll('.chart svg')].map(s => s.getAttribute('width') + ' ' + s.getAttribute('height'))`)
-	ctx, cancel := context.WithTimeout(b.ctx, 60*time.Second)
+	ctx, cancel := context.WithTimeout(b.ctx, 120*time.Second)
 	defer cancel()
 	pdf, err := chromedp.Run(ctx, chromedp.PrintToPDF(chromedp.PDFPreferCSSPageSize()))
 	if err != nil {

@@ -1,6 +1,8 @@
 package charts
 
 import (
+	"strconv"
+
 	echarts "github.com/go-echarts/go-echarts/v2/charts"
 	"github.com/go-echarts/go-echarts/v2/opts"
 )
@@ -50,8 +52,7 @@ func (d *details) VisitSeriesOpt(all echarts.MultiSeries) any {
 		if st.Cross != "" {
 			out[i].ItemStyle = object{"color": "transparent", "borderColor": st.Color, "borderWidth": 1.8}
 		} else if s.Type == "scatter" {
-			out[i].ItemStyle = object{"color": st.Color, "borderColor": "#ffffff", "borderWidth": 0.8}
-			out[i].Z = 5
+			out[i].ItemStyle = object{"color": st.Color, "borderWidth": 0}
 		}
 	}
 	return out
@@ -86,6 +87,9 @@ func axisOption(a axis, name, kind string) object {
 		"splitLine":     object{"show": true, "lineStyle": object{"color": gridColor}},
 		"splitNumber":   5,
 	}
+	if a.max != nil && !a.log && shortNumber(*a.max/a.unit.scale) != *a.max/a.unit.scale {
+		o["axisLabel"].(object)["showMaxLabel"] = false // an end like 1.716 between ticks at 0.3
+	}
 	if a.min != nil {
 		o["min"] = *a.min
 	}
@@ -102,6 +106,12 @@ func axisOption(a axis, name, kind string) object {
 		o["axisTick"] = object{"show": false}
 	}
 	return o
+}
+
+// shortNumber rounds v to two significant digits.
+func shortNumber(v float64) float64 {
+	short, _ := strconv.ParseFloat(strconv.FormatFloat(v, 'g', 2, 64), 64)
+	return short
 }
 
 // VisitGrid implements echarts.ConfigurationVisitor.

@@ -7,7 +7,7 @@ import (
 )
 
 // rates draws margins and errors over the sample rate and the rate window: three sections, for their
-// curves have nothing in common.
+// curves have nothing in common. They are no variants, so each section starts with the first styles.
 func (cv *canvas) rates(c *study.Compare) ([]section, error) {
 	var out []section
 	every := append(append([]study.Curve{}, c.Curves.PhaseMarginOverRate...), c.Curves.ErrorOverRate...)
@@ -37,7 +37,7 @@ func (cv *canvas) marginOverRate(c *study.Compare, x axis, marks []mark) (sectio
 		}
 	}
 	ch := chart{id: "margin-over-rate", x: x, y: axis{quantity: "phase margin", unit: plain("deg")},
-		series: cv.styled(c.Curves.PhaseMarginOverRate), marks: marks}
+		series: (&canvas{}).styled(c.Curves.PhaseMarginOverRate), marks: marks}
 	err := cv.add(&s, ch, "Phase margin over the sample rate", "", 320)
 	return s, err
 }
@@ -50,8 +50,7 @@ func (cv *canvas) errorOverRate(c *study.Compare, x axis, marks []mark) (section
 		low, high = math.Pow(10, math.Floor(math.Log10(low))), math.Pow(10, math.Ceil(math.Log10(high)))
 		y.log, y.min, y.max = true, &low, &high
 	}
-	apart := &canvas{} // these curves are inputs, not variants: they start with the first styles
-	ch := chart{id: "error-over-rate", x: x, y: y, series: apart.styled(c.Curves.ErrorOverRate), marks: marks}
+	ch := chart{id: "error-over-rate", x: x, y: y, series: (&canvas{}).styled(c.Curves.ErrorOverRate), marks: marks}
 	err := cv.add(&s, ch, "Steady tracking error over the sample rate", "", 320)
 	return s, err
 }

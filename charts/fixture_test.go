@@ -53,7 +53,7 @@ type variant struct {
 
 var variants = []variant{
 	{"continuous", 0.62, 0, 0, true},
-	{"sampled", 0.44, 5e-4, 1.46e-4, true},
+	{"sampled at 2 kHz", 0.44, 5e-4, 1.46e-4, true},
 	{"2x rate", 0.52, 2.5e-4, 1.46e-4, true},
 	{"half rate", 0.31, 1e-3, 1.46e-4, true},
 	{"quarter rate", 0.12, 2e-3, 1.46e-4, true},
@@ -91,8 +91,8 @@ func inputCurves(label string, slope float64, all []variant) study.InputCurves {
 		u := curve(v.name, ticks, end, func(t float64) float64 { return 4.2*(ref(t)-y(t)) + 2*slope })
 		u.Step = v.period > 0
 		in.Effort = append(in.Effort, u)
-		if v.name == "sampled" {
-			dots := curve("sampled, at the ticks", ticks, end, func(t float64) float64 { return ref(t) - y(t) })
+		if strings.HasPrefix(v.name, "sampled") {
+			dots := curve("sampled at 2 kHz, at the ticks", ticks, end, func(t float64) float64 { return ref(t) - y(t) })
 			dots.Dots = true
 			in.Error = append(in.Error, dots)
 		}
@@ -129,7 +129,7 @@ func column(stable bool) *study.Column {
 			{Input: "ramp", Size: study.Fig(2), TrackingError: study.Fig(0.027649769585253458), LoopError: study.Fig(0.028449769585253458),
 				WorstError: study.Fig(0.0276501), Ripple: study.Fig(3.1e-7), Asymptote: &[3]study.Figure{study.Fig(0.027649769585253458), study.Fig(0), study.Fig(0)}},
 			{Input: "parabola", Size: study.Fig(1.5), TrackingError: study.Fig(math.Inf(1)), LoopError: study.Fig(math.Inf(1)), WorstError: study.Fig(math.Inf(1)),
-				Ripple: study.Fig(1.2e-6), Asymptote: &[3]study.Figure{study.Fig(-1.53465e-5), study.Fig(0.020737327188940093), study.Fig(0)}},
+				Ripple: study.Fig(1.2e-6), EndError: study.Fig(0.169859), EndTimeS: study.Fig(1.71545), Asymptote: &[3]study.Figure{study.Fig(-1.53465e-5), study.Fig(0.020737327188940093), study.Fig(0)}},
 			{Input: "sine", Size: study.Fig(0.4), FrequencyRadS: study.Fig(31.41592653589793), TrackingError: study.Fig(0.17), LoopError: study.Fig(0.18),
 				WorstError: study.Fig(0.1702), Ripple: study.Fig(2e-5), PhaseDeg: study.Fig(64.2)},
 		},
@@ -192,7 +192,7 @@ func addLoopCurves(c *study.Compare) {
 	cu.GainDB = []study.Curve{logCurve("continuous", 400, 3, 3e4, gain), logCurve("sampled", 400, 3, cu.NyquistRadS, gain)}
 	cu.PhaseDeg = []study.Curve{logCurve("continuous", 400, 3, 3e4, phase(0)), logCurve("sampled", 400, 3, cu.NyquistRadS, phase(3.96e-4))}
 	poles := func(name string, all [][2]float64) study.Curve {
-		p := study.Curve{Name: name}
+		p := study.Curve{Name: name, Dots: true}
 		for _, z := range all {
 			p.X, p.Y = append(p.X, z[0]), append(p.Y, z[1])
 		}
@@ -248,11 +248,11 @@ func stormy() *study.Compare {
 }
 
 func addPoles(c *study.Compare) {
-	p := study.Curve{Name: "sampled"}
+	p := study.Curve{Name: "sampled", Dots: true}
 	for _, z := range c.Sampled.EquivalentPoles {
 		p.X, p.Y = append(p.X, z[0]), append(p.Y, z[1])
 	}
-	c.Curves.Poles = []study.Curve{{Name: "continuous", X: []float64{-96.3, -188.4, -188.4, -2410.7}, Y: []float64{0, 241.9, -241.9, 0}}, p}
+	c.Curves.Poles = []study.Curve{{Name: "continuous", Dots: true, X: []float64{-96.3, -188.4, -188.4, -2410.7}, Y: []float64{0, 241.9, -241.9, 0}}, p}
 }
 
 // allIDs are the charts that a result with all curves has.

@@ -140,12 +140,12 @@ func (s series) options() []echarts.SeriesOpts {
 		o.ShowSymbol = opts.Bool(true)
 		o.ItemStyle = &opts.ItemStyle{Color: s.style.Color}
 		switch {
-		case s.curve.Dots:
-			o.Type, o.Symbol, o.SymbolSize = "scatter", "circle", 5
-			data.mark = ""
-			o.Data = data
 		case s.style.Cross != "":
 			o.Type, o.Symbol, o.SymbolSize = "scatter", crossPath[s.style.Cross], crossSize[s.style.Cross]
+			data.mark = ""
+			o.Data = data
+		case s.curve.Dots:
+			o.Type, o.Symbol, o.SymbolSize = "scatter", "circle", 4
 			data.mark = ""
 			o.Data = data
 		case s.curve.Step:

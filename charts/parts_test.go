@@ -156,3 +156,20 @@ func TestMissingFigureFindsItsWarning(t *testing.T) {
 		}
 	}
 }
+
+// Poles are crosses, a different one for each column, whether or not the curve says dots.
+func TestPolesAreCrosses(t *testing.T) {
+	cv := &canvas{}
+	if _, err := cv.poles(winch()); err != nil {
+		t.Fatal(err)
+	}
+	var o struct {
+		Series []struct{ Name, Symbol, Type string }
+	}
+	if err := json.Unmarshal(cv.drawings[0].Option, &o); err != nil {
+		t.Fatal(err)
+	}
+	if o.Series[0].Symbol != crossPath["+"] || o.Series[1].Symbol != crossPath["×"] || o.Series[0].Type != "scatter" {
+		t.Errorf("%+v", o.Series)
+	}
+}

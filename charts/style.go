@@ -72,12 +72,12 @@ func (s *styles) of(name string) style {
 }
 
 func (s *styles) choose(name string) style {
-	switch name {
-	case "r", "reference":
+	switch {
+	case name == "r" || name == "reference":
 		return referenceStyle
-	case "continuous":
+	case name == "continuous":
 		return continuousStyle
-	case "sampled":
+	case strings.HasPrefix(name, "sampled"): // "sampled at 2 kHz"
 		return sampledStyle
 	}
 	st := furtherStyles[s.next%len(furtherStyles)]

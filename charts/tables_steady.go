@@ -30,9 +30,8 @@ func (t tables) steadyOf(i int) group {
 			break
 		}
 	}
-	u := t.c.Units
-	g := group{Title: inputTitle(*first, u)}
-	for _, q := range steadyQuantities(first.Input, u) {
+	g := group{Title: inputTitle(*first, t.c.Units)}
+	for _, q := range t.steadyQuantities(i) {
 		get := q.get
 		r := t.row(quantity{q.label, q.hint, q.unit, fmt.Sprintf("steady.%d.%s", i, q.path), func(c *study.Column) study.Figure {
 			if i >= len(c.Steady) {
@@ -79,24 +78,29 @@ type steadyQuantity struct {
 	get                     func(study.Steady) study.Figure
 }
 
-// steadyQuantities are the figures that make sense for the kind of input.
-func steadyQuantities(kind string, u study.Units) []steadyQuantity {
+// steadyQuantities are the figures that are there for every input, and those further ones that either
+// column has.
+func (t tables) steadyQuantities(i int) []steadyQuantity {
+	u := t.c.Units
 	out := []steadyQuantity{
 		{"tracking error", "r − y", u.Output, "tracking_error", func(s study.Steady) study.Figure { return s.TrackingError }},
 		{"loop error", "r − m", u.Output, "loop_error", func(s study.Steady) study.Figure { return s.LoopError }},
 		{"worst tracking error", "at and between ticks", u.Output, "worst_error", func(s study.Steady) study.Figure { return s.WorstError }},
 		{"ripple", "between ticks, peak to peak", u.Output, "ripple", func(s study.Steady) study.Figure { return s.Ripple }},
 	}
-	switch kind {
-	case "sine":
-		out = append(out,
-			steadyQuantity{"phase of the error", "against r", "deg", "phase_deg", func(s study.Steady) study.Figure { return s.PhaseDeg }})
-	case "move", "file":
-		out = append(out,
-			steadyQuantity{"peak tracking error", "", u.Output, "peak_tracking_error", func(s study.Steady) study.Figure { return s.PeakError }},
-			steadyQuantity{"rms tracking error", "", u.Output, "rms_tracking_error", func(s study.Steady) study.Figure { return s.RMSError }},
-			steadyQuantity{"tracking error at the end", "", u.Output, "end_error", func(s study.Steady) study.Figure { return s.EndError }},
-			steadyQuantity{"end of the input", "", timeUnit, "end_time_s", func(s study.Steady) study.Figure { return s.EndTimeS }})
+	for _, q := range []steadyQuantity{
+		{"phase of the error", "against r", "deg", "phase_deg", func(s study.Steady) study.Figure { return s.PhaseDeg }},
+		{"peak tracking error", "simulated", u.Output, "peak_tracking_error", func(s study.Steady) study.Figure { return s.PeakError }},
+		{"rms tracking error", "simulated", u.Output, "rms_tracking_error", func(s study.Steady) study.Figure { return s.RMSError }},
+		{"tracking error at the end", "simulated", u.Output, "end_error", func(s study.Steady) study.Figure { return s.EndError }},
+		{"which is at", "", timeUnit, "end_time_s", func(s study.Steady) study.Figure { return s.EndTimeS }},
+	} {
+		for _, n := range t.columns() {
+			if n.col != nil && i < len(n.col.Steady) && q.get(n.col.Steady[i]).OK {
+				out = append(out, q)
+				break
+			}
+		}
 	}
 	return out
 }
