@@ -116,9 +116,9 @@ func encode(v any) (json.RawMessage, error) {
 
 func (c chart) right() string {
 	if c.zoomY {
-		return "36"
+		return "42"
 	}
-	return "18"
+	return "24"
 }
 
 func (a axis) kind() string {
