@@ -1,0 +1,163 @@
+package study
+
+import (
+	"fmt"
+	"math"
+
+	"steadytick/loop"
+)
+
+// metric looks a metric of the sampled loop up by its name in requirements. The value
+// is in the metric's base unit; the text says why there is none.
+func metric(l *loop.Loop, c *Compare, name string) (Figure, string) {
+	s := c.Sampled
+	if f, why, ok := steadyMetric(s, name); ok {
+		return f, why
+	}
+	T := c.PeriodS
+	value := func(f Figure) (Figure, string) {
+		if !f.OK {
+			return f, "the loop has no such figure"
+		}
+		return f, ""
+	}
+	switch name {
+	case "position_constant":
+		return value(s.PositionConstant)
+	case "velocity_constant":
+		return value(s.VelocityConstant)
+	case "acceleration_constant":
+		return value(s.AccelerationConstant)
+	case "phase_margin":
+		return value(s.PhaseMarginDeg)
+	case "gain_margin":
+		return value(s.GainMarginDB)
+	case "modulus_margin":
+		return value(s.ModulusMargin)
+	case "delay_margin":
+		return value(s.DelayMarginS)
+	case "jitter_margin":
+		return value(s.JitterMarginS)
+	case "crossover":
+		return value(s.CrossoverRadS)
+	case "bandwidth":
+		return value(s.BandwidthRadS)
+	case "overshoot":
+		return value(s.Transient.OvershootPercent)
+	case "rise_time":
+		return value(s.Transient.RiseTimeS)
+	case "settling_time":
+		return value(s.Transient.SettlingTimeS)
+	case "peak_effort":
+		return value(s.Transient.PeakEffort)
+	case "samples_per_rise":
+		f := s.Transient.RiseTimeS
+		f.Value /= T
+		return value(f)
+	case "processor_load":
+		cost, _ := l.Timing.Compute.Float64()
+		return Fig(100 * cost / T), ""
+	}
+	return Figure{}, "this metric needs parts of the loop file that compare does not evaluate"
+}
+
+// steadyMetric finds the metrics that belong to an input.
+func steadyMetric(s *Column, name string) (f Figure, why string, ok bool) {
+	kinds := map[string]string{"step_error": "step", "ramp_error": "ramp", "parabola_error": "parabola", "load_error": "load_step"}
+	if kind, found := kinds[name]; found {
+		for _, e := range s.Steady {
+			if e.Input != kind {
+				continue
+			}
+			if !e.WorstError.OK {
+				return Figure{}, "the loop is unstable", true
+			}
+			return e.WorstError, "", true
+		}
+		return Figure{}, fmt.Sprintf("inputs has no %s", kind), true
+	}
+	pick := map[string]func(Steady) Figure{
+		"ripple":              func(e Steady) Figure { return e.Ripple },
+		"peak_tracking_error": func(e Steady) Figure { return e.PeakError },
+		"rms_tracking_error":  func(e Steady) Figure { return e.RMSError },
+	}[name]
+	if pick == nil {
+		return Figure{}, "", false
+	}
+	worst := Figure{}
+	for _, e := range s.Steady {
+		if v := pick(e); v.OK && (!worst.OK || v.Value > worst.Value) {
+			worst = v
+		}
+	}
+	if !worst.OK {
+		why = "no input of the file has this figure (peak and rms belong to a move or a file), or the loop is unstable"
+	}
+	return worst, why, true
+}
+
+// requirementUnit is the base unit in which a metric is compared and printed.
+func requirementUnit(name string, u Units) string {
+	switch name {
+	case "step_error", "ramp_error", "parabola_error", "load_error", "ripple", "peak_tracking_error", "rms_tracking_error", "stuck_error":
+		return u.Output
+	case "phase_margin":
+		return "deg"
+	case "gain_margin":
+		return "dB"
+	case "delay_margin", "jitter_margin", "rise_time", "settling_time":
+		return "s"
+	case "crossover", "bandwidth":
+		return "rad/s"
+	case "overshoot", "processor_load":
+		return "%"
+	case "peak_effort", "effort_noise":
+		return u.Effort
+	case "word_margin":
+		return "bits"
+	}
+	return ""
+}
+
+// judge evaluates the requirements of the loop file on the sampled loop.
+func judge(l *loop.Loop, c *Compare) {
+	c.Requirements = []Requirement{}
+	for _, r := range l.Requirements {
+		v, why := metric(l, c, r.Name)
+		out := Requirement{Name: r.Name, Op: r.Op, Limit: r.Limit, Value: v, Unit: requirementUnit(r.Name, c.Units)}
+		switch {
+		case v.OK:
+			met := meets(v.Value, r.Op, r.Limit)
+			out.Met = &met
+		case !c.Sampled.Stable:
+			met := false
+			out.Met = &met
+		default:
+			c.warn("requirement_not_judged", "requirement %q cannot be judged: %s", r.Text, why)
+		}
+		c.Requirements = append(c.Requirements, out)
+	}
+}
+
+// meets compares; a NaN meets nothing.
+func meets(v float64, op string, limit float64) bool {
+	switch op {
+	case "<=":
+		return v <= limit
+	case "<":
+		return v < limit
+	case ">=":
+		return v >= limit
+	case ">":
+		return v > limit
+	}
+	return false
+}
+
+// errorMagnitude is for charts: finite or NaN.
+func errorMagnitude(f Figure) float64 {
+	if !f.OK || math.IsInf(f.Value, 0) {
+		return math.NaN()
+	}
+	return math.Abs(f.Value)
+}

@@ -1,0 +1,49 @@
+package study
+
+import (
+	"context"
+	"io"
+
+	"steadytick/loop"
+	"steadytick/sim"
+)
+
+// SimulationCSV is one simulated input, ready to be written.
+type SimulationCSV struct {
+	trace *sim.Trace
+	twin  *sim.TwinTrace
+}
+
+// Write writes one row an instant: t_s, r, y, m, u, and y and u of the continuous twin
+// (empty without one).
+func (s SimulationCSV) Write(w io.Writer) error { return sim.WriteCSV(w, s.trace, s.twin) }
+
+// Simulate runs input number i (from 0) of the file through the loop as it will run,
+// converters included, and through its continuous twin at the same instants.
+func Simulate(ctx context.Context, l *loop.Loop, i int, o Options) (SimulationCSV, error) {
+	cont, sampled, err := bothColumns(l, &Compare{})
+	if err != nil {
+		return SimulationCSV{}, err
+	}
+	in := l.Inputs[i]
+	length := horizon(l, in, cont, sampled)
+	cfg, err := sampledConfig(l, sampled.block, in, length, true)
+	if err != nil {
+		return SimulationCSV{}, err
+	}
+	o.progress("simulation for --csv", 0, 1)
+	var out SimulationCSV
+	if out.trace, err = sim.Run(ctx, cfg); err != nil {
+		return out, err
+	}
+	if cont == nil {
+		return out, nil
+	}
+	twin, err := twinConfig(l, in, out.trace.FinalT)
+	if err != nil {
+		return out, err
+	}
+	twin.Times = out.trace.T
+	out.twin, err = sim.Twin(ctx, twin)
+	return out, err
+}

@@ -1,0 +1,76 @@
+package study
+
+import (
+	"context"
+	"errors"
+
+	"steadytick/loop"
+	"steadytick/sim"
+)
+
+// transients fills the step figures of both columns, at the size of the first step of
+// the file (1 without one) and with the actuator's limits.
+func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyzed, tick func(string)) error {
+	in := loop.Input{Kind: "step", Size: 1}
+	for _, x := range l.Inputs {
+		if x.Kind == "step" && x.Size != 0 {
+			in = x
+			break
+		}
+	}
+	length := horizon(l, in, cont, sampled)
+	if cont != nil && cont.stable {
+		tick("continuous step")
+		f, err := twinFigures(ctx, l, in, length, cont.stepSpec(l, in))
+		switch {
+		case errors.Is(err, sim.ErrTwinLength):
+			c.warn("no_continuous_simulation", "%v: the continuous column has no step figures and no curves", err)
+		case err != nil:
+			return err
+		default:
+			c.Continuous.Transient = transientOf(f)
+			warnSaturation(c, l, "continuous", f)
+		}
+	}
+	if !sampled.stable {
+		return nil
+	}
+	tick("sampled step")
+	cfg, err := sampledConfig(l, sampled.block, in, length, false)
+	if err != nil {
+		return err
+	}
+	f, _, err := sim.StepFigures(ctx, cfg, sampled.stepSpec(l, in))
+	if err != nil {
+		return err
+	}
+	c.Sampled.Transient = transientOf(f)
+	warnSaturation(c, l, "sampled", f)
+	return nil
+}
+
+// stepSpec asks for figures about the final value (1 − c0)·size.
+func (a *analyzed) stepSpec(l *loop.Loop, in loop.Input) sim.StepSpec {
+	return sim.StepSpec{Final: (1 - a.tracking[0]) * in.Size, Band: l.SettlingBand}
+}
+
+func transientOf(f sim.Figures) Transient {
+	fig := func(m sim.Maybe) Figure { return Figure{m.Value, m.OK} }
+	return Transient{
+		OvershootPercent: fig(f.OvershootPercent), RiseTimeS: fig(f.RiseTime),
+		SettlingTimeS: fig(f.SettlingTime), PeakTimeS: fig(f.PeakTime), PeakEffort: fig(f.PeakEffort),
+	}
+}
+
+// warnSaturation tells when the step reaches a limit of the actuator: its figures are then not
+// those of the linear loop.
+func warnSaturation(c *Compare, l *loop.Loop, column string, f sim.Figures) {
+	limits := l.Actuator.Limits
+	if limits == nil || !f.PeakEffort.OK {
+		return
+	}
+	least := min(-limits[0], limits[1])
+	if f.PeakEffort.Value >= least*(1-1e-9) {
+		c.warn("effort_saturates", "%s column: the step takes the effort to its limit (%.6g %s): overshoot, rise and settling are those of the limited loop at this size of step, not of the linear one", column, f.PeakEffort.Value, l.Effort)
+	}
+}

@@ -1,0 +1,87 @@
+package study
+
+import (
+	"fmt"
+	"math/big"
+
+	"steadytick/loop"
+)
+
+// variant is one way to run the sampled loop in the degradation study.
+type variant struct {
+	name       string
+	loop       *loop.Loop // at the variant's rate
+	run        *analyzed  // nil where the variant cannot run: note says why
+	note       string
+	converters bool // quantize m and u as the file says
+}
+
+// variants builds the loop at its own rate and delay first, then the rates and delays of the study.
+func variants(l *loop.Loop, own *analyzed, d Degrade) []variant {
+	out := []variant{{name: "sampled at " + rateText(l.Timing.Period), loop: l, run: own}}
+	for _, f := range d.Rates {
+		period := new(big.Rat).Quo(l.Timing.Period, f)
+		v := variant{name: fmt.Sprintf("at %s (%s× rate)", rateText(period), ratText(f))}
+		other, problems := l.WithRate(period)
+		if len(problems) > 0 {
+			v.note = problems[0].Message
+		} else {
+			v.loop = other
+			v.analyse(other.Timing.LoopDelay())
+		}
+		out = append(out, v)
+	}
+	for _, x := range d.Delays {
+		v := variant{name: "no delay", loop: l}
+		delay := new(big.Rat)
+		if !x.None {
+			v.name = fmt.Sprintf("%d more ticks of delay", x.Extra)
+			if x.Extra == 1 {
+				v.name = "one more tick of delay"
+			}
+			delay.Mul(l.Timing.Period, big.NewRat(int64(x.Extra), 1))
+			delay.Add(delay, l.Timing.LoopDelay())
+		}
+		v.analyse(delay)
+		out = append(out, v)
+	}
+	if l.Sensor.Bits > 0 || l.Actuator.Bits > 0 {
+		out = append(out, variant{name: "own rate, with converters", loop: l, run: own, converters: true})
+	}
+	return out
+}
+
+// analyse fills run for v.loop with the given delay.
+func (v *variant) analyse(delay *big.Rat) {
+	b, err := assembleSampled(v.loop, v.loop.Timing.Period, delay)
+	if err == nil {
+		v.run, err = analyze(v.loop, b)
+	}
+	if err != nil {
+		v.note = err.Error()
+	}
+}
+
+// ratText writes a factor shortly: 2, 0.5, 1/3.
+func ratText(f *big.Rat) string {
+	x, _ := f.Float64()
+	return number(x)
+}
+
+// rateText writes the rate of a period with a unit that suits it.
+func rateText(period *big.Rat) string {
+	hz, _ := new(big.Rat).Inv(period).Float64()
+	return hertzText(hz)
+}
+
+func hertzText(hz float64) string {
+	switch {
+	case hz >= 1e6:
+		return number(hz/1e6) + " MHz"
+	case hz >= 1e3:
+		return number(hz/1e3) + " kHz"
+	case hz >= 0.1:
+		return number(hz) + " Hz"
+	}
+	return number(hz*1e3) + " mHz"
+}

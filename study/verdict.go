@@ -1,0 +1,117 @@
+package study
+
+import (
+	"fmt"
+	"math"
+	"strings"
+)
+
+// verdict is one sentence (two where requirements fail) that says what sampling
+// does to the loop and names the largest cause.
+func verdict(c *Compare) string {
+	s, cont := c.Sampled, c.Continuous
+	rate := "Sampled at " + hertzText(1/c.PeriodS)
+	var text string
+	switch {
+	case !s.Stable && cont != nil && !cont.Stable:
+		text = rate + " the loop is unstable, and so is the continuous loop: mend the design before the sample rate."
+	case !s.Stable:
+		text = rate + " the loop is unstable" + culprit(c, cont, ": ") + "."
+	case cont != nil && !cont.Stable:
+		text = rate + " the loop is stable, though the continuous loop is not."
+	default:
+		text = rate + " the loop is stable" + marginChange(c, cont) + "."
+	}
+	if e := errorChange(c); s.Stable && e != "" {
+		text += " " + e
+	}
+	return text + failed(c.Requirements)
+}
+
+// number is a figure in a sentence: four digits.
+func number(v float64) string { return fmt.Sprintf("%.4g", v) }
+
+// marginChange tells how the phase margin changes and why.
+func marginChange(c *Compare, cont *Column) string {
+	s := c.Sampled.PhaseMarginDeg
+	if !s.OK || math.IsInf(s.Value, 0) {
+		return ""
+	}
+	if cont == nil || !cont.PhaseMarginDeg.OK || math.IsInf(cont.PhaseMarginDeg.Value, 0) {
+		return fmt.Sprintf(" with %s° of phase margin", number(s.Value))
+	}
+	was := cont.PhaseMarginDeg.Value
+	if s.Value > was {
+		return fmt.Sprintf("; the phase margin is %s°, against %s° of the continuous loop", number(s.Value), number(was))
+	}
+	return fmt.Sprintf("; the phase margin falls from %s° to %s°", number(was), number(s.Value)) + culprit(c, nil, ", ")
+}
+
+// culprit names the largest entry of the delay ledger that sampling brought in.
+func culprit(c *Compare, cont *Column, join string) string {
+	var worst LedgerItem
+	total := 0.0
+	for _, i := range c.DelayLedger {
+		if i.Item == "plant dead time" || i.Item == "sensor lag" || !i.Degrees.OK {
+			continue
+		}
+		total += math.Max(0, i.Degrees.Value)
+		if i.Degrees.Value > worst.Degrees.Value {
+			worst = i
+		}
+	}
+	if total <= 0 {
+		return ""
+	}
+	if cont != nil && cont.PhaseMarginDeg.OK && !math.IsInf(cont.PhaseMarginDeg.Value, 0) {
+		return join + fmt.Sprintf("the continuous loop has %s° of phase margin, sampling adds %s° of lag at crossover, the most by the %s (%s°)",
+			number(cont.PhaseMarginDeg.Value), number(total), worst.Item, number(worst.Degrees.Value))
+	}
+	return join + fmt.Sprintf("of the %s° of lag that sampling adds at crossover the most comes from the %s (%s°)",
+		number(total), worst.Item, number(worst.Degrees.Value))
+}
+
+// errorChange compares the steady error of the first input that has one in both columns.
+func errorChange(c *Compare) string {
+	for i, s := range c.Sampled.Steady {
+		if !s.WorstError.OK || s.WorstError.Value == 0 || s.Input == "load_step" {
+			continue
+		}
+		now := s.WorstError.Value
+		what := "tracking error for the " + InputLabel(s, c.Units)
+		if math.IsInf(now, 0) {
+			continue
+		}
+		if c.Continuous == nil || !c.Continuous.Steady[i].WorstError.OK {
+			return fmt.Sprintf("The %s is %s %s.", what, number(now), c.Units.Output)
+		}
+		was := c.Continuous.Steady[i].WorstError.Value
+		if math.Abs(now-was) <= 1e-3*math.Abs(was) {
+			return fmt.Sprintf("The %s stays at %s %s.", what, number(now), c.Units.Output)
+		}
+		return fmt.Sprintf("The %s goes from %s to %s %s, between the ticks included.", what, number(was), number(now), c.Units.Output)
+	}
+	return ""
+}
+
+// failed lists the requirements that are not met.
+func failed(list []Requirement) string {
+	var names []string
+	for _, r := range list {
+		if r.Met != nil && !*r.Met {
+			names = append(names, r.Name)
+		}
+	}
+	switch {
+	case len(names) > 0:
+		return " Not met: " + strings.Join(names, ", ") + "."
+	case len(list) > 0:
+		for _, r := range list {
+			if r.Met == nil {
+				return ""
+			}
+		}
+		return " All requirements are met."
+	}
+	return ""
+}
