@@ -1,0 +1,147 @@
+package main
+
+import (
+	"fmt"
+	"io"
+
+	"steadytick/study"
+)
+
+// printCompare prints the tables of a comparison.
+func printCompare(w io.Writer, c *study.Compare) error {
+	t := &table{w: w}
+	t.line("%s", c.Loop)
+	t.line("  a tick of %s, sample to update %s", seconds(c.PeriodS), seconds(c.LoopDelayS))
+	t.line("")
+	if t.err == nil {
+		printWrapped(w, "", c.Verdict)
+	}
+	t.line("")
+	t.row("", "", "continuous", "sampled")
+	for _, r := range study.ComparisonRows(c) {
+		t.row(r.Name, r.Unit, cell(c.Continuous, r), cell(c.Sampled, r))
+	}
+	printSteady(t, c)
+	printPoles(t, c)
+	printLedger(t, c)
+	printDegrade(t, c)
+	printRequirements(t, c)
+	t.line("")
+	if t.err == nil {
+		printWrapped(w, "", study.Caution)
+	}
+	return t.err
+}
+
+// cell is one value of a comparison row.
+func cell(col *study.Column, r study.ComparisonRow) string {
+	if col == nil {
+		return "—"
+	}
+	if r.Word != nil {
+		return r.Word(col)
+	}
+	return show(r.Figure(col))
+}
+
+// printSteady prints the steady errors, both columns, input by input.
+func printSteady(t *table, c *study.Compare) {
+	if len(c.Sampled.Steady) == 0 {
+		return
+	}
+	t.line("")
+	t.line("Steady error (tracking: r − y; loop: r − m)")
+	t.row("", "", "continuous", "sampled")
+	for i, s := range c.Sampled.Steady {
+		var cont *study.Steady
+		if c.Continuous != nil {
+			cont = &c.Continuous.Steady[i]
+		}
+		for _, r := range study.SteadyRows(s, c.Units) {
+			left := "—"
+			if cont != nil {
+				left = show(r.Figure(cont))
+			}
+			t.row(r.Name, r.Unit(c.Units), left, show(r.Figure(&s)))
+		}
+	}
+}
+
+// printPoles prints the closed-loop poles, the sampled ones as their equivalents.
+func printPoles(t *table, c *study.Compare) {
+	const most = 12
+	t.line("")
+	t.line("Closed-loop poles in rad/s (sampled: ln z / T), slowest first")
+	var left [][2]float64
+	if c.Continuous != nil {
+		left = c.Continuous.Poles
+	}
+	right := c.Sampled.EquivalentPoles
+	t.line("  %s%s", padLeft("continuous", 37), padLeft("sampled", 38))
+	for i := 0; i < max(len(left), len(right)) && i < most; i++ {
+		t.line("  %s%s", padLeft(pole(left, i), 37), padLeft(pole(right, i), 38))
+	}
+	if n := max(len(left), len(right)); n > most {
+		t.line("  … and %d more in --json", n-most)
+	}
+}
+
+func pole(list [][2]float64, i int) string {
+	switch {
+	case i >= len(list):
+		return ""
+	case list[i][1] == 0:
+		return fmt.Sprintf("%.6g", list[i][0])
+	}
+	return fmt.Sprintf("%.6g %+.6gj", list[i][0], list[i][1])
+}
+
+// printLedger prints where the lag around the loop comes from.
+func printLedger(t *table, c *study.Compare) {
+	t.line("")
+	t.line("Delay ledger: lag around the sampled loop, degrees at its crossover")
+	t.row("", "", "seconds", "degrees")
+	for _, i := range c.DelayLedger {
+		t.row(i.Item, "", show(study.Fig(i.Seconds)), show(i.Degrees))
+	}
+}
+
+// printDegrade prints how sampling and delay degrade tracking.
+func printDegrade(t *table, c *study.Compare) {
+	if len(c.Degrade) == 0 {
+		return
+	}
+	t.line("")
+	t.line("Tracking error of the simulated loop, %s", c.Units.Output)
+	last := ""
+	for _, r := range c.Degrade {
+		if r.Input != last {
+			t.line("  %s%s%s%s", padRight(cut(r.Input, 30), 33), padLeft("peak", 14), padLeft("rms", 14), padLeft("steady", 14))
+			last = r.Input
+		}
+		if r.Note != "" && !r.PeakError.OK {
+			t.line("    %s%s", padRight(cut(r.Variant, 30), 31), cut(r.Note, 44))
+			continue
+		}
+		t.line("    %s%s%s%s", padRight(cut(r.Variant, 30), 31), padLeft(show(r.PeakError), 14), padLeft(show(r.RMSError), 14), padLeft(show(r.SteadyError), 14))
+	}
+}
+
+// printRequirements prints the requirements with what the sampled loop reaches.
+func printRequirements(t *table, c *study.Compare) {
+	if len(c.Requirements) == 0 {
+		return
+	}
+	t.line("")
+	t.line("Requirements (sampled loop)")
+	for _, r := range c.Requirements {
+		verdict := "cannot be judged"
+		if r.Met != nil {
+			verdict = "met"
+			if !*r.Met {
+				verdict = "NOT MET"
+			}
+		}
+		t.line("  %s %s %s%s  %s", padRight(cut(r.Name, 24), 25), padRight(r.Op, 2), padLeft(fmt.Sprintf("%.6g %s", r.Limit, r.Unit), 18), padLeft(show(r.Value), 14), verdict)
+	}
+}

@@ -1,0 +1,53 @@
+package main
+
+import (
+	"fmt"
+	"io"
+	"os"
+
+	"steadytick/internal/wholefile"
+)
+
+// writeTo writes to path, or to stdout for "-".
+func writeTo(stdout io.Writer, path string, fill func(io.Writer) error) error {
+	if path == "-" {
+		return fill(stdout)
+	}
+	if err := wholefile.Write(path, fill); err != nil {
+		return requestf("cannot write %s: %v", path, err)
+	}
+	return nil
+}
+
+// progress prints how far a long piece of work has come on one line of a terminal;
+// elsewhere it is silent.
+type progress struct {
+	w     io.Writer
+	live  bool
+	shown bool
+}
+
+func newProgress(w io.Writer) *progress {
+	p := &progress{w: w}
+	if f, ok := w.(*os.File); ok {
+		info, err := f.Stat()
+		p.live = err == nil && info.Mode()&os.ModeCharDevice != 0
+	}
+	return p
+}
+
+// step shows what is being done, part of whole.
+func (p *progress) step(what string, done, all int) {
+	if p.live {
+		p.shown = true
+		fmt.Fprintf(p.w, "\r\x1b[K%s (%d of %d)", what, done, all)
+	}
+}
+
+// clear removes the line.
+func (p *progress) clear() {
+	if p.live && p.shown {
+		fmt.Fprint(p.w, "\r\x1b[K")
+		p.shown = false
+	}
+}
