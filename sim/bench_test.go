@@ -54,3 +54,27 @@ func TestMillionTicks(t *testing.T) {
 		t.Errorf("10⁶ ticks take %g allocations, 10⁴ take %g", big, small)
 	}
 }
+
+// BenchmarkTwin is the continuous twin of a loop of order six over a motion.
+func BenchmarkTwin(b *testing.B) {
+	move, err := Move(1.5, 2, 9, 60)
+	if err != nil {
+		b.Fatal(err)
+	}
+	cfg := TwinConfig{
+		Plant:  model(b, rats("80"), rats("1", "60", "500", "0"), "0"),
+		Sensor: model(b, one(), rats("0.0004", "1"), "0"),
+		Terms: []TwinTerm{
+			{model(b, rats("0.4", "8"), rats("0.002", "1"), "0"), 1}, {model(b, rats("1"), rats("1", "0"), "0"), 1},
+		},
+		Reference: move, Duration: 2.5,
+	}
+	b.ReportAllocs()
+	for b.Loop() {
+		tr, err := Twin(context.Background(), cfg)
+		if err != nil {
+			b.Fatal(err)
+		}
+		b.ReportMetric(float64(tr.Pieces), "pieces")
+	}
+}

@@ -157,7 +157,7 @@ func realizeModel(m sdomain.Model) (*chain, error) {
 	if err != nil {
 		return nil, err
 	}
-	return realize(tf)
+	return realizeExact(tf, m.Ratio)
 }
 
 // deadTime is the delay of m, 0 when it has none.

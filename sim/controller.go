@@ -5,7 +5,6 @@ import (
 	"fmt"
 	"math/big"
 
-	"steadytick/internal/lti"
 	"steadytick/zdomain"
 )
 
@@ -124,6 +123,10 @@ func (c *Controller) block(m zdomain.Model, split bool) (*block, error) {
 		b.rho, g = splitIntegrators(g)
 	}
 	var err error
-	b.chain, err = realize(lti.TF{Num: g.Num, Poles: g.Poles, OriginZeros: g.OriginZeros, OriginPoles: g.OriginPoles})
+	if len(b.rho) == 0 && m.Exact != nil {
+		b.chain, err = realizeExact(g, *m.Exact)
+	} else {
+		b.chain, err = realize(g, nil)
+	}
 	return b, err
 }

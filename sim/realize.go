@@ -5,6 +5,7 @@ import (
 	"math"
 
 	"steadytick/internal/dd"
+	"steadytick/internal/exact"
 	"steadytick/internal/lti"
 	"steadytick/internal/poly"
 )
@@ -31,23 +32,22 @@ type chain struct {
 	d    float64
 }
 
-// realize returns the cascade of g without its delay. Errors: ErrImproper, ErrRange,
-// those of poly.Roots.
-func realize(g lti.TF) (*chain, error) {
+// realize returns the cascade of g without its delay. zeros are the zeros of g.Num where they
+// are known better than its coefficients tell them (multiple zeros), else nil. Errors:
+// ErrImproper, ErrRange, those of poly.Roots.
+func realize(g lti.TF, zeros []dd.Complex) (*chain, error) {
 	if len(g.Num) == 0 {
 		return &chain{}, nil
 	}
-	zeros, err := g.Num.Roots()
-	if err != nil {
-		return nil, err
+	if zeros == nil {
+		var err error
+		if zeros, err = g.Num.Roots(); err != nil {
+			return nil, err
+		}
 	}
-	for range g.OriginZeros {
-		zeros = append(zeros, dd.Complex{})
-	}
+	zeros = append(zeros, make([]dd.Complex, g.OriginZeros)...)
 	poles := append([]dd.Complex(nil), g.Poles...)
-	for range g.OriginPoles {
-		poles = append(poles, dd.Complex{})
-	}
+	poles = append(poles, make([]dd.Complex, g.OriginPoles)...)
 	if len(zeros) > len(poles) {
 		return nil, ErrImproper
 	}
@@ -55,6 +55,18 @@ func realize(g lti.TF) (*chain, error) {
 		return nil, ErrRange
 	}
 	return assemble(sections(poles, zeros), leading(g.Num))
+}
+
+// realizeExact is realize for a g that is known as an exact ratio, r without the delay.
+func realizeExact(g lti.TF, r exact.Ratio) (*chain, error) {
+	if r.IsZero() {
+		return &chain{}, nil
+	}
+	zeros, err := r.Zeros()
+	if err != nil {
+		return nil, err
+	}
+	return realize(g, append([]dd.Complex{}, zeros...))
 }
 
 func leading(p poly.Poly) float64 { return p[p.Degree()].Float64() }

@@ -25,7 +25,7 @@ type timeline interface{ next() (*instant, error) }
 
 // maxSlots is the longest cycle of instants that is prepared; beyond it they are sought
 // one by one.
-const maxSlots = 4096
+const maxSlots = 256
 
 // never is a number of ticks that no run reaches.
 const never = 1 << 60

@@ -224,12 +224,16 @@ func (s *Signal) kink(i int) float64 {
 		a[3],
 	}
 	for k := range at {
-		// Equal to rounding of the terms summed is taken as equal.
+		// Equal to rounding of the terms summed, and of the instant, is taken as equal.
 		size := math.Abs(a[k]) + math.Abs(b[k])
 		for j := k + 1; j < 4; j++ {
 			size += math.Abs(a[j]) * math.Pow(tau, float64(j-k))
 		}
-		if math.Abs(at[k]-b[k]) > 1e-12*size {
+		shift := 0.0
+		if k < 3 {
+			shift = 1e-15 * s.starts[i] * float64(k+1) * math.Abs(at[k+1])
+		}
+		if math.Abs(at[k]-b[k]) > 1e-12*size+shift {
 			return float64(k)
 		}
 	}

@@ -138,7 +138,12 @@ func (b *builder) controller() error {
 		if m.antiWindup != NoAntiWindup {
 			rho, tf = splitIntegrators(tf)
 		}
-		c, err := realize(tf)
+		var c *chain
+		if len(rho) == 0 {
+			c, err = realizeExact(tf, t.Ratio)
+		} else {
+			c, err = realize(tf, nil)
+		}
 		if err != nil {
 			return err
 		}

@@ -1,0 +1,155 @@
+package sim
+
+import (
+	"errors"
+	"math"
+	"math/big"
+	"math/cmplx"
+	"testing"
+
+	"pgregory.net/rapid"
+	"steadytick/internal/dd"
+	"steadytick/sdomain"
+)
+
+// response is D + C·(xI − A)⁻¹·B by elimination in complex128.
+func (m *chain) response(x complex128) complex128 {
+	n := m.n
+	a := make([]complex128, n*(n+1))
+	for i := range n {
+		for j := range n {
+			a[i*(n+1)+j] = complex(-m.a[i*n+j], 0)
+		}
+		a[i*(n+1)+i] += x
+		a[i*(n+1)+n] = complex(m.b[i], 0)
+	}
+	for k := range n {
+		p := k
+		for i := k; i < n; i++ {
+			if cmplx.Abs(a[i*(n+1)+k]) > cmplx.Abs(a[p*(n+1)+k]) {
+				p = i
+			}
+		}
+		for j := range n + 1 {
+			a[k*(n+1)+j], a[p*(n+1)+j] = a[p*(n+1)+j], a[k*(n+1)+j]
+		}
+		for i := range n {
+			if i == k {
+				continue
+			}
+			f := a[i*(n+1)+k] / a[k*(n+1)+k]
+			for j := k; j <= n; j++ {
+				a[i*(n+1)+j] -= f * a[k*(n+1)+j]
+			}
+		}
+	}
+	sum := complex(m.d, 0)
+	for i := range n {
+		sum += complex(m.c[i], 0) * a[i*(n+1)+n] / a[i*(n+1)+i]
+	}
+	return sum
+}
+
+// The cascade has the frequency response of the product of its factors, with poles and zeros
+// over eight decades.
+func TestCascadeResponse(t *testing.T) {
+	rapid.Check(t, func(t *rapid.T) {
+		decade := func(name string) float64 { return math.Pow(10, rapid.Float64Range(-3, 5).Draw(t, name)) }
+		exact := func(v float64) *big.Rat { return new(big.Rat).SetFloat64(v) }
+		var zeros, poles [][2]*big.Rat
+		var zc, pc []complex128
+		add := func(list *[][2]*big.Rat, c *[]complex128, pair bool, name string) {
+			w := decade(name)
+			if !pair {
+				*list = append(*list, [2]*big.Rat{exact(-w), new(big.Rat)})
+				*c = append(*c, complex(-w, 0))
+				return
+			}
+			re, im := -w*rapid.Float64Range(0.01, 0.9).Draw(t, "damping"), w
+			*list = append(*list, [2]*big.Rat{exact(re), exact(im)}, [2]*big.Rat{exact(re), exact(-im)})
+			*c = append(*c, complex(re, im), complex(re, -im))
+		}
+		for range rapid.IntRange(0, 3).Draw(t, "pole pairs") {
+			add(&poles, &pc, true, "pole")
+		}
+		for range rapid.IntRange(0, 4).Draw(t, "real poles") {
+			add(&poles, &pc, false, "pole")
+		}
+		for range rapid.IntRange(0, 2).Draw(t, "integrators") {
+			poles = append(poles, [2]*big.Rat{new(big.Rat), new(big.Rat)})
+			pc = append(pc, 0)
+		}
+		for len(zeros)+2 <= len(poles) && rapid.Bool().Draw(t, "more zeros") {
+			add(&zeros, &zc, true, "zero")
+		}
+		for len(zeros) < len(poles) && rapid.Bool().Draw(t, "one more") {
+			add(&zeros, &zc, false, "zero")
+		}
+		m, err := sdomain.FromZerosPoles(zeros, poles, big.NewRat(3, 1))
+		if err != nil {
+			t.Fatal(err)
+		}
+		c, err := realizeModel(m)
+		if err != nil {
+			t.Fatal(err)
+		}
+		z, err := m.Ratio.Zeros()
+		if err != nil {
+			t.Fatal(err)
+		}
+		p, err := m.Ratio.Poles()
+		if err != nil {
+			t.Fatal(err)
+		}
+		list := sections(append(p, make([]dd.Complex, m.Ratio.OriginPoles)...), z)
+		for _, w := range []float64{1e-4, 0.03, 1, 40, 3e3, 1e6} {
+			s := complex(0, w)
+			want := complex(3, 0)
+			for i, p := range pc {
+				f := 1 / (s - p)
+				if i < len(zc) {
+					f *= s - zc[i]
+				}
+				want *= f
+			}
+			// A section whose zeros are far below its poles takes a small difference of its direct path
+			// and its states: it loses as many digits as the ratio has.
+			loss := 1.0
+			for _, x := range list {
+				for _, z := range x.zeros {
+					loss *= math.Max(1, x.size()/cmplx.Abs(s-z.Complex128()))
+				}
+			}
+			tol := 1e-14 * loss * cmplx.Abs(want) // a few roundings for each of up to 10 sections
+			if got := c.response(s); !(cmplx.Abs(got-want) <= tol) {
+				t.Fatalf("at %g rad/s %v, want %v (off %.2g of it), zeros %v poles %v", w, got, want, cmplx.Abs(got-want)/cmplx.Abs(want), zc, pc)
+			}
+		}
+	})
+}
+
+func TestRealizeErrors(t *testing.T) {
+	if _, err := realizeModel(model(t, rats("1", "0", "0"), rats("1", "1"), "0")); !errors.Is(err, ErrImproper) {
+		t.Errorf("improper: %v", err)
+	}
+	zero, err := realizeModel(model(t, rats("0"), rats("1", "1"), "0"))
+	if err != nil || zero.n != 0 || zero.d != 0 {
+		t.Errorf("zero: %+v, %v", zero, err)
+	}
+}
+
+// Partial fractions at the origin: s²+3s+2 over s²(s+4) is 0.5/s² + 0.625/s + 0.375/(s+4)
+// (by hand: 2/4; (3 − 0.5)/4; (16−12+2)/16).
+func TestSplitIntegrators(t *testing.T) {
+	tf, err := model(t, rats("1", "3", "2"), rats("1", "4", "0", "0"), "0").TF()
+	if err != nil {
+		t.Fatal(err)
+	}
+	rho, rest := splitIntegrators(tf)
+	if len(rho) != 2 || rho[0] != 0.625 || rho[1] != 0.5 {
+		t.Errorf("integrators %v, want [0.625 0.5]", rho)
+	}
+	if len(rest.Num) != 1 || rest.Num[0].Float64() != 0.375 || rest.OriginPoles != 0 || len(rest.Poles) != 1 {
+		t.Errorf("rest %+v", rest)
+	}
+}
