@@ -9,11 +9,16 @@ import (
 // one that sets the gain margin are not searched for.
 var keepBelow = math.Log(1 / 31.6)
 
+// maxBeyond bounds the crossings listed beyond all corners: gain that does not fall (a biproper
+// loop with dead time) gives endlessly many.
+const maxBeyond = 64
+
 // phaseCrossings returns the ν in (0, ∞) where L(jν) is negative real, ascending,
 // by the unwrapped phase and the certain search of isolate.go. A phase that rides on
-// −180° (a double integrator without more) has none. With dead time the list ends with the
-// first crossing beyond all corners; with any delay, crossings of very small gain may be
-// left out (keepBelow), and those beyond all corners that lie far below the last gain
+// −180° (a double integrator without more) has none. With dead time there is no end of them:
+// beyond all corners the list goes on until keepBelow is passed, for maxBeyond crossings
+// at most. With any delay, crossings of smaller gain than keepBelow may be
+// left out, and those beyond all corners that lie far below the last gain
 // crossing lastGain (0: none).
 func (p *plane) phaseCrossings(lastGain float64) []float64 {
 	if p.ridesOnReversal() {
@@ -46,7 +51,17 @@ func (p *plane) phaseCrossings(lastGain float64) []float64 {
 			add(c.crossings(math.Max(from, lastGain-4*math.Pi/p.dead), lastGain, &p.evals))
 			from = lastGain
 		}
-		add(p.firstBeyond(c, from))
+		for range maxBeyond {
+			found := p.firstBeyond(c, from)
+			if len(found) == 0 {
+				break
+			}
+			add(found)
+			if f, _ := p.gain(found[0]); f < best+keepBelow {
+				break
+			}
+			from = math.Nextafter(found[0], math.Inf(1))
+		}
 	} else {
 		far := curve{at: p.farPhase, bend: p.farPhaseBend, base: math.Pi, step: 2 * math.Pi}
 		if c.skip != nil {

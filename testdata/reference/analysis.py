@@ -231,6 +231,9 @@ class Loop:
             row = {"tracking_error": e, "loop_error": settled(loop[kind]), "asymptote": track[kind], "ripple": None, "worst_error": None}
             if held is not None and e != mp.inf and kind != "step":
                 row["ripple"], row["worst_error"] = self.ripple(held, kind)
+                if kind == "parabola" and out["ramp"]["ripple"] != 0:
+                    # r = t²/2 is a ramp of slope kT about tick k, so the ripple of the ramp grows with k
+                    row["ripple"] = row["worst_error"] = mp.inf
             out[kind] = row
         out["load_step"] = {"tracking_error": self.load_error(col)}
         return out

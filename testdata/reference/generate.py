@@ -38,8 +38,9 @@ phase_crossings     the w next to |L| = 1 at which L is real and negative (at mo
                     |L|; w = 0 and w = π/T count where L is finite there
 phase_margin_deg    stable: smallest |margin_deg| over the gain crossings; unstable: smallest
                     signed one; "inf" without a crossing
-gain_margin_db      smallest −20 lg|L| of the phase crossings with |L| < 1; "inf" if none
-gain_reduction_db   smallest 20 lg|L| of those with |L| > 1; null if none
+gain_margin_db      stable: smallest −20 lg|L| of the phase crossings with |L| < 1, "inf" if none;
+                    unstable: largest −20 lg|L| of those with |L| > 1, negative; null if none
+gain_reduction_db   stable: smallest 20 lg|L| of those with |L| > 1, null if none; unstable: null
 modulus_margin      least |1 + L| for w in [0, π/T], or [0, ∞)
 delay_margin_s      least (margin in (0°, 360°], as radians)/w of the gain crossings; "inf" without
                     one; null when unstable
@@ -51,7 +52,8 @@ steady              null when unstable. For step, ramp, parabola (r = 1, t, t²/
                     differences; tracking_error and loop_error g0, or "inf" when g1 or g2 is not
                     zero; ripple: peak-to-peak of the steady r − y over a whole tick, between the
                     ticks too; worst_error: its largest magnitude. Both null for a step, for
-                    an unbounded error and in the continuous column.
+                    an unbounded error and in the continuous column; "inf" for a parabola
+                    whose ramp has ripple, for it grows with the slope.
                     load_step: r − y for a unit step at the plant input
 sine                r = sin(wt): r − y at the ticks → amplitude·sin(wt + phase)
 """

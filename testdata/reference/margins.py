@@ -237,8 +237,12 @@ def analyze(L, corners, stable):
     out["crossover_rad_s"] = next((w for w, _, falling in gains if falling), None)
     up = [-20 * mp.log10(g) for _, g in phases if g < 1]
     down = [20 * mp.log10(g) for _, g in phases if g > 1]
-    out["gain_margin_db"] = min(up) if up else mp.inf
-    out["gain_reduction_db"] = min(down) if down else None
+    if stable:
+        out["gain_margin_db"] = min(up) if up else mp.inf
+        out["gain_reduction_db"] = min(down) if down else None
+    else:
+        out["gain_margin_db"] = -min(down) if down else None
+        out["gain_reduction_db"] = None
     dist = [abs(1 + v) for v in vals]
     ends = [abs(1 + L.exact(mp.mpf(0)))] if at_zero_finite(L) else []
     if L.T is None:
