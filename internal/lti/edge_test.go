@@ -324,3 +324,27 @@ func toDelta(s []dd.Complex, period dd.Float) []dd.Complex {
 	}
 	return out
 }
+
+// TestCrossingsDistinct: no crossing is listed twice; with dead time neighbours beyond the
+// corners are about 2π/τ apart.
+func TestCrossingsDistinct(t *testing.T) {
+	rng := rand.New(rand.NewSource(3))
+	for i := range 300 {
+		l := randomLoop(rng)
+		if i%2 == 0 && l.Period.Sign() == 0 {
+			l.DeadTime = dd.New(math.Pow(10, 4*rng.Float64()-2))
+		}
+		m, err := Margins(l, true)
+		if err != nil {
+			continue
+		}
+		for _, list := range [][]Crossing{m.GainCrossings, m.PhaseCrossings} {
+			for k := 1; k < len(list); k++ {
+				// crossings from both sides of a tangent come to about 1e-8; random loops have none
+				if !(list[k].W > list[k-1].W*(1+1e-10)) {
+					t.Errorf("loop %d: crossings at %.17g and %.17g rad/s", i, list[k-1].W, list[k].W)
+				}
+			}
+		}
+	}
+}

@@ -94,16 +94,22 @@ func (c curve) monotone(lo, hi float64, out []float64) []float64 {
 	fh, _ := c.at(hi)
 	low, high := math.Min(fl, fh), math.Max(fl, fh)
 	start := len(out)
+	k := 0.0
+	if c.step != 0 {
+		k = math.Floor((low-c.base)/c.step) - 1 // one early: the quotient is rounded
+	}
 	for range maxLevels {
-		level, ok := c.first(low)
-		if level <= low { // the side that is not below
-			level, ok = level+c.step, ok && c.step != 0
-		}
-		if !ok || level > high {
+		level := c.base + k*c.step
+		if level > high {
 			break
 		}
-		out = append(out, c.solve(lo, hi, level, fl < level))
-		low = level
+		if level > low { // in (low, high], always by the same number for a level
+			out = append(out, c.solve(lo, hi, level, fl < level))
+		}
+		if c.step == 0 {
+			break
+		}
+		k++
 	}
 	if fh < fl {
 		for i, j := start, len(out)-1; i < j; i, j = i+1, j-1 {

@@ -60,7 +60,8 @@ func (p *plane) phaseCrossings(lastGain float64) []float64 {
 			if f, _ := p.gain(found[0]); f < best+keepBelow {
 				break
 			}
-			from = math.Nextafter(found[0], math.Inf(1))
+			// past the rounding of the phase (1e-16 of ντ), or the same crossing is found again
+			from = found[0] * (1 + 1e-9)
 		}
 	} else {
 		far := curve{at: p.farPhase, bend: p.farPhaseBend, base: math.Pi, step: 2 * math.Pi}
