@@ -138,7 +138,7 @@ type state struct {
 
 // Twin simulates the continuous loop. The linear system of each mode (linear, at a limit,
 // integrators stopped) is followed in polynomial pieces found by collocation, as long as they
-// resolve every signal to 1e-13 of its size; pieces end where the effort meets or leaves a limit,
+// resolve every signal to 1e-12 of its size; pieces end where the effort meets or leaves a limit,
 // at the kinks of the inputs and at their images after each dead time. Accuracy about 1e-11 of
 // the largest values for loops whose modes die out. Errors: ctx.Err(), ErrIllPosed,
 // ErrImproper, ErrRange, ErrTwinLength, mistakes in cfg.
@@ -271,8 +271,8 @@ const resolved = 1e-12
 
 // advance takes one piece, or a switch of mode at the present instant.
 func (w *twin) advance() (diverged bool, err error) {
-	slack := 1e-13 * math.Max(w.t, w.first)
-	if order, any := w.bounds.take(w.t+slack, w.lags, w.model.smoothing); any {
+	const rounding = 4e-15 // of instants that are sums of a dozen numbers
+	if order, any := w.bounds.take(w.t*(1+rounding), w.lags, w.model.smoothing); any {
 		w.length, w.fresh = w.first, true
 		if order < 1 || w.model.smoothing < 1 {
 			w.settle()
@@ -319,7 +319,7 @@ func (w *twin) try(room float64) (s *stretch, next float64, err error) {
 		if rest <= resolved {
 			return s, w.longer(h, rest, last), nil
 		}
-		if h < 1e-13*math.Max(w.t, w.cfg.Duration*1e-6) {
+		if h < 1e-14*math.Max(w.t, w.cfg.Duration*1e-8) {
 			return nil, 0, ErrTwinLength
 		}
 		last = rest
