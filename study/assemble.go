@@ -22,6 +22,7 @@ type block struct {
 
 	period *big.Rat // nil in the continuous column
 	delay  *big.Rat // sample to update, seconds; nil in the continuous column
+	held   held     // sampled column
 
 	// What the simulation runs.
 	terms       []weighted
@@ -123,18 +124,48 @@ func assembleContinuous(l *loop.Loop) (*block, error) {
 	return b, nil
 }
 
+// held is what is behind the hold, its roots found once for every period and delay.
+type held struct {
+	plant      *discretize.Plant
+	withSensor *discretize.Plant // nil for a static sensor
+}
+
+func prepare(l *loop.Loop) (held, error) {
+	var h held
+	var err error
+	if h.plant, err = discretize.Prepare(l.Plant); err != nil {
+		return h, fmt.Errorf("plant: %w", err)
+	}
+	if _, ok := staticSensor(l.Sensor); ok {
+		return h, nil
+	}
+	pm, err := l.Plant.Mul(l.Sensor.Model)
+	if err != nil {
+		return h, err
+	}
+	if h.withSensor, err = discretize.Prepare(pm); err != nil {
+		return h, fmt.Errorf("plant with sensor: %w", err)
+	}
+	return h, nil
+}
+
 // assembleSampled builds the sampled column at period T with the given time from
 // sample to update, both exact seconds.
-func assembleSampled(l *loop.Loop, period, delay *big.Rat) (*block, error) {
-	b := &block{period: period, delay: delay}
-	gy, err := discretize.Hold(l.Plant, period, delay)
+func assembleSampled(l *loop.Loop, h held, period, delay *big.Rat) (*block, error) {
+	b := &block{period: period, delay: delay, held: h}
+	gy, err := h.plant.Hold(period, delay)
 	if err != nil {
 		return nil, fmt.Errorf("plant: %w", err)
 	}
 	b.sys.Gy = gy.TF
-	b.sys.Gm, err = heldMeasurement(l, period, delay, gy.TF)
-	if err != nil {
-		return nil, err
+	if g, ok := staticSensor(l.Sensor); ok {
+		b.sys.Gm = gy.TF.Scale(dd.FromRat(g)) // the same numbers as the plant's
+	} else {
+		gm, err := h.withSensor.Hold(period, delay)
+		if err != nil {
+			return nil, fmt.Errorf("plant with sensor: %w", err)
+		}
+		b.sys.Gm = gm.TF
 	}
 	for _, t := range l.Controller.Terms {
 		m, err := mapTerm(t, period)
@@ -169,23 +200,6 @@ func assembleSampled(l *loop.Loop, period, delay *big.Rat) (*block, error) {
 		}
 	}
 	return b, nil
-}
-
-// heldMeasurement is the hold equivalent from u to m. A static sensor scales the
-// plant's, so that the two are the same numbers.
-func heldMeasurement(l *loop.Loop, period, delay *big.Rat, gy lti.TF) (lti.TF, error) {
-	if g, ok := staticSensor(l.Sensor); ok {
-		return gy.Scale(dd.FromRat(g)), nil
-	}
-	pm, err := l.Plant.Mul(l.Sensor.Model)
-	if err != nil {
-		return lti.TF{}, err
-	}
-	h, err := discretize.Hold(pm, period, delay)
-	if err != nil {
-		return lti.TF{}, fmt.Errorf("plant with sensor: %w", err)
-	}
-	return h.TF, nil
 }
 
 // mapPart makes one controller part digital.

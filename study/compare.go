@@ -56,7 +56,8 @@ func RunCompare(ctx context.Context, l *loop.Loop, o Options) (*Compare, error) 
 	c.Verdict = verdict(c)
 	if o.Curves {
 		c.addFrequencyAndPoles(cont, sampled)
-		if err := c.Curves.addRates(ctx, l, o); err != nil {
+		o.progress("rates", 1, 1)
+		if err := c.Curves.addRates(ctx, l, sampled.block.held); err != nil {
 			return nil, err
 		}
 	}
@@ -76,7 +77,11 @@ func bothColumns(l *loop.Loop, c *Compare) (cont, sampled *analyzed, err error) 
 			return nil, nil, err
 		}
 	}
-	if b, err = assembleSampled(l, l.Timing.Period, l.Timing.LoopDelay()); err != nil {
+	h, err := prepare(l)
+	if err != nil {
+		return nil, nil, err
+	}
+	if b, err = assembleSampled(l, h, l.Timing.Period, l.Timing.LoopDelay()); err != nil {
 		return nil, nil, err
 	}
 	sampled, err = analyze(l, b)

@@ -5,8 +5,6 @@ import (
 	"fmt"
 	"math"
 	"math/big"
-	"runtime"
-	"sync"
 
 	"steadytick/loop"
 )
@@ -24,13 +22,13 @@ type sweepPoint struct {
 
 // addRates fills margins and errors over the sample rate and the rate window. A
 // controller given in z is valid at one rate only and has none of these.
-func (v *Curves) addRates(ctx context.Context, l *loop.Loop, o Options) error {
+func (v *Curves) addRates(ctx context.Context, l *loop.Loop, h held) error {
 	own, _ := new(big.Rat).Inv(l.Timing.Period).Float64()
 	v.RateHz = own
 	if l.Controller.Digital {
 		return nil
 	}
-	points, err := sweep(ctx, l, o)
+	points, err := sweep(ctx, l, h)
 	if err != nil {
 		return err
 	}
@@ -69,45 +67,33 @@ func (v *Curves) addRates(ctx context.Context, l *loop.Loop, o Options) error {
 }
 
 // sweep analyses the loop at rates spaced evenly in logarithm.
-func sweep(ctx context.Context, l *loop.Loop, o Options) ([]sweepPoint, error) {
+func sweep(ctx context.Context, l *loop.Loop, h held) ([]sweepPoint, error) {
 	own, _ := l.Timing.Period.Float64()
 	points := make([]sweepPoint, sweepPoints)
-	jobs := make(chan int)
-	var group sync.WaitGroup
-	for range runtime.GOMAXPROCS(0) {
-		group.Go(func() {
-			for i := range jobs {
-				x := 2*float64(i)/float64(sweepPoints-1) - 1
-				period := l.Timing.Period
-				if x != 0 {
-					period = new(big.Rat).SetFloat64(own * math.Pow(10, -x*sweepDecades))
-				}
-				hz, _ := new(big.Rat).Inv(period).Float64()
-				points[i] = sweepPoint{hz: hz, col: atRate(l, period)}
-			}
-		})
-	}
-	var err error
-	for i := range points {
-		if err = ctx.Err(); err != nil {
-			break
+	err := parallel(sweepPoints, func(i int) error {
+		if err := ctx.Err(); err != nil {
+			return err
 		}
-		o.progress("rates", i, len(points))
-		jobs <- i
-	}
-	close(jobs)
-	group.Wait()
+		x := 2*float64(i)/float64(sweepPoints-1) - 1
+		period := l.Timing.Period
+		if x != 0 {
+			period = new(big.Rat).SetFloat64(own * math.Pow(10, -x*sweepDecades))
+		}
+		hz, _ := new(big.Rat).Inv(period).Float64()
+		points[i] = sweepPoint{hz: hz, col: atRate(l, h, period)}
+		return nil
+	})
 	return points, err
 }
 
 // atRate is the sampled loop at another period, without simulation; nil where the
 // loop cannot run there.
-func atRate(l *loop.Loop, period *big.Rat) *Compare {
+func atRate(l *loop.Loop, h held, period *big.Rat) *Compare {
 	other, problems := l.WithRate(period)
 	if problems != nil {
 		return nil
 	}
-	b, err := assembleSampled(other, other.Timing.Period, other.Timing.LoopDelay())
+	b, err := assembleSampled(other, h, other.Timing.Period, other.Timing.LoopDelay())
 	if err != nil {
 		return nil
 	}

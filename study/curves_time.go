@@ -9,10 +9,10 @@ import (
 const shownGrowth = 4
 
 // add draws one run into the curves of its input. The first sampled run also gives its
-// ticks as dots; v is nil for the continuous twin.
-func (c *InputCurves) add(r run, name string, v *variant) {
+// ticks as dots; the effort of sampled runs is a staircase.
+func (c *InputCurves) add(r run, name string, sampled bool) {
 	t := r.trace
-	first := v != nil && len(c.Response) <= 2
+	first := sampled && len(c.Response) <= 2
 	if len(c.Response) == 0 {
 		c.Response = append(c.Response, Curve{Name: "reference", X: t.T, Y: t.R})
 	}
@@ -31,7 +31,7 @@ func (c *InputCurves) add(r run, name string, v *variant) {
 		}
 		c.Error = append(c.Error, Curve{Name: name + ", at the ticks", X: t.TickT[:k], Y: dots, Dots: true})
 	}
-	c.Effort = append(c.Effort, Curve{Name: name, X: t.T[:n], Y: t.U[:n], Step: v != nil})
+	c.Effort = append(c.Effort, Curve{Name: name, X: t.T[:n], Y: t.U[:n], Step: sampled})
 }
 
 // shownPoints is how many leading points are finite and within the bound of growth.

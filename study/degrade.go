@@ -31,30 +31,41 @@ func newRun(t *sim.Trace) run {
 // and file inputs, the errors at the end of unbounded ones and the degradation table.
 func simulateAll(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyzed, o Options) error {
 	list := variants(l, sampled, o.Degrade)
-	steps := len(l.Inputs)*(len(list)+1) + 2
-	done := 0
-	tick := func(what string) {
-		done++
-		o.progress(what, done, steps)
-	}
-	if err := transients(ctx, l, c, cont, sampled, tick); err != nil {
+	o.progress("step response", 0, len(l.Inputs)+1)
+	if err := transients(ctx, l, c, cont, sampled); err != nil {
 		return err
 	}
 	c.Degrade = []DegradeRow{}
 	c.Curves = &Curves{}
 	for i, in := range l.Inputs {
+		o.progress(inputTitle(l, in), i+1, len(l.Inputs)+1)
 		length := horizon(l, in, cont, sampled)
 		curves := InputCurves{Input: inputTitle(l, in)}
-		if cont != nil {
-			tick("continuous")
-			if err := c.simulateContinuous(ctx, l, i, length, cont, &curves); err != nil {
-				return err
+		runs := make([]outcome, len(list)+1) // the continuous loop, then the variants
+		err := parallel(len(runs), func(k int) (err error) {
+			switch {
+			case k == 0 && cont != nil:
+				runs[k], err = continuousOutcome(ctx, l, in, length, cont)
+			case k > 0:
+				runs[k], err = list[k-1].outcome(ctx, l, in, length, k == 1)
 			}
+			return err
+		})
+		if err != nil {
+			return err
 		}
-		for k, v := range list {
-			tick(v.name)
-			if err := c.simulateVariant(ctx, l, i, length, v, k == 0, &curves); err != nil {
-				return err
+		for k, x := range runs {
+			switch {
+			case k == 0 && cont == nil:
+				continue
+			case k == 0:
+				x.fill(&c.Continuous.Steady[i], in, cont)
+			case k == 1:
+				x.fill(&c.Sampled.Steady[i], in, sampled)
+			}
+			c.Degrade = append(c.Degrade, x.row)
+			if x.run.trace != nil {
+				curves.add(x.run, x.row.Variant, k > 0)
 			}
 		}
 		c.Curves.Inputs = append(c.Curves.Inputs, curves)
@@ -62,53 +73,55 @@ func simulateAll(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *a
 	return nil
 }
 
-// simulateContinuous runs the continuous twin with input i.
-func (c *Compare) simulateContinuous(ctx context.Context, l *loop.Loop, i int, length float64, cont *analyzed, curves *InputCurves) error {
-	in := l.Inputs[i]
-	r, err := runTwin(ctx, l, in, length)
-	if errors.Is(err, sim.ErrTwinLength) {
-		c.Degrade = append(c.Degrade, DegradeRow{Input: inputTitle(l, in), Variant: "continuous", Stable: cont.stable, Note: err.Error()})
-		return nil
-	}
-	if err != nil {
-		return err
-	}
-	c.Degrade = append(c.Degrade, row(l, in, "continuous", cont, r))
-	curves.add(r, "continuous", nil)
-	fillFromRun(&c.Continuous.Steady[i], in, cont, r)
-	if end, ok := endLength(l, in); ok && cont.stable {
-		if r, err = runTwin(ctx, l, in, end); err != nil {
-			return err
-		}
-		c.Continuous.Steady[i].fillEnd(r)
-	}
-	return nil
+// outcome is one run with its line of the table; of a move or file, also the run to its end.
+type outcome struct {
+	row DegradeRow
+	run run // trace nil: it could not be run
+	end run
 }
 
-// simulateVariant runs a variant of the sampled loop with input i; own: it is the loop itself.
-func (c *Compare) simulateVariant(ctx context.Context, l *loop.Loop, i int, length float64, v variant, own bool, curves *InputCurves) error {
-	in := l.Inputs[i]
+// continuousOutcome runs the continuous twin.
+func continuousOutcome(ctx context.Context, l *loop.Loop, in loop.Input, length float64, cont *analyzed) (outcome, error) {
+	r, err := runTwin(ctx, l, in, length)
+	if errors.Is(err, sim.ErrTwinLength) {
+		return outcome{row: DegradeRow{Input: inputTitle(l, in), Variant: "continuous", Stable: cont.stable, Note: err.Error()}}, nil
+	}
+	out := outcome{run: r}
+	if err != nil {
+		return out, err
+	}
+	out.row = row(l, in, "continuous", cont, r)
+	if end, ok := endLength(l, in); ok && cont.stable {
+		out.end, err = runTwin(ctx, l, in, end)
+	}
+	return out, err
+}
+
+// outcome runs the variant; own says that it is the loop itself.
+func (v variant) outcome(ctx context.Context, l *loop.Loop, in loop.Input, length float64, own bool) (outcome, error) {
 	if v.run == nil {
-		c.Degrade = append(c.Degrade, DegradeRow{Input: inputTitle(l, in), Variant: v.name, Note: "cannot run: " + v.note})
-		return nil
+		return outcome{row: DegradeRow{Input: inputTitle(l, in), Variant: v.name, Note: "cannot run: " + v.note}}, nil
 	}
 	r, err := v.simulate(ctx, in, length)
 	if err != nil {
-		return err
+		return outcome{}, err
 	}
-	c.Degrade = append(c.Degrade, v.row(l, in, r))
-	curves.add(r, v.name, &v)
-	if !own {
-		return nil
+	out := outcome{run: r, row: v.row(l, in, r)}
+	if end, ok := endLength(l, in); ok && own && v.run.stable {
+		out.end, err = v.simulate(ctx, in, end)
 	}
-	fillFromRun(&c.Sampled.Steady[i], in, v.run, r)
-	if end, ok := endLength(l, in); ok && v.run.stable {
-		if r, err = v.simulate(ctx, in, end); err != nil {
-			return err
-		}
-		c.Sampled.Steady[i].fillEnd(r)
+	return out, err
+}
+
+// fill copies the figures of the runs into the steady row of the input.
+func (x outcome) fill(s *Steady, in loop.Input, a *analyzed) {
+	if x.run.trace == nil {
+		return
 	}
-	return nil
+	fillFromRun(s, in, a, x.run)
+	if x.end.trace != nil && !x.end.diverged {
+		s.EndError, s.EndTimeS = Fig(x.end.end), Fig(x.end.endTime)
+	}
 }
 
 // row is one line of the degradation table.
@@ -189,11 +202,4 @@ func endLength(l *loop.Loop, in loop.Input) (float64, bool) {
 	}
 	T, _ := l.Timing.Period.Float64()
 	return math.Max(1, math.Ceil(signal.Duration()/T*(1-1e-12))) * T, true
-}
-
-// fillEnd notes the error with which a run ended.
-func (s *Steady) fillEnd(r run) {
-	if !r.diverged {
-		s.EndError, s.EndTimeS = Fig(r.end), Fig(r.endTime)
-	}
 }

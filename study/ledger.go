@@ -8,6 +8,13 @@ import (
 	"steadytick/loop"
 )
 
+// Items of the ledger that are not the doing of sampling, or are no pure delay.
+const (
+	itemDeadTime = "plant dead time"
+	itemSensor   = "sensor lag"
+	itemMap      = "controller map"
+)
+
 // ledger lists what adds lag around the sampled loop. Pure delays are seconds times
 // crossover; a sensor's seconds are its lag at low frequency, −H'(0)/H(0), and its
 // degrees the phase at crossover; the map's degrees are the phase of the mapped
@@ -32,7 +39,7 @@ func ledger(l *loop.Loop, sampled *analyzed, cont *analyzed) []LedgerItem {
 		{"conversion", l.Timing.Conversion},
 		{"compute", l.Timing.Compute},
 		{"waiting for the update", wait},
-		{"plant dead time", l.Plant.Delay},
+		{itemDeadTime, l.Plant.Delay},
 	} {
 		s, _ := x.seconds.Float64()
 		out = append(out, LedgerItem{x.item, s, degrees(s)})
@@ -42,14 +49,14 @@ func ledger(l *loop.Loop, sampled *analyzed, cont *analyzed) []LedgerItem {
 	}
 	if cont != nil && ok {
 		turn := cmplx.Phase(cont.block.sys.Cm.Freq(w) / sampled.block.sys.Cm.Freq(w))
-		out = append(out, LedgerItem{"controller map", turn / w, Fig(turn * 180 / math.Pi)})
+		out = append(out, LedgerItem{itemMap, turn / w, Fig(turn * 180 / math.Pi)})
 	}
 	return out
 }
 
 // sensorItem is the sensor's share: lag at low frequency, phase at crossover.
 func sensorItem(l *loop.Loop, w float64, ok bool) LedgerItem {
-	item := LedgerItem{Item: "sensor lag"}
+	item := LedgerItem{Item: itemSensor}
 	start, c := l.Sensor.Model.Laurent(2)
 	if start == 0 && len(c) > 1 {
 		q := new(big.Rat).Quo(c[1], c[0])

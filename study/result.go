@@ -81,11 +81,24 @@ type Column struct {
 	GainCrossings  []Crossing `json:"gain_crossings"`  // |L| = 1
 	PhaseCrossings []Crossing `json:"phase_crossings"` // arg L = −180°
 
-	Poles              [][2]float64 `json:"poles"`
-	EquivalentPoles    [][2]float64 `json:"equivalent_poles_rad_s,omitempty"`
-	Transient          Transient    `json:"transient"`
-	StabilityByPoles   bool         `json:"stable_by_poles"`
-	StabilityByNyquist bool         `json:"stable_by_nyquist"`
+	Poles              PoleList  `json:"poles"`
+	EquivalentPoles    PoleList  `json:"equivalent_poles_rad_s,omitempty"`
+	Transient          Transient `json:"transient"`
+	StabilityByPoles   bool      `json:"stable_by_poles"`
+	StabilityByNyquist bool      `json:"stable_by_nyquist"`
+}
+
+// PoleList is a list of points [re, im]. A sampled pole at z = 0 has the equivalent −Inf,
+// which JSON writes "-inf".
+type PoleList [][2]float64
+
+// MarshalJSON writes pairs of figures.
+func (p PoleList) MarshalJSON() ([]byte, error) {
+	out := make([][2]Figure, len(p))
+	for i, z := range p {
+		out[i] = [2]Figure{Fig(z[0]), Fig(z[1])}
+	}
+	return json.Marshal(out)
 }
 
 // Crossing is one crossing of the loop frequency response.

@@ -1,11 +1,11 @@
 package study
 
 import (
+	"errors"
 	"math"
 	"math/big"
 	"math/cmplx"
 
-	"steadytick/discretize"
 	"steadytick/internal/dd"
 	"steadytick/internal/lti"
 	"steadytick/loop"
@@ -43,8 +43,9 @@ func (a *analyzed) ripplePolynomial(l *loop.Loop, in loop.Input) ripple {
 	c := a.trackingDD
 	half := a.block.open.Period.Ldexp(-1)
 	rest := dd.One.Sub(c[0])
+	at := a.offsetResponse()
 	lo, hi := extremes(a.smoothParts(l), func(theta *big.Rat) float64 {
-		t, err := a.seriesAt(l, theta)
+		t, err := at(theta)
 		if err != nil {
 			return math.NaN()
 		}
@@ -70,7 +71,7 @@ func (a *analyzed) rippleSine(l *loop.Loop, in loop.Input, w float64) ripple {
 	atTick := a.block.toOutput(w)
 	var worst float64
 	at := func(theta *big.Rat) float64 {
-		g, err := discretize.Hold(l.Plant, a.block.period, new(big.Rat).Sub(a.block.delay, theta))
+		g, err := a.block.held.plant.Hold(a.block.period, new(big.Rat).Sub(a.block.delay, theta))
 		if err != nil {
 			return math.NaN()
 		}
@@ -84,16 +85,36 @@ func (a *analyzed) rippleSine(l *loop.Loop, in loop.Input, w float64) ripple {
 	return ripple{high: worst, low: -hi, peakToPeak: 2 * hi}
 }
 
-// seriesAt is the series t0, t1, t2 of the response from r to y at offset θ.
-func (a *analyzed) seriesAt(l *loop.Loop, theta *big.Rat) ([]dd.Float, error) {
-	g, err := discretize.Hold(l.Plant, a.block.period, new(big.Rat).Sub(a.block.delay, theta))
-	if err != nil {
-		return nil, err
+// offsetResponse prepares the series t0, t1, t2 of the response from r to y at any offset θ,
+//
+//	y(kT+θ) = Cr/(1 + L) · Gθ · r
+//
+// with Gθ the hold equivalent seen θ after the tick, the only part that changes.
+func (a *analyzed) offsetResponse() func(theta *big.Rat) ([]dd.Float, error) {
+	b := a.block
+	terms := 4 + 2*(b.open.OriginPoles+b.open.OriginZeros) + b.sys.Cr.OriginPoles + b.sys.Cr.OriginZeros
+	l := b.open.Series(terms)
+	one := make([]dd.Float, terms+max(l.Start, 0)-min(l.Start, 0))
+	one[-min(l.Start, 0)] = dd.One
+	front, err := b.sys.Cr.Series(terms).Div(lti.NewLaurent(min(l.Start, 0), one).Add(l))
+	return func(theta *big.Rat) ([]dd.Float, error) {
+		if err != nil {
+			return nil, err
+		}
+		g, err := b.held.plant.Hold(b.period, new(big.Rat).Sub(b.delay, theta))
+		if err != nil {
+			return nil, err
+		}
+		q := front.Mul(g.TF.Series(terms))
+		t := make([]dd.Float, 3)
+		for k := range t {
+			var known bool
+			if t[k], known = q.Coefficient(k); !known {
+				return nil, errors.New("series too short")
+			}
+		}
+		return t, nil
 	}
-	s := a.block.sys
-	s.Gy = g.TF
-	s.StaticSensor = nil
-	return lti.ResponseSeries(s, 3), nil
 }
 
 // part is an interval of offsets in which the error is smooth, with the number of points it needs.

@@ -10,7 +10,7 @@ import (
 
 // transients fills the step figures of both columns, at the size of the first step of
 // the file (1 without one) and with the actuator's limits.
-func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyzed, tick func(string)) error {
+func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyzed) error {
 	in := loop.Input{Kind: "step", Size: 1}
 	for _, x := range l.Inputs {
 		if x.Kind == "step" && x.Size != 0 {
@@ -20,7 +20,6 @@ func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *an
 	}
 	length := horizon(l, in, cont, sampled)
 	if cont != nil && cont.stable {
-		tick("continuous step")
 		f, err := twinFigures(ctx, l, in, length, cont.stepSpec(l, in))
 		switch {
 		case errors.Is(err, sim.ErrTwinLength):
@@ -35,7 +34,6 @@ func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *an
 	if !sampled.stable {
 		return nil
 	}
-	tick("sampled step")
 	cfg, err := sampledConfig(l, sampled.block, in, length, false)
 	if err != nil {
 		return err

@@ -27,7 +27,7 @@ func variants(l *loop.Loop, own *analyzed, d Degrade) []variant {
 			v.note = problems[0].Message
 		} else {
 			v.loop = other
-			v.analyse(other.Timing.LoopDelay())
+			v.analyse(own.block.held, other.Timing.LoopDelay())
 		}
 		out = append(out, v)
 	}
@@ -42,7 +42,7 @@ func variants(l *loop.Loop, own *analyzed, d Degrade) []variant {
 			delay.Mul(l.Timing.Period, big.NewRat(int64(x.Extra), 1))
 			delay.Add(delay, l.Timing.LoopDelay())
 		}
-		v.analyse(delay)
+		v.analyse(own.block.held, delay)
 		out = append(out, v)
 	}
 	if l.Sensor.Bits > 0 || l.Actuator.Bits > 0 {
@@ -52,8 +52,8 @@ func variants(l *loop.Loop, own *analyzed, d Degrade) []variant {
 }
 
 // analyse fills run for v.loop with the given delay.
-func (v *variant) analyse(delay *big.Rat) {
-	b, err := assembleSampled(v.loop, v.loop.Timing.Period, delay)
+func (v *variant) analyse(h held, delay *big.Rat) {
+	b, err := assembleSampled(v.loop, h, v.loop.Timing.Period, delay)
 	if err == nil {
 		v.run, err = analyze(v.loop, b)
 	}

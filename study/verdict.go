@@ -47,28 +47,45 @@ func marginChange(c *Compare, cont *Column) string {
 	return fmt.Sprintf("; the phase margin falls from %s° to %s°", number(was), number(s.Value)) + culprit(c, nil, ", ")
 }
 
-// culprit names the largest entry of the delay ledger that sampling brought in.
+// culprit names the largest entry of the delay ledger that sampling brought in. The
+// lag is taken where the phase margin is smallest, which a resonance can put elsewhere than
+// at crossover.
 func culprit(c *Compare, cont *Column, join string) string {
+	at, scale := "crossover", 1.0
+	if w := criticalRadS(c.Sampled); w > 0 && c.Sampled.CrossoverRadS.Value != w {
+		at, scale = fmt.Sprintf("%s rad/s, where the margin is smallest,", number(w)), w/c.Sampled.CrossoverRadS.Value
+	}
 	var worst LedgerItem
-	total := 0.0
+	most, total := 0.0, 0.0
 	for _, i := range c.DelayLedger {
-		if i.Item == "plant dead time" || i.Item == "sensor lag" || !i.Degrees.OK {
+		if i.Item == itemDeadTime || i.Item == itemSensor || !i.Degrees.OK || scale != 1 && i.Item == itemMap {
 			continue
 		}
-		total += math.Max(0, i.Degrees.Value)
-		if i.Degrees.Value > worst.Degrees.Value {
-			worst = i
+		lag := i.Degrees.Value * scale
+		total += math.Max(0, lag)
+		if lag > most {
+			worst, most = i, lag
 		}
 	}
-	if total <= 0 {
+	switch {
+	case total <= 0:
 		return ""
+	case cont != nil && cont.PhaseMarginDeg.OK && !math.IsInf(cont.PhaseMarginDeg.Value, 0):
+		return join + fmt.Sprintf("the continuous loop has %s° of phase margin, sampling adds %s° of lag at %s, the most by the %s (%s°)",
+			number(cont.PhaseMarginDeg.Value), number(total), at, worst.Item, number(most))
 	}
-	if cont != nil && cont.PhaseMarginDeg.OK && !math.IsInf(cont.PhaseMarginDeg.Value, 0) {
-		return join + fmt.Sprintf("the continuous loop has %s° of phase margin, sampling adds %s° of lag at crossover, the most by the %s (%s°)",
-			number(cont.PhaseMarginDeg.Value), number(total), worst.Item, number(worst.Degrees.Value))
+	return join + fmt.Sprintf("of the %s° of lag that sampling adds at %s the most comes from the %s (%s°)",
+		number(total), at, worst.Item, number(most))
+}
+
+// criticalRadS is the gain crossing that gives the phase margin, 0 when there is none.
+func criticalRadS(c *Column) float64 {
+	for _, g := range c.GainCrossings {
+		if g.MarginDeg == c.PhaseMarginDeg {
+			return g.RadS
+		}
 	}
-	return join + fmt.Sprintf("of the %s° of lag that sampling adds at crossover the most comes from the %s (%s°)",
-		number(total), worst.Item, number(worst.Degrees.Value))
+	return 0
 }
 
 // errorChange compares the steady error of the first input that has one in both columns.
