@@ -39,13 +39,4 @@ func checkCurve(chart string, c study.Curve, positive bool) error {
 	return nil
 }
 
-func checkCurves(chart string, curves []study.Curve, positive bool) error {
-	for _, c := range curves {
-		if err := checkCurve(chart, c, positive); err != nil {
-			return err
-		}
-	}
-	return nil
-}
-
 func finite(v float64) bool { return !math.IsNaN(v) && !math.IsInf(v, 0) }
