@@ -30,7 +30,7 @@ type clock struct {
 	first         int64
 }
 
-func newAgenda(e *engine) *agenda {
+func newAgenda(e *engine) (*agenda, error) {
 	a := &agenda{e: e}
 	for i := range e.tasks {
 		t := &e.tasks[i]
@@ -44,8 +44,11 @@ func newAgenda(e *engine) *agenda {
 	a.end = a.periods[0].Mul(dd.New(float64(e.cfg.Ticks)))
 	for i := range a.clocks {
 		a.clocks[i].at = a.sampleAt(i, 0)
+		if !a.clocks[i].at.IsFinite() {
+			return nil, a.disorder(i, 0)
+		}
 	}
-	return a
+	return a, nil
 }
 
 // points bounds the rows in a period of the first task.

@@ -3,7 +3,6 @@ package sim
 import (
 	"context"
 	"testing"
-	"time"
 )
 
 // orderSix is a loop of order six: a plant of order three with a sensor lag, a controller of
@@ -35,23 +34,6 @@ func BenchmarkTick(b *testing.B) {
 				b.Fatal(err)
 			}
 		})
-	}
-}
-
-// A million ticks of the loop of order six: under a second, and the memory of a thousand.
-func TestMillionTicks(t *testing.T) {
-	cfg := orderSix(t)
-	count := func(ticks int64) float64 {
-		cfg.Ticks = ticks
-		return testing.AllocsPerRun(1, func() { run(t, cfg) })
-	}
-	small := count(10_000)
-	start := time.Now()
-	big := count(1_000_000)
-	t.Logf("allocations %g and %g; 2·10⁶ ticks in %v", small, big, time.Since(start))
-	// The trace grows by doubling up to MaxPoints, then stays: a few dozen allocations apart.
-	if !(big <= small+50) {
-		t.Errorf("10⁶ ticks take %g allocations, 10⁴ take %g", big, small)
 	}
 }
 

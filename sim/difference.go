@@ -4,7 +4,8 @@ package sim
 type blockState struct {
 	*block
 	x, dx []float64
-	i     []float64 // integrators, i[0] goes to the output
+	carry []float64 // what rounding dropped from x, see advance.apply
+	i, ic []float64 // integrators, i[0] goes to the output, and what rounding dropped
 	queue []float64 // inputs on their way, when the block has a delay
 	head  int
 	in    float64 // input of this tick, after the delay
@@ -14,7 +15,8 @@ func (b *block) start() blockState {
 	return blockState{
 		block: b,
 		x:     make([]float64, b.chain.n), dx: make([]float64, b.chain.n),
-		i: make([]float64, len(b.rho)), queue: make([]float64, b.ticks),
+		carry: make([]float64, b.chain.n),
+		i:     make([]float64, len(b.rho)), ic: make([]float64, len(b.rho)), queue: make([]float64, b.ticks),
 	}
 }
 
@@ -47,11 +49,9 @@ func (s *blockState) next(period float64) {
 		for j, a := range s.chain.a[i*n : (i+1)*n] {
 			sum += a * s.x[j]
 		}
-		s.dx[i] = sum
+		s.dx[i] = period * sum
 	}
-	for i, v := range s.dx {
-		s.x[i] += period * v
-	}
+	accumulate(s.x, s.carry, s.dx)
 }
 
 // slope is what the last integrator integrates, per second.
@@ -78,11 +78,11 @@ func (s *blockState) integrate(period, extra float64, hold, all bool) {
 			up = s.i[j+1]
 		}
 		if !hold || j == 0 && !all {
-			s.i[j] += period * (s.rho[j]*s.in + up)
+			accumulate(s.i[j:j+1], s.ic[j:], []float64{period * (s.rho[j]*s.in + up)})
 		}
 	}
 	if len(s.i) > 0 {
-		s.i[0] += extra
+		accumulate(s.i[:1], s.ic, []float64{extra})
 	}
 }
 

@@ -79,6 +79,7 @@ type engine struct {
 	y, m    *probe
 	z       []float64 // states, then columns
 	w       []float64 // the columns of z
+	carry   []float64 // what rounding dropped from the states
 	dx      []float64
 	change  float64 // earliest change of piece of a driven column
 	tasks   []taskState
@@ -100,7 +101,7 @@ func newEngine(cfg *Config) (*engine, error) {
 	e := &engine{cfg: cfg, layout: newLayout(cfg), tasks: make([]taskState, len(cfg.Tasks))}
 	e.flow, e.key = e.layout.flow(s)
 	e.z, e.dx = make([]float64, s.n+e.layout.columns), e.flow.scratch()
-	e.w = e.z[s.n:]
+	e.w, e.carry = e.z[s.n:], make([]float64, s.n)
 	for k := range s.outputs {
 		e.outputs = append(e.outputs, newProbe(s.c[k*s.n:(k+1)*s.n], e.layout.through(s, k)))
 	}
@@ -118,7 +119,10 @@ func newEngine(cfg *Config) (*engine, error) {
 		e.line = line
 		perTick = line.points(e)
 	} else {
-		d := newAgenda(e)
+		d, err := newAgenda(e)
+		if err != nil {
+			return nil, err
+		}
 		e.line = d
 		perTick = d.points(e, perTick)
 	}
@@ -279,11 +283,11 @@ func (e *engine) free(p *advance, t, h float64) error {
 		e.watch.before(e)
 	}
 	if p == nil {
-		if err := e.flow.advanceBy(e.z, h); err != nil {
+		if err := e.flow.advanceBy(e.z, e.carry, h); err != nil {
 			return err
 		}
 	} else {
-		p.apply(e.z, e.dx)
+		p.apply(e.z, e.carry, e.dx)
 	}
 	if e.watch != nil {
 		if p != nil {

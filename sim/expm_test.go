@@ -64,8 +64,8 @@ func TestAdvanceBy(t *testing.T) {
 		if err != nil {
 			t.Fatal(err)
 		}
-		p.apply(once, f.scratch())
-		if err := f.advanceBy(z, h); err != nil {
+		p.apply(once, make([]float64, 2), f.scratch())
+		if err := f.advanceBy(z, make([]float64, 2), h); err != nil {
 			t.Fatal(err)
 		}
 		// A dozen steps, each rounded; sizes up to the sum of what flows in.

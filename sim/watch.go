@@ -54,7 +54,7 @@ func (s *stepWatch) after(e *engine, t, h float64) {
 	v1, d1 := s.at(e, e.z)
 	s.find.add(span01{t: t, h: h, v0: s.v0, d0: s.d, v1: v1, d1: d1, at: func(theta float64) (float64, float64) {
 		z := append([]float64(nil), s.z...)
-		if err := e.flow.advanceBy(z, theta); err != nil {
+		if err := e.flow.advanceBy(z, make([]float64, e.flow.n), theta); err != nil {
 			return s.v0, 0 // cannot be: the whole stretch was passed without overflow
 		}
 		return s.at(e, z)
