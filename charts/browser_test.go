@@ -235,8 +235,8 @@ func TestReportAnswersTheReader(t *testing.T) {
 	// A zoom in time goes to the other charts of the input, and not further.
 	starts := eval[[]float64](t, b, `(() => { const at = id => echarts.getInstanceByDom(document.getElementById(id));
 		at('input-1-error').dispatchAction({type: 'dataZoom', dataZoomIndex: 0, start: 20, end: 30});
-		return ['input-1-response', 'input-1-error', 'input-1-effort', 'loop-gain'].map(id => at(id).getOption().dataZoom[0].start) })()`)
-	if !slices.Equal(starts, []float64{20, 20, 20, 0}) {
+		return ['input-1-response', 'input-1-error', 'input-1-added', 'input-1-effort', 'loop-gain'].map(id => at(id).getOption().dataZoom[0].start) })()`)
+	if !slices.Equal(starts, []float64{20, 20, 20, 20, 0}) {
 		t.Errorf("zooms start at %v", starts)
 	}
 	// The tooltip shows hostile names as text.

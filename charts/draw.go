@@ -133,6 +133,7 @@ func (cv *canvas) inputs(c *study.Compare) ([]section, error) {
 		}{
 			{"response", "Response", "reference r, output y", c.Units.Output, in.Response, 320},
 			{"error", "Tracking error", "tracking error r − y", c.Units.Output, in.Error, 360},
+			{"added", "Error added by sampling and delay", "continuous y − sampled y", c.Units.Output, in.Added, 300},
 			{"effort", "Effort", "effort u", c.Units.Effort, in.Effort, 260},
 		} {
 			ch := chart{id: s.ID + "-" + p.name, series: cv.styled(p.curves), x: timeAxis(p.curves),

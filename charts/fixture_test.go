@@ -84,6 +84,9 @@ func inputCurves(label string, slope float64, all []variant) study.InputCurves {
 		}
 		in.Response = append(in.Response, curve(v.name, n, end, y))
 		in.Error = append(in.Error, curve(v.name, n, end, func(t float64) float64 { return ref(t) - y(t) }))
+		if v.period > 0 {
+			in.Added = append(in.Added, curve(v.name, n, end, func(t float64) float64 { return slope*(t-0.0021) + 0.98 - y(t) }))
+		}
 		ticks := n
 		if v.period > 0 {
 			ticks = int(end/v.period+0.5) + 1
@@ -259,7 +262,7 @@ func addPoles(c *study.Compare) {
 func allIDs(inputs int) []string {
 	var ids []string
 	for i := 1; i <= inputs; i++ {
-		for _, n := range []string{"response", "error", "effort"} {
+		for _, n := range []string{"response", "error", "added", "effort"} {
 			ids = append(ids, fmt.Sprintf("input-%d-%s", i, n))
 		}
 	}

@@ -68,6 +68,11 @@ func simulateAll(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *a
 				curves.add(x.run, x.row.Variant, k > 0)
 			}
 		}
+		if o.Curves && cont != nil {
+			if curves.Added, err = addedError(ctx, l, in, runs[1:]); err != nil {
+				return err
+			}
+		}
 		c.Curves.Inputs = append(c.Curves.Inputs, curves)
 	}
 	return nil

@@ -185,6 +185,7 @@ type InputCurves struct {
 	Input    string  // kind with its size, e.g. "ramp 2 rad/s"
 	Response []Curve // r, continuous y, sampled y of each variant
 	Error    []Curve // tracking error: continuous, sampled variants, and dots at the ticks
+	Added    []Curve // y of the continuous loop less y of each sampled variant: the error that sampling adds
 	Effort   []Curve // continuous u, sampled u as a staircase
 }
 

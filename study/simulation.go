@@ -11,8 +11,10 @@ import (
 )
 
 const (
-	// settledAfter: the slowest mode has fallen to e^−8 = 0.03 % when a run ends.
-	settledAfter = 8
+	// settledAfter: the slowest mode has fallen to e^−6 = 0.25 % when a run ends.
+	settledAfter = 6
+	// stepLonger: the step figures look this many times longer, e^−12, so that a slow tail settles in view.
+	stepLonger = 2
 	// mostTicksRun bounds a run; a loop that needs more ticks to settle is shown as far as that.
 	mostTicksRun = 400_000
 	// fewestTicksRun shows the staircase even of a loop that settles at once.

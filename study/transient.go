@@ -18,7 +18,7 @@ func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *an
 			break
 		}
 	}
-	length := horizon(l, in, cont, sampled)
+	length := stepLonger * horizon(l, in, cont, sampled)
 	if cont != nil && cont.stable {
 		f, err := twinFigures(ctx, l, in, length, cont.stepSpec(l, in))
 		switch {
