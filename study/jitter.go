@@ -19,7 +19,7 @@ func (a *analyzed) jitterMargin() Figure {
 	}
 	f := func(w float64) float64 {
 		l := scan.At(w)
-		return -w * cmplx.Abs(l/(1+l))
+		return w * cmplx.Abs(l/(1+l))
 	}
 	half := math.Inf(1)
 	if a.block.period != nil {
@@ -34,36 +34,16 @@ func (a *analyzed) jitterMargin() Figure {
 	if !math.IsInf(half, 0) {
 		grid = append(grid, half)
 	}
-	best, at := math.Inf(1), 0
+	best, at := 0.0, 0
 	for i, w := range grid {
-		if v := f(w); v < best {
+		if v := f(w); v > best {
 			best, at = v, i
 		}
 	}
 	lo, hi := grid[max(at-1, 0)], grid[min(at+1, len(grid)-1)]
-	best = math.Min(best, goldenMin(f, lo, hi))
-	if !(best < 0) {
+	best = math.Max(best, f(goldenMax(f, lo, hi)))
+	if !(best > 0) {
 		return Fig(math.Inf(1))
 	}
-	return Fig(-1 / best)
-}
-
-// goldenMin is the least value of f between lo and hi by golden section, for one minimum
-// there. 45 steps narrow the bracket to 4e-10 of it; at a minimum that leaves 1e-18 of the value.
-func goldenMin(f func(float64) float64, lo, hi float64) float64 {
-	g := (math.Sqrt(5) - 1) / 2
-	x, y := hi-g*(hi-lo), lo+g*(hi-lo)
-	fx, fy := f(x), f(y)
-	for range 45 {
-		if fx < fy {
-			hi, y, fy = y, x, fx
-			x = hi - g*(hi-lo)
-			fx = f(x)
-		} else {
-			lo, x, fx = x, y, fy
-			y = lo + g*(hi-lo)
-			fy = f(y)
-		}
-	}
-	return math.Min(fx, fy)
+	return Fig(1 / best)
 }
