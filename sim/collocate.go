@@ -12,7 +12,7 @@ type stretch struct {
 	own               bool // a lag is shorter than h
 }
 
-// factored keeps the matrices of a regime and a length.
+// factored names the matrix of a regime and a length.
 type factored struct {
 	key int
 	h   float64
@@ -31,8 +31,8 @@ const maxFactored = 64
 // a linear system in the X and, when a lag is shorter than h, the m̂. So a dead time far below
 // the dynamics costs no short steps. ok is false for a singular matrix.
 func (w *twin) collocate(reg *regime, h float64) (s *stretch, ok bool) {
-	n, nq := w.model.n, w.model.nq
-	s = &stretch{h: h, x: make([]values, n), q: make([]values, nq)}
+	n := w.model.n
+	s = &stretch{h: h, x: make([]values, n), q: make([]values, w.model.nq)}
 	for i := range s.g {
 		s.g[i] = w.exogenous(w.t+w.r.node[i]*h, w.t, h)
 	}
@@ -40,24 +40,15 @@ func (w *twin) collocate(reg *regime, h float64) (s *stretch, ok bool) {
 		s.own = s.own || w.isOwn(stages, j, h)
 	}
 	w.recall(s)
-	m0 := 0.0
 	if s.own {
-		m0 = w.value(reg.m, w.x, s.g[0], s.q, 0)
-		for j := range s.q {
-			for i := 1; i <= stages; i++ {
-				if w.isOwn(i, j, h) {
-					e := w.ownWeights(i, j, h)
-					s.q[j][i] = e[0] * m0
-				}
-			}
-		}
+		m0 := w.value(reg.m, w.x, s.g[0], s.q, 0)
+		w.ownPart(s, func(e *[stages + 1]float64) float64 { return e[0] * m0 })
 	}
 	f, ok := w.matrix(reg, s)
 	if !ok {
 		return nil, false
 	}
-	b := w.rightSide(reg, s)
-	f.solve(b)
+	b := w.solution(reg, s, f)
 	for i := range n {
 		s.x[i][0] = w.x[i]
 		for k := range stages {
@@ -66,19 +57,29 @@ func (w *twin) collocate(reg *regime, h float64) (s *stretch, ok bool) {
 	}
 	if s.own {
 		mu := b[stages*n:]
-		for j := range s.q {
-			for i := 1; i <= stages; i++ {
-				if w.isOwn(i, j, h) {
-					e := w.ownWeights(i, j, h)
-					for k, v := range mu {
-						s.q[j][i] += e[k+1] * v
-					}
-				}
+		w.ownPart(s, func(e *[stages + 1]float64) float64 {
+			sum := 0.0
+			for k, v := range mu {
+				sum += e[k+1] * v
 			}
-		}
+			return sum
+		})
 	}
 	w.scalars(reg, s)
 	return s, true
+}
+
+// ownPart adds to the delayed measurements that lie in the piece itself a part got from
+// their weights.
+func (w *twin) ownPart(s *stretch, part func(e *[stages + 1]float64) float64) {
+	for j := range s.q {
+		for i := 1; i <= stages; i++ {
+			if w.isOwn(i, j, s.h) {
+				e := w.ownWeights(i, j, s.h)
+				s.q[j][i] += part(&e)
+			}
+		}
+	}
 }
 
 // isOwn tells whether node i looks back by lag j into the piece itself.
@@ -113,7 +114,7 @@ func (w *twin) matrix(reg *regime, s *stretch) (*lu, bool) {
 	if f := w.factors[key]; f != nil {
 		return f, true
 	}
-	n, nf, h := w.model.n, w.model.ng+w.model.nq, s.h
+	n, h := w.model.n, s.h
 	size := stages * n
 	if s.own {
 		size += stages
@@ -130,27 +131,8 @@ func (w *twin) matrix(reg *regime, s *stretch) (*lu, bool) {
 			}
 		}
 	}
-	for j := 0; s.own && j < len(s.q); j++ {
-		for k := 1; k <= stages; k++ {
-			if !w.isOwn(k, j, h) {
-				continue
-			}
-			e := w.ownWeights(k, j, h)
-			for l := 1; l <= stages; l++ {
-				for p := range n {
-					fq := reg.f[p*nf+w.model.ng+j]
-					for i := range stages {
-						a[(i*n+p)*size+stages*n+l-1] -= h * w.r.a[i][k-1] * fq * e[l]
-					}
-				}
-				a[(stages*n+k-1)*size+stages*n+l-1] -= reg.m[n+w.model.ng+j] * e[l]
-			}
-		}
-	}
-	for i := 0; s.own && i < stages; i++ {
-		for p := range n {
-			a[(stages*n+i)*size+i*n+p] -= reg.m[p]
-		}
+	if s.own {
+		w.ownColumns(reg, s, a, size)
 	}
 	for i := range size {
 		a[i*size+i]++
@@ -166,8 +148,37 @@ func (w *twin) matrix(reg *regime, s *stretch) (*lu, bool) {
 	return f, true
 }
 
-// rightSide is the known part of the system of collocate.
-func (w *twin) rightSide(reg *regime, s *stretch) []float64 {
+// ownColumns writes the unknown m̂ into the matrix a of collocate.
+func (w *twin) ownColumns(reg *regime, s *stretch, a []float64, size int) {
+	n, ng, h := w.model.n, w.model.ng, s.h
+	nf, first := ng+w.model.nq, stages*n
+	for j := range s.q {
+		for k := 1; k <= stages; k++ {
+			if !w.isOwn(k, j, h) {
+				continue
+			}
+			e := w.ownWeights(k, j, h)
+			for l := 1; l <= stages; l++ {
+				for p := range n {
+					fq := reg.f[p*nf+ng+j]
+					for i := range stages {
+						a[(i*n+p)*size+first+l-1] -= h * w.r.a[i][k-1] * fq * e[l]
+					}
+				}
+				a[(first+k-1)*size+first+l-1] -= reg.m[n+ng+j] * e[l]
+			}
+		}
+	}
+	for i := range stages {
+		for p := range n {
+			a[(first+i)*size+i*n+p] -= reg.m[p]
+		}
+	}
+}
+
+// rightSide is the known part of the system of collocate, from the states x0 at the start and the
+// known signals of s; it is linear in them.
+func (w *twin) rightSide(reg *regime, s *stretch, x0 []float64) []float64 {
 	n, ng, nq := w.model.n, w.model.ng, w.model.nq
 	nf := ng + nq
 	b := make([]float64, stages*n, stages*(n+1))
@@ -191,7 +202,7 @@ func (w *twin) rightSide(reg *regime, s *stretch) []float64 {
 			for k := range stages {
 				sum += w.r.a[i][k] * force[k*n+p]
 			}
-			b[i*n+p] = w.x[p] + s.h*sum
+			b[i*n+p] = x0[p] + s.h*sum
 		}
 	}
 	if s.own {

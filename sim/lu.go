@@ -8,6 +8,8 @@ type lu struct {
 	a, v    []float64 // the matrix, its factors; rows one after the other
 	perm    []int
 	x, rest []float64
+	used    int       // times solved for, see twin.solution
+	op      *operator // built when used often
 }
 
 // factor decomposes a (n×n, rows one after the other), which it keeps; ok is false for a

@@ -70,9 +70,15 @@ func (o *twinOut) take(p *piece) (ok bool) {
 			*list = append(*list, v.at(o.r, math.Min((t-p.t)/p.h, (p.end-p.t)/p.h)))
 		}
 	}
+	from := len(o.u)
 	emit(&o.y, &p.y, o.plantDelay)
 	emit(&o.m, &p.m, o.allDelay)
 	emit(&o.u, &p.u, 0)
+	if l := o.cfg.Limits; l.On {
+		for i := from; i < len(o.u); i++ {
+			o.u[i] = l.clip(o.u[i]) // interpolation rounds
+		}
+	}
 	o.errors(p)
 	o.efforts(p)
 	o.figures(p)
@@ -96,7 +102,7 @@ func (o *twinOut) ends(p *piece) {
 		o.lastM = v
 	}
 	if v, ok := at(&p.u, 0); ok {
-		o.lastU = v
+		o.lastU = o.cfg.Limits.clip(v)
 	}
 }
 
@@ -157,6 +163,9 @@ func (o *twinOut) peak(f func(float64) float64, part, floor float64) (c, top flo
 func (o *twinOut) efforts(p *piece) {
 	part := (p.end - p.t) / p.h
 	_, v := o.peak(func(c float64) float64 { return math.Abs(p.u.at(o.r, c)) }, part, o.effort)
+	if l := o.cfg.Limits; l.On {
+		v = math.Min(v, math.Max(math.Abs(l.Low), math.Abs(l.High)))
+	}
 	o.effort = math.Max(o.effort, v)
 }
 
