@@ -31,30 +31,25 @@ func newRun(t *sim.Trace) run {
 // and file inputs, the errors at the end of unbounded ones and the degradation table.
 func simulateAll(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyzed, o Options) error {
 	list := variants(l, sampled, o.Degrade)
-	o.progress("step response", 0, len(l.Inputs)+1)
+	o.progress("step response", 0, 1)
 	if err := transients(ctx, l, c, cont, sampled); err != nil {
 		return err
 	}
+	o.progress("inputs", 0, len(l.Inputs))
 	c.Degrade = []DegradeRow{}
 	c.Curves = &Curves{}
+	all := make([][]outcome, len(l.Inputs))
+	added := make([][]Curve, len(l.Inputs))
+	err := parallel(len(l.Inputs), func(i int) (err error) {
+		all[i], added[i], err = simulateInput(ctx, l, l.Inputs[i], list, cont, sampled, o)
+		return err
+	})
+	if err != nil {
+		return err
+	}
 	for i, in := range l.Inputs {
-		o.progress(inputTitle(l, in), i+1, len(l.Inputs)+1)
-		length := horizon(l, in, cont, sampled)
-		curves := InputCurves{Input: inputTitle(l, in)}
-		runs := make([]outcome, len(list)+1) // the continuous loop, then the variants
-		err := parallel(len(runs), func(k int) (err error) {
-			switch {
-			case k == 0 && cont != nil:
-				runs[k], err = continuousOutcome(ctx, l, in, length, cont)
-			case k > 0:
-				runs[k], err = list[k-1].outcome(ctx, l, in, length, k == 1)
-			}
-			return err
-		})
-		if err != nil {
-			return err
-		}
-		for k, x := range runs {
+		curves := InputCurves{Input: inputTitle(l, in), Added: added[i]}
+		for k, x := range all[i] {
 			switch {
 			case k == 0 && cont == nil:
 				continue
@@ -68,14 +63,33 @@ func simulateAll(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *a
 				curves.add(x.run, x.row.Variant, k > 0)
 			}
 		}
-		if o.Curves && cont != nil {
-			if curves.Added, err = addedError(ctx, l, in, runs[1:]); err != nil {
-				return err
-			}
-		}
 		c.Curves.Inputs = append(c.Curves.Inputs, curves)
 	}
 	return nil
+}
+
+// simulateInput runs the continuous loop (first in the result, empty without one) and the variants
+// with one input, and gives the error that each variant adds.
+func simulateInput(ctx context.Context, l *loop.Loop, in loop.Input, list []variant, cont, sampled *analyzed, o Options) ([]outcome, []Curve, error) {
+	length := horizon(l, in, cont, sampled)
+	runs := make([]outcome, len(list)+1)
+	var err error
+	for k, v := range list {
+		if runs[k+1], err = v.outcome(ctx, l, in, length, k == 0); err != nil {
+			return nil, nil, err
+		}
+	}
+	if cont == nil {
+		return runs, nil, nil
+	}
+	var times []float64 // nil: evenly spaced
+	if o.Curves {
+		times = instants(runs[1:], length)
+	}
+	if runs[0], err = continuousOutcome(ctx, l, in, length, times, cont); err != nil || !o.Curves || runs[0].run.trace == nil {
+		return runs, nil, err
+	}
+	return runs, addedErrors(runs), nil
 }
 
 // outcome is one run with its line of the table; of a move or file, also the run to its end.
@@ -85,9 +99,9 @@ type outcome struct {
 	end run
 }
 
-// continuousOutcome runs the continuous twin.
-func continuousOutcome(ctx context.Context, l *loop.Loop, in loop.Input, length float64, cont *analyzed) (outcome, error) {
-	r, err := runTwin(ctx, l, in, length)
+// continuousOutcome runs the continuous twin and keeps the given instants.
+func continuousOutcome(ctx context.Context, l *loop.Loop, in loop.Input, length float64, times []float64, cont *analyzed) (outcome, error) {
+	r, err := runTwin(ctx, l, in, length, times)
 	if errors.Is(err, sim.ErrTwinLength) {
 		return outcome{row: DegradeRow{Input: inputTitle(l, in), Variant: "continuous", Stable: cont.stable, Note: err.Error()}}, nil
 	}
@@ -97,7 +111,7 @@ func continuousOutcome(ctx context.Context, l *loop.Loop, in loop.Input, length 
 	}
 	out.row = row(l, in, "continuous", cont, r)
 	if end, ok := endLength(l, in); ok && cont.stable {
-		out.end, err = runTwin(ctx, l, in, end)
+		out.end, err = runTwin(ctx, l, in, end, nil)
 	}
 	return out, err
 }

@@ -42,12 +42,13 @@ func twinConfig(l *loop.Loop, in loop.Input, length float64) (sim.TwinConfig, er
 	return cfg, nil
 }
 
-// runTwin simulates the continuous loop.
-func runTwin(ctx context.Context, l *loop.Loop, in loop.Input, length float64) (run, error) {
+// runTwin simulates the continuous loop and keeps the given instants, evenly spaced ones for nil.
+func runTwin(ctx context.Context, l *loop.Loop, in loop.Input, length float64, times []float64) (run, error) {
 	cfg, err := twinConfig(l, in, length)
 	if err != nil {
 		return run{}, err
 	}
+	cfg.Times = times
 	t, err := sim.Twin(ctx, cfg)
 	if err != nil {
 		return run{}, fmt.Errorf("continuous loop: %w", err)
