@@ -219,7 +219,9 @@ func (v *values) tail(r *radau) float64 {
 func (v *values) size() float64 {
 	m := 0.0
 	for _, x := range v {
-		m = math.Max(m, math.Abs(x))
+		if x = math.Abs(x); !(x <= m) {
+			m = x // a NaN stays
+		}
 	}
 	return m
 }
@@ -227,11 +229,16 @@ func (v *values) size() float64 {
 // onGrid returns the values on the grid.
 func (v *values) onGrid(r *radau) (g [gridPoints + 1]float64) {
 	for i := range g {
-		sum := 0.0
-		for j, w := range &r.look[i] {
-			sum += w * v[j]
-		}
-		g[i] = sum
+		g[i] = v.weighted(&r.look[i])
 	}
 	return g
+}
+
+// weighted is the value by its weights.
+func (v *values) weighted(w *[stages + 1]float64) float64 {
+	sum := 0.0
+	for j, x := range v {
+		sum += w[j] * x
+	}
+	return sum
 }

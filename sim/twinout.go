@@ -106,6 +106,15 @@ func (o *twinOut) ends(p *piece) {
 	}
 }
 
+// portion is the part of a piece of length h that is used; all of it where rounding of the instants
+// says a little less or more.
+func portion(used, h float64) float64 {
+	if c := used / h; math.Abs(c-1) > nearEnd {
+		return c
+	}
+	return 1
+}
+
 // errors adds the tracking error of a piece, whose output appears later by the dead time
 // of the plant: ∫e² by Gauss's rule, exact for the polynomials that they are, and the peak.
 func (o *twinOut) errors(p *piece) {
@@ -119,40 +128,48 @@ func (o *twinOut) errors(p *piece) {
 	if r.w == 0 && len(r.starts) > 0 {
 		k = r.piece(math.Max(0, from+(to-from)/2))
 	}
-	at := func(c float64) float64 {
+	reference := func(c float64) float64 {
 		t := from + c*p.h
-		v := 0.0
 		if k >= 0 {
-			v = r.inPiece(k, t)
-		} else {
-			v = r.At(math.Max(t, 0))
+			return r.inPiece(k, t)
 		}
-		return v - p.y.at(o.r, c)
+		return r.At(math.Max(t, 0))
 	}
-	part := (to - from) / p.h
+	part := portion(to-from, p.h)
 	sum := 0.0
 	for i, x := range o.r.gaussX {
-		e := at(x * part)
+		y := 0.0
+		if part == 1 {
+			y = p.y.weighted(&o.r.gaussAt[i])
+		} else {
+			y = p.y.at(o.r, x*part)
+		}
+		e := reference(x*part) - y
 		sum += o.r.gaussW[i] * e * e
 	}
 	o.sum.add(sum * (to - from))
 	o.sum.time += to - from
-	c, v := o.peak(func(c float64) float64 { return math.Abs(at(c)) }, part, o.sum.peak)
+	c, v := o.peak(&p.y, part, o.sum.peak, func(c, y float64) float64 { return math.Abs(reference(c) - y) })
 	o.sum.look(from+c*p.h, v)
 }
 
-// peak finds the highest value of f on [0, part] if it is above floor; else something lower.
-func (o *twinOut) peak(f func(float64) float64, part, floor float64) (c, top float64) {
-	var g [gridPoints + 1]float64
+// peak finds the highest value of f(c, v(c)) for c in [0, part] if it is above floor; else something
+// lower.
+func (o *twinOut) peak(v *values, part, floor float64, f func(c, v float64) float64) (c, top float64) {
+	g := v.onGrid(o.r)
 	for i, x := range o.r.grid {
-		g[i] = f(x * part)
+		if part != 1 {
+			g[i] = v.at(o.r, x*part)
+		}
+		g[i] = f(x*part, g[i])
 		if g[i] > top {
 			c, top = x*part, g[i]
 		}
 	}
+	at := func(c float64) float64 { return f(c, v.at(o.r, c)) }
 	for i := 1; i < gridPoints; i++ {
 		if g[i] >= g[i-1] && g[i] >= g[i+1] && 2*g[i]-math.Min(g[i-1], g[i+1]) > math.Max(floor, top) {
-			if x, v := highest(f, o.r.grid[i-1]*part, o.r.grid[i+1]*part); v > top {
+			if x, v := highest(at, o.r.grid[i-1]*part, o.r.grid[i+1]*part); v > top {
 				c, top = x, v
 			}
 		}
@@ -161,8 +178,8 @@ func (o *twinOut) peak(f func(float64) float64, part, floor float64) (c, top flo
 }
 
 func (o *twinOut) efforts(p *piece) {
-	part := (p.end - p.t) / p.h
-	_, v := o.peak(func(c float64) float64 { return math.Abs(p.u.at(o.r, c)) }, part, o.effort)
+	part := portion(p.end-p.t, p.h)
+	_, v := o.peak(&p.u, part, o.effort, func(_, u float64) float64 { return math.Abs(u) })
 	if l := o.cfg.Limits; l.On {
 		v = math.Min(v, math.Max(math.Abs(l.Low), math.Abs(l.High)))
 	}
@@ -180,7 +197,7 @@ func (o *twinOut) figures(p *piece) {
 	}
 	final := o.cfg.Step.Final
 	slope := p.y.slope(o.r)
-	part := (to - from) / p.h
+	part := portion(to-from, p.h)
 	value := func(c float64) (v, d float64) {
 		return p.y.at(o.r, c) / final, slope.at(o.r, c) / p.h / final
 	}
