@@ -48,6 +48,7 @@ func simulateAll(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *a
 		return err
 	}
 	for i, in := range l.Inputs {
+		c.warnCut(l, in, cont, sampled)
 		curves := InputCurves{Input: inputTitle(l, in), Added: added[i]}
 		for k, x := range all[i] {
 			switch {
@@ -71,7 +72,7 @@ func simulateAll(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *a
 // simulateInput runs the continuous loop (first in the result, empty without one) and the variants
 // with one input, and gives the error that each variant adds.
 func simulateInput(ctx context.Context, l *loop.Loop, in loop.Input, list []variant, cont, sampled *analyzed, o Options) ([]outcome, []Curve, error) {
-	length := horizon(l, in, cont, sampled)
+	length := cut(l, horizon(l, in, cont, sampled), mostTicksRun)
 	runs := make([]outcome, len(list)+1)
 	var err error
 	for k, v := range list {
@@ -209,8 +210,11 @@ func fillFromRun(s *Steady, in loop.Input, a *analyzed, r run) {
 	}
 }
 
-// endLength is the time to the first tick at or after the end of a move or file;
-// false for other inputs.
+// mostTicksEnd bounds the run to the end of a move or file: some seconds of work.
+const mostTicksEnd = 10_000_000
+
+// endLength is the time to the first tick at or after the end of a move or file; false for other
+// inputs, and for one of more than mostTicksEnd ticks (the warning of a cut run covers it).
 func endLength(l *loop.Loop, in loop.Input) (float64, bool) {
 	if in.Kind != "move" && in.Kind != "file" {
 		return 0, false
@@ -220,5 +224,6 @@ func endLength(l *loop.Loop, in loop.Input) (float64, bool) {
 		return 0, false
 	}
 	T, _ := l.Timing.Period.Float64()
-	return math.Max(1, math.Ceil(signal.Duration()/T*(1-1e-12))) * T, true
+	ticks := math.Max(1, math.Ceil(signal.Duration()/T*(1-1e-12)))
+	return ticks * T, ticks <= mostTicksEnd
 }

@@ -15,8 +15,10 @@ const (
 	settledAfter = 6
 	// stepLonger: the step figures look this many times longer, e^−12, so that a slow tail settles in view.
 	stepLonger = 2
-	// mostTicksRun bounds a run; a loop that needs more ticks to settle is shown as far as that.
-	mostTicksRun = 400_000
+	// mostTicksRun bounds a run, mostTicksStep the run for the step figures (about a second of work); a
+	// loop that needs more ticks to settle is run as far as that, and a warning says so.
+	mostTicksRun  = 400_000
+	mostTicksStep = 4_000_000
 	// fewestTicksRun shows the staircase even of a loop that settles at once.
 	fewestTicksRun = 12
 )
@@ -46,7 +48,7 @@ func signalOf(in loop.Input) (r, d sim.Signal, err error) {
 	return r, d, err
 }
 
-// horizon is how long the loop is simulated for an input, seconds: until the slowest
+// horizon is how long a loop should be simulated for an input, seconds: until the slowest
 // mode of the columns that are stable has died out, several periods of a sine, and the
 // whole of a move or file with the settling after it.
 func horizon(l *loop.Loop, in loop.Input, columns ...*analyzed) float64 {
@@ -75,8 +77,22 @@ func horizon(l *loop.Loop, in loop.Input, columns ...*analyzed) float64 {
 			length = r.Duration() + length/2
 		}
 	}
-	length = math.Max(length, fewestTicksRun*T)
-	return math.Min(length, mostTicksRun*T)
+	return math.Max(length, fewestTicksRun*T)
+}
+
+// cut bounds the length of a run by a number of ticks.
+func cut(l *loop.Loop, length, mostTicks float64) float64 {
+	T, _ := l.Timing.Period.Float64()
+	return math.Min(length, mostTicks*T)
+}
+
+// warnCut tells that runs end before the loop has settled.
+func (c *Compare) warnCut(l *loop.Loop, in loop.Input, columns ...*analyzed) {
+	length := horizon(l, in, columns...)
+	if shown := cut(l, length, mostTicksRun); shown < length*(1-1e-9) {
+		c.warn("run_cut", "%s: the simulation ends after %d ticks (%.4g s), long before the loop has settled (%.4g s): its peak, rms and curves cover that time only; a lower rate would do for so slow a loop",
+			inputTitle(l, in), mostTicksRun, shown, length)
+	}
 }
 
 // slowest is the time constant of the slowest closed-loop mode, seconds.

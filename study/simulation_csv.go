@@ -26,7 +26,7 @@ func Simulate(ctx context.Context, l *loop.Loop, i int, o Options) (SimulationCS
 		return SimulationCSV{}, err
 	}
 	in := l.Inputs[i]
-	length := horizon(l, in, cont, sampled)
+	length := cut(l, horizon(l, in, cont, sampled), mostTicksRun)
 	cfg, err := sampledConfig(l, sampled.block, in, length, true)
 	if err != nil {
 		return SimulationCSV{}, err

@@ -18,7 +18,7 @@ func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *an
 			break
 		}
 	}
-	length := stepLonger * horizon(l, in, cont, sampled)
+	length := cut(l, stepLonger*horizon(l, in, cont, sampled), mostTicksStep)
 	if cont != nil && cont.stable {
 		f, err := twinFigures(ctx, l, in, length, cont.stepSpec(l, in))
 		switch {
@@ -54,10 +54,14 @@ func (a *analyzed) stepSpec(l *loop.Loop, in loop.Input) sim.StepSpec {
 
 func transientOf(f sim.Figures) Transient {
 	fig := func(m sim.Maybe) Figure { return Figure{m.Value, m.OK} }
-	return Transient{
+	t := Transient{
 		OvershootPercent: fig(f.OvershootPercent), RiseTimeS: fig(f.RiseTime),
 		SettlingTimeS: fig(f.SettlingTime), PeakTimeS: fig(f.PeakTime), PeakEffort: fig(f.PeakEffort),
 	}
+	if !t.SettlingTimeS.OK { // the highest value may be still to come
+		t.OvershootPercent, t.PeakTimeS = Figure{}, Figure{}
+	}
+	return t
 }
 
 // warnSaturation tells when the step reaches a limit of the actuator: its figures are then not

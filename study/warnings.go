@@ -197,7 +197,7 @@ func warnNoFigure(c *Compare) {
 		}
 		add(x.col.CrossoverRadS, "crossover", "the loop gain never passes through 1, so phase and delay margin are infinite")
 		add(x.col.BandwidthRadS, "bandwidth", "the response does not start from a finite gain at rest")
-		add(x.col.Transient.RiseTimeS, "step figures", "the step response has no final value other than zero, or did not settle in the simulated time")
+		add(x.col.Transient.SettlingTimeS, "step figures", "the step response has no final value other than zero, or did not settle in the simulated time")
 		if len(missing) > 0 {
 			c.warn("no_figure", "%s column, not applicable: %s", x.name, strings.Join(missing, "; "))
 		}
