@@ -272,28 +272,3 @@ func (w *twin) exogenous(t, start, h float64) []float64 {
 	g[len(w.rDelays)+1] = 1
 	return g
 }
-
-// unresolved is the largest tail of the signals, as parts of their sizes so far.
-func (w *twin) unresolved(s *stretch) float64 {
-	worst := 0.0
-	for i, v := range w.signals(s) {
-		size := math.Max(w.sizes[i], v.size())
-		if size > 0 {
-			worst = math.Max(worst, v.tail(w.r)/size)
-		}
-	}
-	return worst
-}
-
-// signals lists what a piece has to resolve.
-func (w *twin) signals(s *stretch) []*values {
-	list := w.list[:0]
-	for i := range s.x {
-		list = append(list, &s.x[i])
-	}
-	for j := range s.q {
-		list = append(list, &s.q[j])
-	}
-	w.list = append(list, &s.y, &s.m, &s.v)
-	return w.list
-}

@@ -266,13 +266,12 @@ func (w *twin) regime(s state) *regime {
 	return r
 }
 
-// resolved is the tail, as a part of its size, with which a signal counts as resolved.
-const resolved = 1e-12
-
 // advance takes one piece, or a switch of mode at the present instant.
 func (w *twin) advance() (diverged bool, err error) {
-	const rounding = 4e-15 // of instants that are sums of a dozen numbers
-	if order, any := w.bounds.take(w.t*(1+rounding), w.lags, w.model.smoothing); any {
+	// Instants are one when they differ by the rounding of a dozen sums, or by nothing that matters
+	// in the whole run.
+	now := w.t + math.Max(4e-15*w.t, 1e-18*w.cfg.Duration)
+	if order, any := w.bounds.take(now, w.lags, w.model.smoothing); any {
 		w.length, w.fresh = w.first, true
 		if order < 1 || w.model.smoothing < 1 {
 			w.settle()
@@ -307,7 +306,7 @@ func (w *twin) try(room float64) (s *stretch, next float64, err error) {
 		s, ok := w.collocate(reg, h)
 		rest := math.Inf(1)
 		if ok {
-			rest = w.unresolved(s)
+			rest = w.unresolved(reg, s)
 		}
 		// A tail that no longer falls by 2^3 with half the length is rounding, not signal.
 		if rest < 1e-9 && rest > last/8 {
