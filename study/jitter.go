@@ -3,6 +3,8 @@ package study
 import (
 	"math"
 	"math/cmplx"
+
+	"steadytick/internal/lti"
 )
 
 // jitterMargin is the bound on delays that may vary within [0, δ] from tick to tick without
@@ -10,8 +12,9 @@ import (
 //
 //	δ = 1 / max ω·|T(jω)|,   T = L/(1 + L)
 //
-// (Kao and Lincoln, Automatica 40, 2004; from memory.) Sampled, ω runs to π/T. It is a
-// sufficient condition: a loop may bear more.
+// in seconds (Kao and Lincoln, Automatica 40, 2004; from memory). Sampled, ω runs to π/T; continuous, to
+// infinity. It is a sufficient condition: a loop may bear more. Not applicable where the
+// response cannot be evaluated.
 func (a *analyzed) jitterMargin() Figure {
 	scan, err := a.block.open.Scan()
 	if err != nil {
@@ -42,8 +45,23 @@ func (a *analyzed) jitterMargin() Figure {
 	}
 	lo, hi := grid[max(at-1, 0)], grid[min(at+1, len(grid)-1)]
 	best = math.Max(best, f(goldenMax(f, lo, hi)))
+	if a.block.period == nil {
+		best = math.Max(best, slopeAtInfinity(a.block.open))
+	}
 	if !(best > 0) {
 		return Fig(math.Inf(1))
 	}
 	return Fig(1 / best)
+}
+
+// slopeAtInfinity is lim ω·|T(jω)|, ω → ∞, of a continuous loop: the gain of the highest powers for
+// a relative degree of 1, infinite for 0.
+func slopeAtInfinity(l lti.TF) float64 {
+	switch {
+	case l.IsZero() || l.RelativeDegree() > 1:
+		return 0
+	case l.RelativeDegree() < 1:
+		return math.Inf(1)
+	}
+	return l.Num[len(l.Num)-1].Abs().Float64()
 }

@@ -90,7 +90,7 @@ func reportHidden(c *Compare, column string, p dd.Complex, stable bool) {
 		variable = "z"
 	}
 	if stable {
-		c.warn("hidden_mode", "%s loop: a pole and a zero cancel at %s = %s; the mode decays, but the reference neither moves nor shows it", column, variable, complexText(p.Complex128()))
+		c.warn("hidden_mode", "%s loop: a pole and a zero cancel at %s = %s; the mode decays, but the response from r to y does not show it; it can ring in the effort, between the ticks or after a disturbance", column, variable, complexText(p.Complex128()))
 		return
 	}
 	c.warn("hidden_unstable_mode", "%s loop: stable only on paper. A pole and a zero cancel at %s = %s: the response from r to y hides a mode that does not decay, so the loop is counted as unstable", column, variable, complexText(p.Complex128()))
