@@ -7,58 +7,47 @@ import (
 	"steadytick/loop"
 )
 
+// columnMetrics are the metrics that are a figure of the sampled column.
+var columnMetrics = map[string]func(*Column) Figure{
+	"position_constant":     func(c *Column) Figure { return c.PositionConstant },
+	"velocity_constant":     func(c *Column) Figure { return c.VelocityConstant },
+	"acceleration_constant": func(c *Column) Figure { return c.AccelerationConstant },
+	"phase_margin":          func(c *Column) Figure { return c.PhaseMarginDeg },
+	"gain_margin":           func(c *Column) Figure { return c.GainMarginDB },
+	"modulus_margin":        func(c *Column) Figure { return c.ModulusMargin },
+	"delay_margin":          func(c *Column) Figure { return c.DelayMarginS },
+	"jitter_margin":         func(c *Column) Figure { return c.JitterMarginS },
+	"crossover":             func(c *Column) Figure { return c.CrossoverRadS },
+	"bandwidth":             func(c *Column) Figure { return c.BandwidthRadS },
+	"overshoot":             func(c *Column) Figure { return c.Transient.OvershootPercent },
+	"rise_time":             func(c *Column) Figure { return c.Transient.RiseTimeS },
+	"settling_time":         func(c *Column) Figure { return c.Transient.SettlingTimeS },
+	"peak_effort":           func(c *Column) Figure { return c.Transient.PeakEffort },
+}
+
 // metric looks a metric of the sampled loop up by its name in requirements. The value
 // is in the metric's base unit; the text says why there is none.
 func metric(l *loop.Loop, c *Compare, name string) (Figure, string) {
-	s := c.Sampled
-	if f, why, ok := steadyMetric(s, name); ok {
+	if f, why, ok := steadyMetric(c.Sampled, name); ok {
 		return f, why
 	}
-	T := c.PeriodS
-	value := func(f Figure) (Figure, string) {
-		if !f.OK {
-			return f, "the loop has no such figure"
-		}
-		return f, ""
-	}
-	switch name {
-	case "position_constant":
-		return value(s.PositionConstant)
-	case "velocity_constant":
-		return value(s.VelocityConstant)
-	case "acceleration_constant":
-		return value(s.AccelerationConstant)
-	case "phase_margin":
-		return value(s.PhaseMarginDeg)
-	case "gain_margin":
-		return value(s.GainMarginDB)
-	case "modulus_margin":
-		return value(s.ModulusMargin)
-	case "delay_margin":
-		return value(s.DelayMarginS)
-	case "jitter_margin":
-		return value(s.JitterMarginS)
-	case "crossover":
-		return value(s.CrossoverRadS)
-	case "bandwidth":
-		return value(s.BandwidthRadS)
-	case "overshoot":
-		return value(s.Transient.OvershootPercent)
-	case "rise_time":
-		return value(s.Transient.RiseTimeS)
-	case "settling_time":
-		return value(s.Transient.SettlingTimeS)
-	case "peak_effort":
-		return value(s.Transient.PeakEffort)
-	case "samples_per_rise":
-		f := s.Transient.RiseTimeS
-		f.Value /= T
-		return value(f)
-	case "processor_load":
+	var f Figure
+	switch get := columnMetrics[name]; {
+	case get != nil:
+		f = get(c.Sampled)
+	case name == "samples_per_rise":
+		f = c.Sampled.Transient.RiseTimeS
+		f.Value /= c.PeriodS
+	case name == "processor_load":
 		cost, _ := l.Timing.Compute.Float64()
-		return Fig(100 * cost / T), ""
+		f = Fig(100 * cost / c.PeriodS)
+	default:
+		return f, "this metric needs parts of the loop file that compare does not evaluate"
 	}
-	return Figure{}, "this metric needs parts of the loop file that compare does not evaluate"
+	if !f.OK {
+		return f, "the loop has no such figure"
+	}
+	return f, ""
 }
 
 // steadyMetric finds the metrics that belong to an input.
