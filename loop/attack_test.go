@@ -9,7 +9,7 @@ import (
 
 // slowest is how long reading one file may take on a slow machine with the race
 // detector on; without both it is under a second.
-const slowest = 20 * time.Second
+const slowest = time.Minute
 
 func withModel(model string) string {
 	return "loop: attack\nplant: {model: 1/(s+1)}\ncontroller:\n  map: tustin\n  model: " + model + "\ntiming: {rate: 1 kHz}\n"

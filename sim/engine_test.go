@@ -242,6 +242,35 @@ func TestRunsAtOnce(t *testing.T) {
 	wg.Wait()
 }
 
+// A motion as the disturbance of 1/s behind a dead time, no controller at work: the output is its
+// integral, by the pieces' own coefficients; breaks fall where no tick is.
+func TestMotionAsDisturbance(t *testing.T) {
+	d, err := Move(2, 1, 2, 8)
+	if err != nil {
+		t.Fatal(err)
+	}
+	integral := func(at float64) float64 {
+		sum := 0.0
+		for i, from := range d.starts {
+			to := at
+			if i+1 < len(d.starts) {
+				to = math.Min(at, d.starts[i+1])
+			}
+			if h := to - from; h > 0 {
+				c := d.coef[i]
+				sum += h * (c[0] + h*(c[1]/2+h*(c[2]/3+h*c[3]/4)))
+			}
+		}
+		return sum
+	}
+	cfg := proportional(t, plantOf(t, model(t, rats("1"), rats("1", "0"), "0.123"), unit(t)), "1/7", "0", "1", 25)
+	cfg.Tasks[0].Drives, cfg.Disturbances = nil, []Drive{{InputDisturbance, d}}
+	tr := run(t, cfg)
+	for i, at := range tr.T {
+		near(t, "y", tr.Y[i], integral(at-0.123), 1e-14)
+	}
+}
+
 // Thinning keeps the bound, the ends and the extremes of the points looked at.
 func TestThinning(t *testing.T) {
 	plant := plantOf(t, model(t, rats("1"), rats("1", "0.02", "1"), "0"), unit(t))

@@ -147,3 +147,36 @@ func TestSplitIntegrators(t *testing.T) {
 		t.Errorf("rest %+v", rest)
 	}
 }
+
+// Triple zeros keep their digits: ((s+3)² + 16)³ over (s+1)(s+2)…(s+6) at ω = 1, by the factors.
+func TestMultipleZeros(t *testing.T) {
+	num, den := rats("1"), rats("1")
+	times := func(a, b []*big.Rat) []*big.Rat {
+		out := make([]*big.Rat, len(a)+len(b)-1)
+		for i := range out {
+			out[i] = new(big.Rat)
+		}
+		for i := range a {
+			for j := range b {
+				out[i+j].Add(out[i+j], new(big.Rat).Mul(a[i], b[j]))
+			}
+		}
+		return out
+	}
+	want := complex(1, 0)
+	for range 3 {
+		num = times(num, rats("1", "6", "25"))
+		want *= complex(24, 6) // (j)² + 6j + 25
+	}
+	for k := 1; k <= 6; k++ {
+		den = times(den, []*big.Rat{big.NewRat(1, 1), big.NewRat(int64(k), 1)})
+		want /= complex(float64(k), 1)
+	}
+	c, err := realizeModel(model(t, num, den, "0"))
+	if err != nil {
+		t.Fatal(err)
+	}
+	if got := c.response(1i); !(cmplx.Abs(got-want) <= 1e-13*cmplx.Abs(want)) { // ratios up to 25 in three sections
+		t.Errorf("%v, want %v", got, want)
+	}
+}

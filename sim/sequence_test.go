@@ -7,7 +7,7 @@ import (
 
 // piOnIntegrator is kp = ki = 1 on the plant 1/s at T = 1 s with the effort within ±1, r = 3. All
 // values are small binary fractions, so the sequences computed by hand are met exactly.
-func piOnIntegrator(t *testing.T, aw AntiWindup, track float64) *Trace {
+func piOnIntegrator(t *testing.T, aw AntiWindup, track, r float64) *Trace {
 	c, err := NewController(ControllerConfig{
 		Period: rat("1"), Terms: []Term{{Model: inZ(t, rats("0", "1"), rats("-1", "1"), "1"), Weight: 1}},
 		AntiWindup: aw, TrackingTime: track,
@@ -16,7 +16,7 @@ func piOnIntegrator(t *testing.T, aw AntiWindup, track float64) *Trace {
 		t.Fatal(err)
 	}
 	return run(t, Config{
-		System: plantOf(t, model(t, one(), rats("1", "0"), "0"), unit(t)), Reference: Step(3), Ticks: 7,
+		System: plantOf(t, model(t, one(), rats("1", "0"), "0"), unit(t)), Reference: Step(r), Ticks: 7,
 		Tasks: []Task{{Period: rat("1"), Controller: c, Reads: []int{OutputM}, Drives: []int{InputEffort}, Limits: Limits{true, -1, 1}}},
 	})
 }
@@ -36,17 +36,22 @@ func exactly(t *testing.T, what string, got, want []float64) {
 // By hand: v = e + i, u = v within ±1, then i by the rule, y ← y + u.
 func TestAntiWindupByHand(t *testing.T) {
 	// i ← i + e:              v = 3 5 6 6 5 3 0 −3
-	tr := piOnIntegrator(t, NoAntiWindup, 0)
+	tr := piOnIntegrator(t, NoAntiWindup, 0, 3)
 	exactly(t, "u, integrator runs on", tr.TickU, []float64{1, 1, 1, 1, 1, 1, 0, -1})
 	exactly(t, "y", tr.TickY, []float64{0, 1, 2, 3, 4, 5, 6, 6})
 	// i stays while v > 1 and e > 0: v = 3 2 1 1 0 −1 −1 0
-	tr = piOnIntegrator(t, Clamp, 0)
+	tr = piOnIntegrator(t, Clamp, 0, 3)
 	exactly(t, "u, clamp", tr.TickU, []float64{1, 1, 1, 1, 0, -1, -1, 0})
 	exactly(t, "y", tr.TickY, []float64{0, 1, 2, 3, 4, 4, 3, 2})
 	// i ← i + e + (u − v)/2:  v = 3 4 3.5 2.25 0.625 −1, i = 2 2.5 2.25 1.625 0.625 −1
-	tr = piOnIntegrator(t, Tracking, 2)
+	tr = piOnIntegrator(t, Tracking, 2, 3)
 	exactly(t, "u, tracking", tr.TickU, []float64{1, 1, 1, 1, 0.625, -1})
 	exactly(t, "y", tr.TickY, []float64{0, 1, 2, 3, 4, 4.625, 3.625})
+	// And the mirror images.
+	tr = piOnIntegrator(t, Clamp, 0, -3)
+	exactly(t, "u, clamp, mirrored", tr.TickU, []float64{-1, -1, -1, -1, 0, 1, 1, 0})
+	tr = piOnIntegrator(t, Tracking, 2, -3)
+	exactly(t, "u, tracking, mirrored", tr.TickU, []float64{-1, -1, -1, -1, -0.625, 1})
 }
 
 // Quantization is no limit: with the effort between two codes the integrator must go on.

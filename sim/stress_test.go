@@ -44,7 +44,7 @@ func TestTwinNearFastRun(t *testing.T) {
 		fail(err)
 
 		start := time.Now()
-		ctx, cancel := context.WithTimeout(context.Background(), 20*time.Second)
+		ctx, cancel := context.WithTimeout(context.Background(), 2*time.Minute)
 		defer cancel()
 		twin, err := Twin(ctx, TwinConfig{
 			Plant: plant, Sensor: sensor, Terms: []TwinTerm{{control, 1}}, AntiWindup: aw, TrackingTime: 0.3,

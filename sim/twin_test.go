@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 	"math"
+	"math/big"
 	"testing"
 
 	"steadytick/sdomain"
@@ -39,20 +40,25 @@ func TestTwinSecondOrder(t *testing.T) {
 }
 
 // x'(t) = −x(t − τ) + 1 by the method of steps: x = Σ_k (−1)^k (t − kτ)^{k+1}/(k+1)! over
-// t > kτ; the output is behind by another τ. Alternating terms up to 12^6/6! lose 4 digits.
+// t > kτ. With the dead time in the plant or in the controller the output is behind by another τ, with
+// it in the sensor it is x itself. Alternating terms up to 12^6/6! lose 4 digits.
 func TestTwinMethodOfSteps(t *testing.T) {
 	for _, tau := range []string{"1", "1.5", "7", "40"} {
 		d, _ := rat(tau).Float64()
-		tr := twinOf(t, TwinConfig{
-			Plant: model(t, one(), rats("1", "0"), tau), Sensor: unit(t),
-			Terms: []TwinTerm{{gain(t, "1"), 1}}, Reference: Step(1), Duration: 12,
-		})
-		for i, at := range tr.T {
-			want := 0.0
-			for k := 0.0; at-d > k*d; k++ {
-				want += math.Pow(-1, k) * math.Pow(at-d-k*d, k+1) / math.Gamma(k+2)
+		for place, behind := range map[string]float64{"plant": d, "controller": d, "sensor": 0} {
+			cfg := TwinConfig{
+				Plant: model(t, one(), rats("1", "0"), "0"), Sensor: unit(t),
+				Terms: []TwinTerm{{gain(t, "1"), 1}}, Reference: Step(1), Duration: 12,
 			}
-			near(t, "y at dead time "+tau, tr.Y[i], want, 1e-11)
+			*map[string]**big.Rat{"plant": &cfg.Plant.Delay, "controller": &cfg.Terms[0].Model.Delay, "sensor": &cfg.Sensor.Delay}[place] = rat(tau)
+			tr := twinOf(t, cfg)
+			for i, at := range tr.T {
+				want := 0.0
+				for k := 0.0; at-behind > k*d; k++ {
+					want += math.Pow(-1, k) * math.Pow(at-behind-k*d, k+1) / math.Gamma(k+2)
+				}
+				near(t, "y at dead time "+tau+" of the "+place, tr.Y[i], want, 1e-11)
+			}
 		}
 	}
 }
@@ -238,5 +244,56 @@ func TestTwinDiverges(t *testing.T) {
 	}
 	if !finite([]float64{tr.FinalY, tr.FinalU, tr.PeakError, tr.RMSError, tr.PeakEffort}) {
 		t.Errorf("%+v", tr)
+	}
+}
+
+// A prefilter's and a feedforward's dead time move the reference alone: without feedback (weight 1,
+// plant 0) u is the delayed signal itself.
+func TestTwinDelaysOfTheReference(t *testing.T) {
+	filter, feed := model(t, one(), one(), "0.3"), model(t, rats("2"), one(), "0.7")
+	tr := twinOf(t, TwinConfig{
+		Plant: model(t, rats("0"), one(), "0"), Sensor: unit(t), Terms: []TwinTerm{{model(t, one(), one(), "0.5"), 1}, {gain(t, "1"), 0.5}},
+		Prefilter: &filter, Feedforward: &feed, Reference: Ramp(1), Duration: 2,
+	})
+	for i, at := range tr.T {
+		want := math.Max(0, at-0.8) + 0.5*math.Max(0, at-0.3) + 2*math.Max(0, at-0.7)
+		near(t, "u", tr.U[i], want, 1e-14)
+	}
+}
+
+// The linear map of often used systems gives what elimination gives, in every mode.
+func TestOperator(t *testing.T) {
+	cfg := TwinConfig{
+		Plant: model(t, rats("2"), rats("1", "0.3", "4"), "0.4"), Sensor: model(t, one(), rats("0.05", "1"), "0"),
+		Terms:  []TwinTerm{{model(t, rats("1", "2"), rats("1", "0"), "0"), 1}},
+		Limits: Limits{true, -1, 2}, Reference: Ramp(1), Disturbance: Step(0.5), AntiWindup: Clamp, Duration: 3,
+	}
+	if err := cfg.check(); err != nil {
+		t.Fatal(err)
+	}
+	m, err := newTwinModel(&cfg)
+	if err != nil {
+		t.Fatal(err)
+	}
+	w := newTwin(&cfg, m)
+	for w.t < 1.5 {
+		if _, err := w.advance(); err != nil {
+			t.Fatal(err)
+		}
+	}
+	for _, st := range []state{{}, {md: high}, {md: high, frozen: true}, {md: low}} {
+		reg := w.regime(st)
+		s, _ := w.collocate(reg, 0.1)
+		f, _ := w.matrix(reg, s)
+		want := w.rightSide(reg, s, w.x)
+		f.solve(want)
+		f.used = worthwhile
+		got := w.solution(reg, s, f)
+		if f.op == nil {
+			t.Fatal("no operator")
+		}
+		for i := range want {
+			near(t, "unknown", got[i], want[i], 1e-14) // sums of 50 terms of size 1
+		}
 	}
 }

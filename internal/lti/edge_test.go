@@ -219,7 +219,7 @@ func TestAllPass(t *testing.T) {
 	if _, err := Analyze(delayed, 64); err != nil {
 		t.Error(err)
 	}
-	if took := time.Since(start); took > 2*time.Second {
+	if took := time.Since(start); took > hang {
 		t.Errorf("took %v", took)
 	}
 }
@@ -239,7 +239,7 @@ func TestRandomLoops(t *testing.T) {
 			}
 			continue
 		}
-		if took := time.Since(start); took > time.Second {
+		if took := time.Since(start); took > hang {
 			t.Errorf("loop %d took %v: %+v", i, took, l)
 		}
 		if a.Poles.Complete && !a.Marginal && a.Poles.Marginal == 0 && a.Unstable != a.Poles.Unstable && a.Poles.Unstable < 64 {

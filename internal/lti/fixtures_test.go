@@ -4,6 +4,7 @@ import (
 	"math"
 	"math/big"
 	"testing"
+	"time"
 
 	"steadytick/internal/dd"
 	"steadytick/internal/poly"
@@ -76,3 +77,7 @@ func wantNear(t *testing.T, what string, got, want, tol float64) {
 func fromRoots(r []dd.Complex) poly.Poly { return poly.FromRoots(r) }
 
 func abs128(v complex128) float64 { return math.Hypot(real(v), imag(v)) }
+
+// hang is how long no analysis may take on any machine, however loaded: it tells that
+// something does not end, not how fast it is. For speed see the benchmarks.
+const hang = time.Minute
