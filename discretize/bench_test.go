@@ -4,6 +4,7 @@ import (
 	"math/big"
 	"testing"
 
+	"steadytick/internal/yardstick"
 	"steadytick/sdomain"
 )
 
@@ -32,6 +33,7 @@ func benchHold(b *testing.B, T, delay *big.Rat) {
 			b.Fatal(err)
 		}
 	}
+	yardstick.Report(b)
 }
 
 // One hold equivalent of order 6 from the exact model, root finding included.
@@ -52,6 +54,7 @@ func BenchmarkPreparedHoldSubTick(b *testing.B) {
 			b.Fatal(err)
 		}
 	}
+	yardstick.Report(b)
 }
 
 func BenchmarkTustin(b *testing.B) {

@@ -3,6 +3,8 @@ package sim
 import (
 	"context"
 	"testing"
+
+	"steadytick/internal/yardstick"
 )
 
 // orderSix is a loop of order six: a plant of order three with a sensor lag, a controller of
@@ -33,6 +35,7 @@ func BenchmarkTick(b *testing.B) {
 			if _, err := Run(context.Background(), cfg); err != nil {
 				b.Fatal(err)
 			}
+			yardstick.Report(b)
 		})
 	}
 }

@@ -3,6 +3,8 @@ package study
 import (
 	"context"
 	"testing"
+
+	"steadytick/internal/yardstick"
 )
 
 // orderSix is an invented loop of order six: drive, belt mode, sensor and controller lag.
@@ -45,6 +47,7 @@ func BenchmarkFullAnalysis(b *testing.B) {
 			b.Fatal(err)
 		}
 	}
+	yardstick.Report(b)
 }
 
 // The whole comparison with the curves of the report.
@@ -55,4 +58,5 @@ func BenchmarkCompare(b *testing.B) {
 			b.Fatal(err)
 		}
 	}
+	yardstick.Report(b)
 }
