@@ -90,6 +90,9 @@ func TestTwinAgainstIntegration(t *testing.T) {
 			if len(tr.T) != len(c.Rows) {
 				t.Fatalf("%d instants, want %d", len(tr.T), len(c.Rows))
 			}
+			if tr.Pieces > 250 { // the largest takes 196; 324 when small effects of large causes are followed
+				t.Errorf("%d pieces", tr.Pieces)
+			}
 			worst := [3]float64{}
 			for i, row := range c.Rows {
 				for k, got := range []float64{tr.Y[i], tr.M[i], tr.U[i]} {

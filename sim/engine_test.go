@@ -271,6 +271,48 @@ func TestMotionAsDisturbance(t *testing.T) {
 	}
 }
 
+// A sine as the disturbance of 1/(s+1): y = a/(1+w²)·(sin wt − w·cos wt + w·e^{−t}).
+func TestSineAsDisturbance(t *testing.T) {
+	const a, w = 2, 3.1
+	cfg := proportional(t, plantOf(t, model(t, one(), rats("1", "1"), "0"), unit(t)), "1/7", "0", "1", 40)
+	cfg.Tasks[0].Drives, cfg.Disturbances = nil, []Drive{{InputDisturbance, Sine(a, w)}}
+	tr := run(t, cfg)
+	for i, at := range tr.T {
+		near(t, "y", tr.Y[i], a/(1+w*w)*(math.Sin(w*at)-w*math.Cos(w*at)+w*math.Exp(-at)), 1e-14)
+	}
+}
+
+// A plant that is a gain holds the reference of the last tick: the error of a ramp comes up to
+// slope·T just before the next.
+func TestPeakBeforeJump(t *testing.T) {
+	cfg := openLoop(t, []string{"1"}, []string{"1"}, "0", 50)
+	cfg.Reference = Ramp(3)
+	tr := run(t, cfg)
+	near(t, "peak", tr.PeakError, 0.3, 1e-14)
+	near(t, "rms", tr.RMSError, 0.3/math.Sqrt(3), 1e-14) // ∫e² of a parabola, exact
+}
+
+// Ticks start at the offset, be it more than a period, and efforts reach the plant after every delay.
+func TestOffsetBeyondPeriod(t *testing.T) {
+	cfg := proportional(t, plantOf(t, model(t, one(), rats("1", "0"), "0.17"), unit(t)), "1/10", "0.05", "1", 20)
+	cfg.Tasks[0].Offset = rat("0.23")
+	tr := run(t, cfg)
+	near(t, "first tick", tr.TickT[0], 0.23, 1e-16)
+	for i, at := range tr.T {
+		// Effort 1 from 0.28 on reaches the plant at 0.45; the next, still 1, later.
+		want := 0.0
+		if at >= 0.28 {
+			want = 1
+		}
+		if at < 0.5 && tr.U[i] != want {
+			t.Errorf("u(%g) = %g, want %g", at, tr.U[i], want)
+		}
+		if at <= 0.55 {
+			near(t, "y", tr.Y[i], math.Max(0, at-0.45), 1e-15)
+		}
+	}
+}
+
 // Thinning keeps the bound, the ends and the extremes of the points looked at.
 func TestThinning(t *testing.T) {
 	plant := plantOf(t, model(t, rats("1"), rats("1", "0.02", "1"), "0"), unit(t))

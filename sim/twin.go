@@ -20,7 +20,8 @@ type TwinTerm struct {
 //
 //	v = Σ Term + Feedforward·r,  u = v within Limits,  y = Plant·(u + d),  m = Sensor·y
 //
-// without sampling, hold, conversion or compute time. Models must be proper.
+// without sampling, hold, conversion or compute time; a slew limit and converters are left out as
+// well. Models must be proper.
 type TwinConfig struct {
 	Plant, Sensor sdomain.Model
 	Terms         []TwinTerm

@@ -297,3 +297,20 @@ func TestOperator(t *testing.T) {
 		}
 	}
 }
+
+// A load a few microseconds after the start comes back through the dead time while everything that it
+// moves is still far below the rounding of the past; pieces must not shrink for that.
+func TestTwinSmallStart(t *testing.T) {
+	load, err := Table([]float64{5.453824996948242e-06}, []float64{0.000244140625})
+	if err != nil {
+		t.Fatal(err)
+	}
+	tr := twinOf(t, TwinConfig{
+		Plant: model(t, rats("0.02", "1.45"), rats("0.94", "0.2", "0.07"), "0"), Sensor: model(t, one(), rats("0.16", "1"), "0.25"),
+		Terms: []TwinTerm{{model(t, rats("0.99", "1.5"), rats("1", "0"), "0"), 1}}, AntiWindup: Tracking, TrackingTime: 0.3,
+		Limits: Limits{true, -0.2222, 0.3}, Reference: Ramp(0.3), Disturbance: load, Duration: 10,
+	})
+	if tr.Pieces > 300 {
+		t.Errorf("%d pieces", tr.Pieces)
+	}
+}
