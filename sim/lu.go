@@ -1,100 +1,60 @@
 package sim
 
-import "math"
+import (
+	"gonum.org/v1/gonum/blas"
+	"gonum.org/v1/gonum/blas/blas64"
+	"gonum.org/v1/gonum/lapack/lapack64"
+)
 
-// lu is a square matrix with its factors, the pivot of each column being the largest entry.
+// lu is a square matrix with its triangular factors, by partial pivoting.
 type lu struct {
 	n       int
-	a, v    []float64 // the matrix, its factors; rows one after the other
+	a, v    blas64.General // the matrix, its factors
 	perm    []int
 	x, rest []float64
 	used    int       // times solved for, see twin.solution
 	op      *operator // built when used often
 }
 
-// factor decomposes a (n×n, rows one after the other), which it keeps; ok is false for a
-// singular matrix.
-func factor(a []float64, n int) (f *lu, ok bool) {
-	v := append([]float64(nil), a...)
-	f = &lu{n: n, a: a, v: v, perm: make([]int, n), x: make([]float64, n), rest: make([]float64, n)}
-	for k := range n {
-		p := k
-		for i := k + 1; i < n; i++ {
-			if math.Abs(v[i*n+k]) > math.Abs(v[p*n+k]) {
-				p = i
-			}
-		}
-		f.perm[k] = p
-		if p != k {
-			for j := range n {
-				v[k*n+j], v[p*n+j] = v[p*n+j], v[k*n+j]
-			}
-		}
-		if top := math.Abs(v[k*n+k]); top == 0 || math.IsNaN(top) || math.IsInf(top, 0) {
-			return nil, false
-		}
-		f.eliminate(k)
-	}
-	return f, true
+// general is a as a matrix of gonum, sharing its numbers.
+func general(a []float64, n int) blas64.General {
+	return blas64.General{Rows: n, Cols: n, Stride: max(n, 1), Data: a}
 }
 
-// eliminate takes row k from the rows below it.
-func (f *lu) eliminate(k int) {
-	n, v := f.n, f.v
-	top := v[k*n+k+1 : (k+1)*n]
-	for i := k + 1; i < n; i++ {
-		if v[i*n+k] == 0 {
-			continue
-		}
-		m := v[i*n+k] / v[k*n+k]
-		v[i*n+k] = m
-		row := v[i*n+k+1 : (i+1)*n]
-		for j, t := range top {
-			row[j] -= m * t
-		}
+// factor decomposes a (n×n, rows one after the other), which it keeps; ok is false for a
+// singular matrix, or one that is not finite.
+func factor(a []float64, n int) (f *lu, ok bool) {
+	if !finite(a) {
+		return nil, false
 	}
+	f = &lu{
+		n: n, a: general(a, n), v: general(append([]float64(nil), a...), n),
+		perm: make([]int, n), x: make([]float64, n), rest: make([]float64, n),
+	}
+	return f, n == 0 || lapack64.Getrf(f.v, f.perm)
 }
 
 // solve overwrites b with the solution. One step of refinement in the same precision makes the
 // error small in each row by itself (Skeel, 1980), so that small unknowns keep their digits
 // beside large ones.
 func (f *lu) solve(b []float64) {
-	n := f.n
+	if f.n == 0 {
+		return
+	}
 	copy(f.x, b)
 	f.substitute(f.x)
-	for i := range n {
-		sum := b[i]
-		for j, v := range f.a[i*n : (i+1)*n] {
-			sum -= v * f.x[j]
-		}
-		f.rest[i] = sum
-	}
+	copy(f.rest, b)
+	blas64.Gemv(blas.NoTrans, -1, f.a, vector(f.x), 1, vector(f.rest))
 	f.substitute(f.rest)
-	for i := range n {
+	for i := range b {
 		b[i] = f.x[i] + f.rest[i]
 	}
 }
 
+func vector(x []float64) blas64.Vector { return blas64.Vector{N: len(x), Data: x, Inc: 1} }
+
 func (f *lu) substitute(b []float64) {
-	n := f.n
-	for k, p := range f.perm {
-		b[k], b[p] = b[p], b[k]
-	}
-	for i := range n {
-		sum := b[i]
-		for j, v := range f.v[i*n : i*n+i] {
-			sum -= v * b[j]
-		}
-		b[i] = sum
-	}
-	for i := n - 1; i >= 0; i-- {
-		sum := b[i]
-		row := f.v[i*n : (i+1)*n]
-		for j := i + 1; j < n; j++ {
-			sum -= row[j] * b[j]
-		}
-		b[i] = sum / row[i]
-	}
+	lapack64.Getrs(blas.NoTrans, f.v, blas64.General{Rows: f.n, Cols: 1, Stride: 1, Data: b}, f.perm)
 }
 
 // inverse of a small well-conditioned matrix.
