@@ -17,7 +17,6 @@ type agenda struct {
 	tick    int64 // the next point at a tick of the first task
 	periods []dd.Float
 	clocks  []clock
-	now     dd.Float
 	out     instant
 }
 

@@ -74,7 +74,7 @@ func TestQuantizedEffortDoesNotClamp(t *testing.T) {
 	}
 }
 
-// 12 bit, 3.3 V: q = 0.805664 mV (check values); the ends hold, halves go up.
+// 12 bit, 3.3 V: q = 3.3/4096 = 0.805664 mV; the ends hold, halves go up.
 func TestConverter(t *testing.T) {
 	c := Converter{12, 0, 3.3}
 	near(t, "q", c.Value(0.0008), 0.000805664, 5e-10) // given to 6 digits
@@ -102,7 +102,7 @@ func TestSlew(t *testing.T) {
 	exactly(t, "u", tr.TickU, []float64{0.25, 0.5, 0.75, 1, 1, 1, 1})
 }
 
-// Position and velocity feedback [1/T², 3/(2T)] on 1/s² (check values) brings a step home in two
+// Position and velocity feedback [1/T², 3/(2T)] on 1/s² (closed form) brings a step home in two
 // ticks, between the ticks too: u = 1/T², −1/T².
 func TestDoubleIntegratorDeadbeat(t *testing.T) {
 	sys, err := NewContinuous([][]float64{{0, 1}, {0, 0}}, [][]float64{{1, 0}, {0, 1}}, 1,
@@ -131,7 +131,7 @@ func TestDoubleIntegratorDeadbeat(t *testing.T) {
 }
 
 // Digital integrator in series with the plant 1/s, r = t²/2: the output deviates T²/8 between
-// ticks (check values). With the controller (1.25z − 1)/(z − 1)/T... its steady error at the
+// ticks (closed form). With the controller (1.25z − 1)/(z − 1)/T... its steady error at the
 // ticks is constant and y runs in straight lines below the parabola's chords.
 func TestRippleOfDigitalIntegrator(t *testing.T) {
 	const T = 0.5

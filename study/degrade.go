@@ -100,11 +100,14 @@ type outcome struct {
 	end run
 }
 
+// tooLongForTwin says what sim.ErrTwinLength means to a user.
+const tooLongForTwin = "the continuous loop changes too fast for so long a simulation"
+
 // continuousOutcome runs the continuous twin and keeps the given instants.
 func continuousOutcome(ctx context.Context, l *loop.Loop, in loop.Input, length float64, times []float64, cont *analyzed) (outcome, error) {
 	r, err := runTwin(ctx, l, in, length, times)
 	if errors.Is(err, sim.ErrTwinLength) {
-		return outcome{row: DegradeRow{Input: inputTitle(l, in), Variant: "continuous", Stable: cont.stable, Note: err.Error()}}, nil
+		return outcome{row: DegradeRow{Input: inputTitle(l, in), Variant: "continuous", Stable: cont.stable, Note: tooLongForTwin}}, nil
 	}
 	out := outcome{run: r}
 	if err != nil {

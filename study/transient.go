@@ -23,7 +23,7 @@ func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *an
 		f, err := twinFigures(ctx, l, in, length, cont.stepSpec(l, in))
 		switch {
 		case errors.Is(err, sim.ErrTwinLength):
-			c.warn("no_continuous_simulation", "%v: the continuous column has no step figures and no curves", err)
+			c.warn("no_continuous_simulation", "%s: the continuous column has no step figures and no curves", tooLongForTwin)
 		case err != nil:
 			return err
 		default:

@@ -32,7 +32,7 @@ const (
 // Each warning appears where its cause is, with its number, and not in a loop without causes.
 func TestWarnings(t *testing.T) {
 	for code, c := range map[string]struct{ text, want string }{
-		// Kv·T beyond the limit of check-values: unstable above 0.207 s for 10/(s(s+1)).
+		// 10/(s(s+1)) is unstable above T = 0.207146502944 s (recomputed with 50 digits).
 		"unstable": {loopFile("plant: {model: 10/(s*(s + 1))}", "controller: {model: 1}", "timing: {period: 0.25 s, compute: 0 s}"),
 			"sampled loop is unstable"},
 		"hidden_unstable_mode": {loopFile("plant: {model: (s + 3)/((s - 1)*(s + 2))}", "controller: {model: (s - 1)/(s*(0.01*s + 1)), map: tustin}", quietTiming),
@@ -40,13 +40,13 @@ func TestWarnings(t *testing.T) {
 		"hidden_mode": {loopFile("plant: {model: 4/(s*(0.1*s + 1))}", "controller: {model: (0.1*s + 1)/(0.02*s + 1), map: matched}", quietTiming),
 			"cancel at s = -10; the mode decays"},
 		"sensor_gain": {loopFile(quietLoop, "sensor: {model: 0.5}", quietTiming), "gain at rest is 0.5, not 1"},
-		// ramp: loop error 1/Kv = 0.25 s, tracking error 1/Kv − τ = 0.23 s (check-values.md)
+		// ramp: loop error 1/Kv = 0.25 s, tracking error 1/Kv − τ = 0.23 s (closed form)
 		"sensor_dynamics": {loopFile(quietLoop, "sensor: {model: 1/(0.02*s + 1)}", quietTiming),
 			"the loop error is 0.25 s, the tracking error 0.23 s"},
 		// ω = π/T at 1 kHz, a little off
 		"pathological_rate": {loopFile("plant: {model: 1/((s + 1)*(s^2/9869604 + 0.0002*s/3141.6 + 1))}", "controller: {model: 0.5}", quietTiming),
 			"mode at 3141.59 rad/s swings through a whole number of half turns (1)"},
-		// derivative filter Tf/T = 0.25: forward −3 (check-values.md)
+		// derivative filter Tf/T = 0.25: forward 1 − T/Tf = −3 (closed form)
 		"map_moved_pole": {loopFile("plant: {model: 0.001/(s*(0.1*s + 1))}", "controller: {model: 1/(0.00025*s + 1), map: forward}", quietTiming),
 			"s = -4000 of term model to z = -3"},
 		"no_continuous_column": {loopFile("plant: {model: 4/(s*(0.1*s + 1))}", "controller: {model: 0.5*z/z}", quietTiming), "given in z only"},

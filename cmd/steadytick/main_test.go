@@ -11,7 +11,7 @@ func TestMain(m *testing.M) {
 	testscript.Main(m, map[string]func(){"steadytick": main})
 }
 
-// Each file of testdata/script is a session at the prompt with what it prints.
+// Each file of testdata/script holds commands and what they print.
 func TestTranscripts(t *testing.T) {
 	testscript.Run(t, testscript.Params{
 		Dir:                 "testdata/script",

@@ -7,8 +7,8 @@ import (
 
 const deg = 180 / math.Pi
 
-// TestMarginsServo: plant 1/(s(s+1)), controller 1, unity feedback: the table
-// "Margins" of the check values, recomputed with 50-digit arithmetic, 12 digits given.
+// TestMarginsServo: plant 1/(s(s+1)), controller 1, unity feedback; figures
+// recomputed with 50-digit arithmetic, 12 digits given.
 func TestMarginsServo(t *testing.T) {
 	for _, c := range []struct {
 		name             string
@@ -50,7 +50,7 @@ func TestMarginsServo(t *testing.T) {
 	}
 }
 
-// TestLargestGain: largest stable gain of the sampled servo (check values, recomputed).
+// TestLargestGain: largest stable gain of the sampled servo (recomputed with 50-digit arithmetic).
 func TestLargestGain(t *testing.T) {
 	for _, c := range []struct {
 		period string
@@ -75,7 +75,7 @@ func TestLargestGain(t *testing.T) {
 	}
 }
 
-// TestLargestPeriod: 10/(s(s+1)) is unstable above T = 0.207146502944 s (check values).
+// TestLargestPeriod: 10/(s(s+1)) is unstable above T = 0.207146502944 s (recomputed with 50-digit arithmetic).
 func TestLargestPeriod(t *testing.T) {
 	for _, c := range []struct {
 		period string

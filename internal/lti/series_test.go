@@ -65,7 +65,7 @@ func unity(c, g TF) System {
 }
 
 // TestTrackingServo: 10/(s(s+1)): 1−T = (s²+s)/(s²+s+10). Kv = 10, ramp error 0.1
-// at every T (check values; final value theorem).
+// at every T (final value theorem).
 func TestTrackingServo(t *testing.T) {
 	s := unity(Constant(dd.New(10), dd.Zero), servo(1))
 	want := []float64{0, 0.1, 0.09, -0.019} // c2 = (1−c1)/10, c3 = −(c1+c2)/10
@@ -81,7 +81,7 @@ func TestTrackingServo(t *testing.T) {
 }
 
 // TestTrackingType2: 10(s+1)/s², T = 0.1 s: hold equivalent (1.05 z − 0.95)/(z−1)² =
-// (10.5 δ + 10)/δ², Ka = 10, parabola error 0.1 for r = t²/2 (check values).
+// (10.5 δ + 10)/δ², Ka = 10, parabola error 0.1 for r = t²/2 (closed form).
 func TestTrackingType2(t *testing.T) {
 	T := num(t, "0.1")
 	g := TF{Num: ascending(10, 10.5), OriginPoles: 2, Period: T}
@@ -91,7 +91,7 @@ func TestTrackingType2(t *testing.T) {
 }
 
 // TestSensorLag: a sensor 1/(τs+1) in the feedback path makes the ramp tracking
-// error 1/Kv − τ, the loop error 1/Kv (check values).
+// error 1/Kv − τ, the loop error 1/Kv (closed form).
 func TestSensorLag(t *testing.T) {
 	const tau = 0.03125 // exact in binary
 	g := servo(10)
