@@ -26,7 +26,7 @@ func TestHostileNamesStayText(t *testing.T) {
 	if strings.Contains(own, "<b>bold") || strings.Contains(own, "\u2028") {
 		t.Error("names stand unescaped in the chart options")
 	}
-	list, _, ok := strings.Cut(strings.TrimPrefix(own, "const drawings = "), "\n;")
+	list, _, ok := strings.Cut(strings.TrimPrefix(own, "const drawings = "), ";\n")
 	if !ok {
 		t.Fatal("no end of the drawings")
 	}

@@ -1,7 +1,6 @@
 package charts
 
 import (
-	"bytes"
 	"encoding/json"
 	"fmt"
 	"strconv"
@@ -107,11 +106,11 @@ func (c chart) draw() (drawing, error) {
 
 // encode writes JSON in which <, > and & are escaped, so that it can stand in a script element.
 func encode(v any) (json.RawMessage, error) {
-	var b bytes.Buffer
-	if err := json.NewEncoder(&b).Encode(v); err != nil {
+	text, err := json.Marshal(v)
+	if err != nil {
 		return nil, fmt.Errorf("chart options: %w", err)
 	}
-	return b.Bytes(), nil
+	return text, nil
 }
 
 func (c chart) right() string {

@@ -71,6 +71,7 @@ func Report(w io.Writer, c *study.Compare) error {
 		return fmt.Errorf("report: %w", err)
 	}
 	var b bytes.Buffer
+	b.Grow(len(v.Runtime) + len(v.Drawings) + 1<<19) // megabytes: growing step by step costs more than filling them
 	if err := page.Execute(&b, v); err != nil {
 		return fmt.Errorf("report: %w", err)
 	}
