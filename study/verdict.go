@@ -41,6 +41,9 @@ func marginChange(c *Compare, cont *Column) string {
 		return fmt.Sprintf(" with %s° of phase margin", number(s.Value))
 	}
 	was := cont.PhaseMarginDeg.Value
+	if number(s.Value) == number(was) {
+		return fmt.Sprintf("; the phase margin stays at %s°", number(was))
+	}
 	if s.Value > was {
 		return fmt.Sprintf("; the phase margin is %s°, against %s° of the continuous loop", number(s.Value), number(was))
 	}
