@@ -13,7 +13,7 @@ func TestVerdict(t *testing.T) {
 		{"1", "rate: 100 Hz, compute: 1 ms", "comes from the hold, half a tick ("},
 		{"1", "rate: 100 Hz, compute: 7 ms", "comes from the compute ("},
 		{"1", "rate: 100 Hz, compute: 1 ms, update: {after: 15 ms}", "comes from the waiting for the update ("},
-		{"3", "rate: 5 Hz, compute: 0 s", "Sampled at 5 Hz the loop is unstable: the continuous loop has "},
+		{"3", "rate: 3 Hz, compute: 0 s", "Sampled at 3 Hz the loop is unstable: the continuous loop has "},
 		{"-1", "rate: 1 kHz, compute: 0 s", "and so is the continuous loop: mend the design before the sample rate."},
 	} {
 		l := parsed(t, oneLoop("4/(s*(0.1*s + 1))", "{model: "+c.controller+", map: tustin}", c.timing))
