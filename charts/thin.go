@@ -4,8 +4,8 @@ import "steadytick/study"
 
 const (
 	// maxPoints is drawn of one curve: a chart is at most 1000 pixels wide, and a lowest and a highest
-	// point for each pixel look the same as the whole curve.
-	maxPoints = 2000
+	// point for each two of them, the width of a line, look the same as the whole curve.
+	maxPoints = 1000
 	// maxDots is drawn of a curve of dots: each is an element of its own in the page, and closer than
 	// two pixels they run together.
 	maxDots = 500

@@ -182,7 +182,7 @@ func (a *agenda) sampling(in *instant, now dd.Float) error {
 }
 
 func (a *agenda) disorder(i int, k int64) error {
-	return fmt.Errorf("sim: %s: the jitter of tick %d puts its instants out of order", a.e.tasks[i].name(i), k)
+	return fmt.Errorf("%s: the jitter of tick %d puts its instants out of order", a.e.tasks[i].name(i), k)
 }
 
 // after is the instant that follows now, the actions of now being as good as done.

@@ -49,7 +49,7 @@ const (
 func NewContinuous(a, c [][]float64, inputs int, channels []Channel) (*Continuous, error) {
 	n, outs := len(a), len(c)
 	if n > maxOrder || outs == 0 {
-		return nil, fmt.Errorf("sim: a system needs an output and at most %d states", maxOrder)
+		return nil, fmt.Errorf("a system needs an output and at most %d states", maxOrder)
 	}
 	s := &Continuous{n: n, inputs: inputs, outputs: outs, steps: map[string]*advance{}}
 	for _, row := range a {
@@ -74,7 +74,7 @@ func NewContinuous(a, c [][]float64, inputs int, channels []Channel) (*Continuou
 		s.channels = append(s.channels, ch)
 	}
 	if !ok {
-		return nil, fmt.Errorf("sim: the matrices of the system do not fit together")
+		return nil, fmt.Errorf("the matrices of the system do not fit together")
 	}
 	return s, nil
 }

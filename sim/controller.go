@@ -71,10 +71,10 @@ type block struct {
 // ErrImproper, ErrRange.
 func NewController(cfg ControllerConfig) (*Controller, error) {
 	if cfg.Period == nil || cfg.Period.Sign() <= 0 {
-		return nil, errors.New("sim: a controller needs a positive period")
+		return nil, errors.New("a controller needs a positive period")
 	}
 	if cfg.AntiWindup == Tracking && !(cfg.TrackingTime > 0) {
-		return nil, errors.New("sim: tracking needs a positive tracking time")
+		return nil, errors.New("tracking needs a positive tracking time")
 	}
 	period, _ := cfg.Period.Float64()
 	c := &Controller{period: period, exactPeriod: new(big.Rat).Set(cfg.Period), antiWindup: cfg.AntiWindup}
@@ -85,7 +85,7 @@ func NewController(cfg ControllerConfig) (*Controller, error) {
 			return nil, err
 		}
 		if !finite([]float64{t.Weight}) || t.Read < 0 {
-			return nil, errors.New("sim: a term needs a finite weight and a measurement")
+			return nil, errors.New("a term needs a finite weight and a measurement")
 		}
 		if len(b.rho) > 0 {
 			integrating++
@@ -115,7 +115,7 @@ func NewController(cfg ControllerConfig) (*Controller, error) {
 
 func (c *Controller) block(m zdomain.Model, split bool) (*block, error) {
 	if m.Period == nil || m.Period.Cmp(c.exactPeriod) != 0 {
-		return nil, fmt.Errorf("sim: a model of the controller is for another period than %s s", c.exactPeriod.RatString())
+		return nil, fmt.Errorf("a model of the controller is for another period than %s s", c.exactPeriod.RatString())
 	}
 	g := m.TF
 	b := &block{ticks: g.Ticks}

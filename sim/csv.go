@@ -28,7 +28,7 @@ func WriteCSV(w io.Writer, tr *Trace, twin *TwinTrace) error {
 		case twin == nil || i >= len(twin.T):
 			line = append(line, ',')
 		case twin.T[i] != t:
-			return fmt.Errorf("sim: the twin is at %g s where the run is at %g s", twin.T[i], t)
+			return fmt.Errorf("the twin is at %g s where the run is at %g s", twin.T[i], t)
 		default:
 			line = strconv.AppendFloat(line, twin.Y[i], 'g', -1, 64)
 			line = append(line, ',')

@@ -34,7 +34,7 @@ type StepSpec struct {
 
 func (s *StepSpec) check() error {
 	if math.IsNaN(s.Band) || s.Band < 0 || s.Band >= 1 {
-		return errors.New("sim: the settling band must lie between 0 and 1")
+		return errors.New("the settling band must lie between 0 and 1")
 	}
 	if s.Band == 0 {
 		s.Band = 0.02

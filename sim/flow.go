@@ -96,7 +96,7 @@ func (f *flow) step(h dd.Float) (*advance, error) {
 				v /= f.scale[j-f.n]
 			}
 			if math.IsNaN(v) || math.IsInf(v, 0) {
-				return nil, fmt.Errorf("sim: the plant grows beyond the range of the arithmetic within %g s", h.Hi)
+				return nil, fmt.Errorf("the plant grows beyond the range of the arithmetic within %g s", h.Hi)
 			}
 			out.e[i/4*4*N+4*j+i%4] = v
 		}

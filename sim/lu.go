@@ -61,7 +61,7 @@ func (f *lu) substitute(b []float64) {
 func inverse(a []float64, n int) []float64 {
 	f, ok := factor(a, n)
 	if !ok {
-		panic("sim: singular matrix of a fixed table") // no input reaches this
+		panic("singular matrix of a fixed table") // no input reaches this
 	}
 	out := make([]float64, n*n)
 	col := make([]float64, n)

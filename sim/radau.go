@@ -68,7 +68,7 @@ func zeros(f func(float64) float64, n int) []float64 {
 		}
 	}
 	if len(out) != n {
-		panic("sim: zeros of a Legendre polynomial not found") // no input reaches this
+		panic("zeros of a Legendre polynomial not found") // no input reaches this
 	}
 	return out
 }

@@ -11,10 +11,10 @@ import (
 )
 
 // ErrImproper is a model with more zeros than poles.
-var ErrImproper = errors.New("sim: the model has more zeros than poles")
+var ErrImproper = errors.New("the model has more zeros than poles")
 
 // ErrRange is a model whose numbers do not fit float64.
-var ErrRange = errors.New("sim: the model is outside the range of the arithmetic")
+var ErrRange = errors.New("the model is outside the range of the arithmetic")
 
 // maxOrder is the largest number of states.
 const maxOrder = 120

@@ -87,7 +87,7 @@ func assign(list []*section, z ...dd.Complex) {
 		}
 	}
 	if at < 0 {
-		panic("sim: more zeros than poles") // bug in the caller: it has checked
+		panic("more zeros than poles") // bug in the caller: it has checked
 	}
 	list[at].zeros = append(list[at].zeros, z...)
 }

@@ -40,7 +40,7 @@ type Task struct {
 
 // check finds mistakes of task i in a list of n for the system.
 func (t *Task) check(i, n int, s *Continuous) error {
-	bad := func(what string) error { return fmt.Errorf("sim: task %d: %s", i, what) }
+	bad := func(what string) error { return fmt.Errorf("task %d: %s", i, what) }
 	switch {
 	case t.Period == nil || t.Period.Sign() <= 0:
 		return bad("the period must be positive")
@@ -122,10 +122,10 @@ type Config struct {
 // check fills in defaults and finds mistakes.
 func (c *Config) check() error {
 	if c.System == nil || len(c.Tasks) == 0 {
-		return errors.New("sim: a run needs a system and a task")
+		return errors.New("a run needs a system and a task")
 	}
 	if c.Ticks < 1 || c.Ticks > 1<<50 || c.PointsPerTick < 0 || c.PointsPerTick > 1000 || c.MaxPoints < 0 {
-		return errors.New("sim: a run needs at least one tick and counts that are not negative")
+		return errors.New("a run needs at least one tick and counts that are not negative")
 	}
 	for i := range c.Tasks {
 		if err := c.Tasks[i].check(i, len(c.Tasks), c.System); err != nil {
@@ -138,7 +138,7 @@ func (c *Config) check() error {
 	for i := range c.Disturbances {
 		d := &c.Disturbances[i]
 		if d.Input < 0 || d.Input >= c.System.inputs {
-			return fmt.Errorf("sim: disturbance %d: no such input", i)
+			return fmt.Errorf("disturbance %d: no such input", i)
 		}
 		if err := d.Signal.check(); err != nil {
 			return err

@@ -56,7 +56,7 @@ type TwinTrace struct {
 }
 
 // ErrTwinLength is a run that needs more pieces than maxPieces.
-var ErrTwinLength = errors.New("sim: the continuous loop changes too fast for so long a run")
+var ErrTwinLength = errors.New("the continuous loop changes too fast for so long a run")
 
 // maxPieces bounds the work: a piece follows about a sixth of a period of the fastest
 // oscillation that has not died out.
@@ -64,17 +64,17 @@ const maxPieces = 500_000
 
 func (c *TwinConfig) check() error {
 	if !(c.Duration > 0) || math.IsInf(c.Duration, 0) {
-		return errors.New("sim: the twin needs a positive duration")
+		return errors.New("the twin needs a positive duration")
 	}
 	if !c.Limits.valid() {
-		return errors.New("sim: limits that are not in order")
+		return errors.New("limits that are not in order")
 	}
 	if c.AntiWindup == Tracking && !(c.TrackingTime > 0) {
-		return errors.New("sim: tracking needs a positive tracking time")
+		return errors.New("tracking needs a positive tracking time")
 	}
 	for _, t := range c.Terms {
 		if !finite([]float64{t.Weight}) {
-			return errors.New("sim: a term needs a finite weight")
+			return errors.New("a term needs a finite weight")
 		}
 	}
 	if err := c.Reference.check(); err != nil {
@@ -98,7 +98,7 @@ func (c *TwinConfig) check() error {
 	}
 	for i, t := range c.Times {
 		if !(t >= 0) || i > 0 && !(t >= c.Times[i-1]) || t > c.Duration*(1+1e-12) {
-			return errors.New("sim: the instants of the twin must rise from 0 to the duration")
+			return errors.New("the instants of the twin must rise from 0 to the duration")
 		}
 	}
 	return nil
@@ -318,6 +318,9 @@ func (w *twin) try(room float64) (s *stretch, next float64, err error) {
 		}
 		if rest <= resolved {
 			return s, w.longer(h, rest, last), nil
+		}
+		if ok && w.gentle(reg, h) {
+			return s, 2 * h, nil
 		}
 		if h < 1e-14*math.Max(w.t, w.cfg.Duration*1e-8) {
 			return nil, 0, ErrTwinLength

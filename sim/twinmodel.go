@@ -10,7 +10,7 @@ import (
 
 // ErrIllPosed is a continuous loop whose direct gain leaves no unique effort: 1 + D·P(∞)·H(∞) is
 // zero or, with limits, not positive.
-var ErrIllPosed = errors.New("sim: the continuous loop has an algebraic loop without a unique solution")
+var ErrIllPosed = errors.New("the continuous loop has an algebraic loop without a unique solution")
 
 // mode is what the actuator and the integrators of the continuous loop do.
 type mode int

@@ -9,7 +9,8 @@ import (
 )
 
 const (
-	keptPoints = 2000 // of a run, for the charts
+	keptPoints = 1000    // of a run, for the charts
+	csvPoints  = 1 << 20 // of a run, for --csv: every instant looked at, of which there are 8·10⁵ at most
 	// fewPoints are looked at in a tick of a long run: more ticks than denseTicks make up for them.
 	fewPoints, somePoints, manyPoints = 2, 8, 40
 	denseTicks, sparseTicks           = 400, 20_000

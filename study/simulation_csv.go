@@ -31,6 +31,7 @@ func Simulate(ctx context.Context, l *loop.Loop, i int, o Options) (SimulationCS
 	if err != nil {
 		return SimulationCSV{}, err
 	}
+	cfg.MaxPoints = csvPoints
 	o.progress("simulation for --csv", 0, 1)
 	var out SimulationCSV
 	if out.trace, err = sim.Run(ctx, cfg); err != nil {
