@@ -51,6 +51,7 @@ func RunCompare(ctx context.Context, l *loop.Loop, o Options) (*Compare, error) 
 		return nil, err
 	}
 	c.DelayLedger = ledger(l, sampled, cont)
+	c.Maps = mapNotes(l)
 	judge(l, c)
 	c.collectWarnings(l, cont, sampled)
 	c.Verdict = verdict(c)

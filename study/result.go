@@ -39,6 +39,7 @@ type Compare struct {
 	DelayLedger  []LedgerItem  `json:"delay_ledger"`
 	Requirements []Requirement `json:"requirements"`
 	Degrade      []DegradeRow  `json:"degrade"`
+	Maps         []MapNote     `json:"maps"`
 	Warnings     []Warning     `json:"warnings"`
 
 	Verdict string `json:"verdict"` // one sentence that names the culprit

@@ -74,3 +74,15 @@ func TestUnstablePrefilterIsUnstable(t *testing.T) {
 		t.Error("a loop behind an unstable prefilter counts as stable")
 	}
 }
+
+// What matched keeps depends on the integrators: s^-1 with one, the gain at rest without.
+func TestMapNotes(t *testing.T) {
+	text := loopFile("plant: {model: 4/(0.1*s + 1)}", "controller: {model: (s + 2)/s, map: matched, prefilter: {model: 1/(s + 1), map: matched}}", quietTiming)
+	notes := mapNotes(parsed(t, text))
+	if len(notes) != 2 || !strings.HasSuffix(notes[0].Text, "keeps the factor of s^-1 at rest") || !strings.HasSuffix(notes[1].Text, "keeps the gain at rest") {
+		t.Errorf("notes %v", notes)
+	}
+	if notes := mapNotes(parsed(t, loopFile(quietLoop, quietTiming))); len(notes) != 0 {
+		t.Errorf("a constant controller has notes %v", notes)
+	}
+}

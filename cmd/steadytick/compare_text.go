@@ -24,6 +24,7 @@ func printCompare(w io.Writer, c *study.Compare) error {
 	printSteady(t, c)
 	printPoles(t, c)
 	printLedger(t, c)
+	printMaps(t, c)
 	printDegrade(t, c)
 	printRequirements(t, c)
 	t.line("")
@@ -103,6 +104,18 @@ func printLedger(t *table, c *study.Compare) {
 	t.row("", "", "seconds", "degrees")
 	for _, i := range c.DelayLedger {
 		t.row(i.Item, "", show(study.Fig(i.Seconds)), show(i.Degrees))
+	}
+}
+
+// printMaps prints how the continuous parts of the controller became digital.
+func printMaps(t *table, c *study.Compare) {
+	if len(c.Maps) == 0 || t.err != nil {
+		return
+	}
+	t.line("")
+	t.line("Controller maps")
+	for _, m := range c.Maps {
+		printWrapped(t.w, "  "+m.Part+", "+m.Map+": ", m.Text)
 	}
 }
 
