@@ -17,7 +17,7 @@ func compareCommand() *cli.Command {
 	return &cli.Command{
 		Name:      "compare",
 		Usage:     "continuous against sampled at the loop's rate: constants, errors, margins, transients",
-		UsageText: "compare LOOPFILE [flags]",
+		UsageText: "steadytick compare LOOPFILE [flags]",
 		Flags: []cli.Flag{
 			&cli.StringFlag{Name: "rate", Usage: "sample at `RATE` (such as \"4 kHz\") in place of the file's rate"},
 			&cli.StringFlag{Name: "map", Usage: "use `MAP` for the controller: tustin, matched, forward, backward, hold, triangle or \"prewarped at 40 Hz\""},

@@ -47,7 +47,7 @@ func newCommand() *cli.Command {
 	return &cli.Command{
 		Name:      "new",
 		Usage:     "write a commented starter loop file",
-		UsageText: "new STARTER LOOPFILE",
+		UsageText: "steadytick new STARTER LOOPFILE",
 		Description: "Writes a loop file of invented data to start from; LOOPFILE may be - for stdout.\n" +
 			"An existing file is not overwritten. Starters:\n\n" + starterList(),
 		Action: newAction,

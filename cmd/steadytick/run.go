@@ -70,7 +70,7 @@ func usageError(c *cli.Context, err error, _ bool) error {
 func oneFile(c *cli.Context, what string) (string, error) {
 	switch c.Args().Len() {
 	case 0:
-		return "", requestf("%s needs %s: steadytick %s", c.Command.Name, what, c.Command.UsageText)
+		return "", requestf("%s needs %s: %s", c.Command.Name, what, c.Command.UsageText)
 	case 1:
 		return c.Args().First(), nil
 	}
