@@ -106,7 +106,7 @@ func inputCurves(label string, slope float64, all []variant) study.InputCurves {
 func degradeRows(label string, scale float64, all []variant) []study.DegradeRow {
 	var out []study.DegradeRow
 	for _, v := range all {
-		r := study.DegradeRow{Input: label, Variant: v.name, Stable: v.stable,
+		r := study.DegradeRow{Input: label, Variant: v.name, Ran: true, Stable: v.stable,
 			PeriodS: study.Fig(v.period), LoopDelayS: study.Fig(v.delay),
 			PeakError: study.Fig(scale / v.zeta), RMSError: study.Fig(0.1234567890123 * scale / math.Sqrt(v.zeta)), SteadyError: study.Fig(0.0021 * scale)}
 		if v.period == 0 {

@@ -76,7 +76,7 @@ func leaves(t *testing.T, c *study.Compare) map[string]any {
 func notFigure(path string, v any) bool {
 	last := path[strings.LastIndex(path, ".")+1:]
 	switch last {
-	case "schema", "input", "item", "name", "op", "unit", "output", "effort", "variant", "note", "part", "map", "text", "size", "frequency_rad_s":
+	case "schema", "input", "item", "name", "op", "unit", "output", "effort", "variant", "note", "part", "map", "text", "ran", "effort_at_limit", "size", "frequency_rad_s":
 		return true
 	case "phase_deg", "end_error", "end_time_s", "peak_tracking_error", "rms_tracking_error", "asymptote":
 		return v == nil && strings.Contains(path, ".steady.")

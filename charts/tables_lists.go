@@ -182,11 +182,14 @@ func (t tables) degrade(st *styles) []*degradeTable {
 		d, path := byInput[r.Input], fmt.Sprintf("degrade.%d.", i)
 		pu, du := secondsOf(periods[r.Input]...), secondsOf(delays[r.Input]...)
 		d.Period, d.DelayUnit = pu.name, du.name
-		row := degradeRow{Variant: r.Variant, Remark: r.Note, Unstable: !r.Stable,
+		row := degradeRow{Variant: r.Variant, Remark: r.Note, Unstable: r.Ran && !r.Stable,
 			Period: show(path+"period_s", r.PeriodS, pu), Delay: show(path+"loop_delay_s", r.LoopDelayS, du),
 			Stable: showBool(path+"stable", r.Stable, "stable", "unstable"),
 			Peak:   show(path+"peak_tracking_error", r.PeakError, one), RMS: show(path+"rms_tracking_error", r.RMSError, one),
 			Steady: show(path+"steady_tracking_error", r.SteadyError, one)}
+		if !r.Ran {
+			row.Stable.Text = "not run"
+		}
 		row.Style, row.Drawn = st.byName[r.Variant]
 		row.PeakShare, row.RMSShare = share(r.PeakError, largest[r.Input][0]), share(r.RMSError, largest[r.Input][1])
 		d.Rows = append(d.Rows, row)

@@ -63,9 +63,9 @@ func inputTitle(s study.Steady, u study.Units) string {
 func sizeUnit(kind string, u study.Units) string {
 	switch kind {
 	case "ramp":
-		return u.Output + "/s"
+		return study.PerSecond(u.Output, 1)
 	case "parabola":
-		return u.Output + "/s²"
+		return study.PerSecond(u.Output, 2)
 	case "load_step":
 		return u.Effort
 	}
@@ -108,8 +108,8 @@ func (t tables) steadyQuantities(i int) []steadyQuantity {
 // asymptote is three rows: the coefficients of g0 + g1·t + g2·t².
 func (t tables) asymptote(i int) []row {
 	var out []row
-	for k, per := range []string{"", "/s", "/s²"} {
-		q := quantity{fmt.Sprintf("asymptote g%d", k), "", t.c.Units.Output + per, fmt.Sprintf("steady.%d.asymptote.%d", i, k), func(c *study.Column) study.Figure {
+	for k := range 3 {
+		q := quantity{fmt.Sprintf("asymptote g%d", k), "", study.PerSecond(t.c.Units.Output, k), fmt.Sprintf("steady.%d.asymptote.%d", i, k), func(c *study.Column) study.Figure {
 			if i >= len(c.Steady) || c.Steady[i].Asymptote == nil {
 				return study.Figure{}
 			}

@@ -30,17 +30,17 @@ func addedErrors(runs []outcome) []Curve {
 	var out []Curve
 	for _, x := range runs[1:] {
 		if t := x.run.trace; t != nil {
-			out = append(out, difference(x.row.Variant, t, runs[0].run.trace))
+			out = append(out, difference(x.row, t, runs[0].run.trace))
 		}
 	}
 	return out
 }
 
 // difference is twin.Y − t.Y at the instants of t, as far as both go and the run is shown.
-func difference(name string, t, twin *sim.Trace) Curve {
-	c := Curve{Name: name}
+func difference(row DegradeRow, t, twin *sim.Trace) Curve {
+	c := Curve{Name: row.Variant}
 	k := 0
-	for i, at := range t.T[:shownPoints(t.R, t.Y)] {
+	for i, at := range t.T[:shownPoints(t.R, t.Y, row.Stable)] {
 		for k < len(twin.T) && twin.T[k] < at {
 			k++
 		}

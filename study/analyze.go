@@ -23,6 +23,7 @@ type analyzed struct {
 	tracking   []float64 // of r − y
 	loopErr    []float64 // of r − m
 	margins    lti.MarginSet
+	delay      float64 // around the loop, seconds: dead times and whole ticks
 	fastest    float64 // largest frequency among the plant's modes, rad/s
 	warnings   []Warning
 }
@@ -66,6 +67,7 @@ func analyze(l *loop.Loop, b *block) (*analyzed, error) {
 	a.loopErr = floats(a.loopErrDD)
 	a.crossCheck()
 	a.fastest = fastestMode(l)
+	a.delay = b.open.DeadTime.Float64() + b.open.Period.Float64()*float64(b.open.Ticks)
 	return a, nil
 }
 

@@ -240,3 +240,42 @@ func TestMeets(t *testing.T) {
 	near(t, "samples per rise", c.Requirements[0].Value.Value, rise/0.001, 1e-9)
 	near(t, "processor load", c.Requirements[1].Value.Value, 20, 1e-12)
 }
+
+// An unstable loop meets nothing, however large its constants.
+func TestUnstableMeetsNothing(t *testing.T) {
+	c := compared(t, loopFile("plant: {model: 40/(s*(0.05*s + 1))}", "controller: {model: 3*(0.1*s + 1)/(0.005*s + 1), map: tustin}",
+		"timing: {rate: 60 Hz, compute: 0 s, update: next_tick}", "inputs: [{step: 1}]", "requirements: [modulus_margin >= 0.3, velocity_constant >= 10]"))
+	if c.Sampled.Stable {
+		t.Fatal("the loop is meant to be unstable")
+	}
+	for _, r := range c.Requirements {
+		if r.Met == nil || *r.Met {
+			t.Errorf("%s is not judged as missed", r.Name)
+		}
+	}
+}
+
+// A heater that cannot cool: the load step is never removed, whatever the linear loop says, so its
+// error is not judged, and a warning says why.
+func TestLoadBeyondTheLimitIsNotJudged(t *testing.T) {
+	c := compared(t, loopFile("plant: {model: 0.08/(9*s + 1)}", "controller: {model: 50 + 5/s, map: tustin}", "actuator: {limits: [0, 3000]}",
+		"timing: {rate: 10 Hz, compute: 0 s}", "inputs: [{load_step: 200}]", "requirements: [load_error <= 0.5]"))
+	if r := c.Requirements[0]; r.Met != nil {
+		t.Errorf("load_error is judged: met %v", *r.Met)
+	}
+	warned := false
+	for _, w := range c.Warnings {
+		warned = warned || w.Code == "steady_at_limit"
+	}
+	if !warned {
+		t.Errorf("no warning of the limit in %v", c.Warnings)
+	}
+	// and the curves go on to the end, though the reference is 0 and the output large
+	curves := c.Curves.Inputs[0]
+	last := curves.Response[0].X[len(curves.Response[0].X)-1]
+	for _, y := range curves.Response {
+		if end := y.X[len(y.X)-1]; !(end >= 0.99*last) {
+			t.Errorf("%s ends at %g s of %g s", y.Name, end, last)
+		}
+	}
+}

@@ -150,10 +150,22 @@ func (a *analyzed) fillMargins(col *Column) {
 	for _, g := range m.GainCrossings {
 		col.GainCrossings = append(col.GainCrossings, Crossing{RadS: g.W, Gain: 1, PhaseDeg: g.Phase * deg, MarginDeg: Fig(g.Margin * deg)})
 	}
+	greatest := 0.0
 	for _, p := range m.PhaseCrossings {
+		if p.Gain < 1 {
+			greatest = math.Max(greatest, p.Gain)
+		}
+	}
+	for _, p := range m.PhaseCrossings {
+		if p.Gain < greatest*listedDown {
+			continue
+		}
 		col.PhaseCrossings = append(col.PhaseCrossings, Crossing{RadS: p.W, Gain: p.Gain, PhaseDeg: 180, MarginDB: decibel(1 / p.Gain)})
 	}
 }
+
+// listedDown: phase crossings more than 30 dB below the one that sets the gain margin are not listed.
+const listedDown = 1 / 31.6
 
 // decibel is 20·log10 of a ratio; 0 means there is none.
 func decibel(ratio float64) Figure {

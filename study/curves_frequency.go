@@ -36,6 +36,12 @@ func frequencyGrid(list []*analyzed, points int) []float64 {
 		low, high = 0.1, 10
 	}
 	low, high = math.Max(low/30, high*1e-9), high*3
+	for _, a := range list {
+		if a.block.period != nil {
+			high = math.Min(high, beyondHalf*math.Pi/a.seconds())
+		}
+	}
+	low = math.Min(low, high/10)
 	grid := make([]float64, 0, points+9*len(marks))
 	ratio := math.Log(high / low)
 	for i := range points {
@@ -51,6 +57,14 @@ func frequencyGrid(list []*analyzed, points int) []float64 {
 	sort.Float64s(grid)
 	return grid
 }
+
+const (
+	lowestDB = -120 // below it there is nothing to see
+	// mostTurn is how far a delay may turn the phase between two points, rad; beyond it the phase cannot be followed.
+	mostTurn = 2
+	// beyondHalf is how far the continuous loop is drawn beyond half the sample rate.
+	beyondHalf = 5
+)
 
 // addFrequency fills gain and phase of L for the columns. The phase is unwrapped from
 // the low end; points where the gain is zero or not finite are left out.
@@ -75,8 +89,11 @@ func (v *Curves) addFrequency(list []*analyzed) {
 			}
 			l := response.At(w)
 			db, ph := 20*math.Log10(cmplx.Abs(l)), cmplx.Phase(l)*180/math.Pi
-			if math.IsNaN(db) || math.IsInf(db, 0) {
+			if math.IsNaN(db) || math.IsInf(db, 0) || db < lowestDB {
 				continue
+			}
+			if len(gain.X) > 0 && (w-gain.X[len(gain.X)-1])*a.delay > mostTurn {
+				break
 			}
 			if math.IsNaN(last) && ph > 0 {
 				turns = -360 // lag is the usual case: start in (−360, 0]
@@ -96,12 +113,35 @@ func (v *Curves) addFrequency(list []*analyzed) {
 	}
 }
 
-// addPoles fills the closed-loop poles as equivalent poles, continuous and sampled.
+// shownPoles is how many times farther than the crossover, or the nearest poles, a pole may lie to be
+// drawn: beyond it the ones that matter would shrink to a point. The table has them all.
+const shownPoles = 10
+
+// farPole is the largest magnitude of a pole that is drawn.
+func farPole(list []*analyzed) float64 {
+	near := 0.0
+	for _, a := range list {
+		if a.margins.HasCrossover {
+			for _, g := range a.margins.GainCrossings {
+				near = math.Max(near, g.W)
+			}
+		}
+		for i, p := range a.poles.Equivalent {
+			if i < 2 && !cmplx.IsInf(p) {
+				near = math.Max(near, cmplx.Abs(p))
+			}
+		}
+	}
+	return shownPoles * near
+}
+
+// addPoles fills the closed-loop poles as equivalent poles, continuous and sampled, as far as they are drawn.
 func (v *Curves) addPoles(list []*analyzed) {
+	far := farPole(list)
 	for _, a := range list {
 		c := Curve{Name: a.name(), Dots: true}
 		for _, p := range a.poles.Equivalent {
-			if !cmplx.IsNaN(p) && !cmplx.IsInf(p) {
+			if !cmplx.IsNaN(p) && !cmplx.IsInf(p) && cmplx.Abs(p) <= far {
 				c.X, c.Y = append(c.X, real(p)), append(c.Y, imag(p))
 			}
 		}

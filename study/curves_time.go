@@ -10,13 +10,13 @@ const shownGrowth = 4
 
 // add draws one run into the curves of its input. The first sampled run also gives its
 // ticks as dots; the effort of sampled runs is a staircase.
-func (c *InputCurves) add(r run, name string, sampled bool) {
+func (c *InputCurves) add(r run, name string, sampled, stable bool) {
 	t := r.trace
 	first := sampled && len(c.Response) <= 2
 	if len(c.Response) == 0 {
 		c.Response = append(c.Response, Curve{Name: "reference", X: t.T, Y: t.R})
 	}
-	n := shownPoints(t.R, t.Y)
+	n := shownPoints(t.R, t.Y, stable)
 	err := make([]float64, n)
 	for i := range err {
 		err[i] = t.R[i] - t.Y[i]
@@ -24,7 +24,7 @@ func (c *InputCurves) add(r run, name string, sampled bool) {
 	c.Response = append(c.Response, Curve{Name: name, X: t.T[:n], Y: t.Y[:n]})
 	c.Error = append(c.Error, Curve{Name: name, X: t.T[:n], Y: err})
 	if first && len(t.TickT) > 0 {
-		k := shownPoints(t.TickR, t.TickY)
+		k := shownPoints(t.TickR, t.TickY, stable)
 		dots := make([]float64, k)
 		for i := range dots {
 			dots[i] = t.TickR[i] - t.TickY[i]
@@ -34,8 +34,12 @@ func (c *InputCurves) add(r run, name string, sampled bool) {
 	c.Effort = append(c.Effort, Curve{Name: name, X: t.T[:n], Y: t.U[:n], Step: sampled})
 }
 
-// shownPoints is how many leading points are finite and within the bound of growth.
-func shownPoints(r, y []float64) int {
+// shownPoints is how many leading points are shown: all of a stable run, else those within the
+// bound of growth.
+func shownPoints(r, y []float64, stable bool) int {
+	if stable {
+		return len(y)
+	}
 	top := 0.0
 	for _, v := range r {
 		top = math.Max(top, math.Abs(v))

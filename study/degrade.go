@@ -31,6 +31,7 @@ func newRun(t *sim.Trace) run {
 // and file inputs, the errors at the end of unbounded ones and the degradation table.
 func simulateAll(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyzed, o Options) error {
 	list := variants(l, sampled, o.Degrade)
+	warnStored(c, l, list)
 	o.progress("step response", 0, 1)
 	if err := transients(ctx, l, c, cont, sampled); err != nil {
 		return err
@@ -55,13 +56,14 @@ func simulateAll(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *a
 			case k == 0 && cont == nil:
 				continue
 			case k == 0:
-				x.fill(&c.Continuous.Steady[i], in, cont)
+				x.fill(l, &c.Continuous.Steady[i], in, cont)
 			case k == 1:
-				x.fill(&c.Sampled.Steady[i], in, sampled)
+				x.fill(l, &c.Sampled.Steady[i], in, sampled)
+				c.warnAtLimit(l, i)
 			}
 			c.Degrade = append(c.Degrade, x.row)
 			if x.run.trace != nil {
-				curves.add(x.run, x.row.Variant, k > 0)
+				curves.add(x.run, x.row.Variant, k > 0, x.row.Stable)
 			}
 		}
 		c.Curves.Inputs = append(c.Curves.Inputs, curves)
@@ -107,7 +109,7 @@ const tooLongForTwin = "the continuous loop changes too fast for so long a simul
 func continuousOutcome(ctx context.Context, l *loop.Loop, in loop.Input, length float64, times []float64, cont *analyzed) (outcome, error) {
 	r, err := runTwin(ctx, l, in, length, times)
 	if errors.Is(err, sim.ErrTwinLength) {
-		return outcome{row: DegradeRow{Input: inputTitle(l, in), Variant: "continuous", Stable: cont.stable, Note: tooLongForTwin}}, nil
+		return outcome{row: DegradeRow{Input: inputTitle(l, in), Variant: "continuous", Ran: false, Stable: cont.stable, Note: tooLongForTwin}}, nil
 	}
 	out := outcome{run: r}
 	if err != nil {
@@ -137,10 +139,11 @@ func (v variant) outcome(ctx context.Context, l *loop.Loop, in loop.Input, lengt
 }
 
 // fill copies the figures of the runs into the steady row of the input.
-func (x outcome) fill(s *Steady, in loop.Input, a *analyzed) {
+func (x outcome) fill(l *loop.Loop, s *Steady, in loop.Input, a *analyzed) {
 	if x.run.trace == nil {
 		return
 	}
+	s.AtLimit = a.stable && atLimit(l, x.run.trace.FinalU)
 	fillFromRun(s, in, a, x.run)
 	if x.end.trace != nil && !x.end.diverged {
 		s.EndError, s.EndTimeS = Fig(x.end.end), Fig(x.end.endTime)
@@ -149,7 +152,7 @@ func (x outcome) fill(s *Steady, in loop.Input, a *analyzed) {
 
 // row is one line of the degradation table.
 func row(l *loop.Loop, in loop.Input, name string, a *analyzed, r run) DegradeRow {
-	out := DegradeRow{Input: inputTitle(l, in), Variant: name, Stable: a.stable, PeakError: r.peak, RMSError: r.rms}
+	out := DegradeRow{Input: inputTitle(l, in), Variant: name, Ran: true, Stable: a.stable, PeakError: r.peak, RMSError: r.rms}
 	switch {
 	case !a.stable:
 		out.PeakError, out.RMSError = Figure{}, Figure{}
@@ -207,8 +210,10 @@ func fillFromRun(s *Steady, in loop.Input, a *analyzed, r run) {
 		if s.Asymptote != nil && math.IsInf(s.TrackingError.Value, 0) {
 			t := r.endTime
 			g := s.Asymptote
-			s.EndError = Fig(g[0].Value + g[1].Value*t + g[2].Value*t*t)
-			s.EndTimeS = Fig(t)
+			s.EndError, s.EndTimeS = Fig(g[0].Value+g[1].Value*t+g[2].Value*t*t), Fig(t)
+			if s.AtLimit {
+				s.EndError = Fig(r.end)
+			}
 		}
 	}
 }

@@ -14,9 +14,9 @@ func InputLabel(s Steady, u Units) string {
 	case "step", "move":
 		return fmt.Sprintf("%s %s %s", s.Input, size, u.Output)
 	case "ramp":
-		return fmt.Sprintf("ramp %s %s", size, perSecond(u.Output, 1))
+		return fmt.Sprintf("ramp %s %s", size, PerSecond(u.Output, 1))
 	case "parabola":
-		return fmt.Sprintf("parabola %s %s", size, perSecond(u.Output, 2))
+		return fmt.Sprintf("parabola %s %s", size, PerSecond(u.Output, 2))
 	case "sine":
 		return fmt.Sprintf("sine %s %s at %s rad/s", size, u.Output, number(s.FrequencyRadS.Value))
 	case "load_step":
@@ -25,8 +25,11 @@ func InputLabel(s Steady, u Units) string {
 	return s.Input
 }
 
-// perSecond is the unit divided by s^n, n = 1 or 2: m/s becomes m/s².
-func perSecond(unit string, n int) string {
+// PerSecond is the unit divided by s^n, n = 0, 1 or 2: m/s becomes m/s².
+func PerSecond(unit string, n int) string {
+	if n == 0 {
+		return unit
+	}
 	power := []string{"", "", "²", "³"}
 	if base, ok := strings.CutSuffix(unit, "/s"); ok {
 		return base + "/s" + power[n+1]

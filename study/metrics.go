@@ -42,12 +42,24 @@ func metric(l *loop.Loop, c *Compare, name string) (Figure, string) {
 		cost, _ := l.Timing.Compute.Float64()
 		f = Fig(100 * cost / c.PeriodS)
 	default:
-		return f, "this metric needs parts of the loop file that compare does not evaluate"
+		return f, "compare does not evaluate this metric"
+	}
+	if name == "processor_load" && f.Value == 0 {
+		return Figure{}, "timing has no compute time"
 	}
 	if !f.OK {
 		return f, "the loop has no such figure"
 	}
 	return f, ""
+}
+
+// judged tells whether compare evaluates the metric at all.
+func judged(name string) bool {
+	switch name {
+	case "effort_noise", "stuck_error", "word_margin":
+		return false
+	}
+	return true
 }
 
 // steadyMetric finds the metrics that belong to an input.
@@ -60,6 +72,9 @@ func steadyMetric(s *Column, name string) (f Figure, why string, ok bool) {
 			}
 			if !e.WorstError.OK {
 				return Figure{}, "the loop is unstable", true
+			}
+			if e.AtLimit {
+				return e.WorstError, "the simulation of this input ends with the effort at its limit, so the steady error of the linear loop is not reached", true
 			}
 			return e.WorstError, "", true
 		}
@@ -115,11 +130,13 @@ func judge(l *loop.Loop, c *Compare) {
 		v, why := metric(l, c, r.Name)
 		out := Requirement{Name: r.Name, Op: r.Op, Limit: r.Limit, Value: v, Unit: requirementUnit(r.Name, c.Units)}
 		switch {
-		case v.OK:
-			met := meets(v.Value, r.Op, r.Limit)
-			out.Met = &met
-		case !c.Sampled.Stable:
+		case !judged(r.Name):
+			c.warn("requirement_not_judged", "requirement %q cannot be judged: %s", r.Text, why)
+		case !c.Sampled.Stable: // an unstable loop meets nothing, whatever its figures
 			met := false
+			out.Met = &met
+		case v.OK && why == "":
+			met := meets(v.Value, r.Op, r.Limit)
 			out.Met = &met
 		default:
 			c.warn("requirement_not_judged", "requirement %q cannot be judged: %s", r.Text, why)

@@ -126,6 +126,7 @@ type Steady struct {
 	EndTimeS      Figure     `json:"end_time_s"`          // move, file
 	PeakError     Figure     `json:"peak_tracking_error"` // move, file
 	RMSError      Figure     `json:"rms_tracking_error"`  // move, file
+	AtLimit       bool       `json:"effort_at_limit"`     // the simulation ends with the effort at a limit: steady figures are of the linear loop
 }
 
 // Transient holds the step figures (IEEE Std 181).
@@ -166,6 +167,7 @@ type DegradeRow struct {
 	Variant     string `json:"variant"` // "continuous", "2x rate", "half rate", "no delay", …
 	PeriodS     Figure `json:"period_s"`
 	LoopDelayS  Figure `json:"loop_delay_s"`
+	Ran         bool   `json:"ran"` // false: it cannot run, see note
 	Stable      bool   `json:"stable"`
 	PeakError   Figure `json:"peak_tracking_error"`
 	RMSError    Figure `json:"rms_tracking_error"`

@@ -42,6 +42,7 @@ func ComparisonRows(c *Compare) []ComparisonRow {
 		fig("gain_reduction_db", "gain reduction (down)", "dB", func(c *Column) Figure { return c.GainReductionDB }),
 		fig("modulus_margin", "modulus margin min |1+L|", "", func(c *Column) Figure { return c.ModulusMargin }),
 		fig("delay_margin_s", "delay margin", "s", func(c *Column) Figure { return c.DelayMarginS }),
+		fig("jitter_margin_s", "jitter margin", "s", func(c *Column) Figure { return c.JitterMarginS }),
 		fig("crossover_rad_s", "crossover", "rad/s", func(c *Column) Figure { return c.CrossoverRadS }),
 		fig("bandwidth_rad_s", "bandwidth (−3 dB)", "rad/s", func(c *Column) Figure { return c.BandwidthRadS }),
 		fig("transient.overshoot_percent", "overshoot", "%", func(c *Column) Figure { return c.Transient.OvershootPercent }),
@@ -85,10 +86,10 @@ func SteadyRows(s Steady, u Units) []SteadyRow {
 		if s.Asymptote != nil && (s.Asymptote[1].Value != 0 || s.Asymptote[2].Value != 0) {
 			rows = append(rows,
 				at("asymptote.0", "  grows as g0 + g1·t + g2·t²: g0", 0, output),
-				at("asymptote.1", "    g1", 1, func(u Units) string { return perSecond(u.Output, 1) }),
-				at("asymptote.2", "    g2", 2, func(u Units) string { return perSecond(u.Output, 2) }),
+				at("asymptote.1", "    g1", 1, func(u Units) string { return PerSecond(u.Output, 1) }),
+				at("asymptote.2", "    g2", 2, func(u Units) string { return PerSecond(u.Output, 2) }),
 				row("end_error", "  error at the end of the run", output, func(s *Steady) Figure { return s.EndError }),
-				row("end_time_s", "    which lasts", named("s"), func(s *Steady) Figure { return s.EndTimeS }))
+				row("end_time_s", "    length of the run", named("s"), func(s *Steady) Figure { return s.EndTimeS }))
 		}
 		return append(rows, ripple, worst)
 	case "sine":
@@ -101,7 +102,7 @@ func SteadyRows(s Steady, u Units) []SteadyRow {
 			row("peak_tracking_error", label+": peak tracking", output, func(s *Steady) Figure { return s.PeakError }),
 			row("rms_tracking_error", "  rms tracking", output, func(s *Steady) Figure { return s.RMSError }),
 			row("end_error", "  tracking at its end", output, func(s *Steady) Figure { return s.EndError }),
-			row("end_time_s", "    which is at", named("s"), func(s *Steady) Figure { return s.EndTimeS })}
+			row("end_time_s", "    at time", named("s"), func(s *Steady) Figure { return s.EndTimeS })}
 	}
 	return []SteadyRow{tracking, loopErr, worst}
 }

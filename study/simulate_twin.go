@@ -61,16 +61,16 @@ func runTwin(ctx context.Context, l *loop.Loop, in loop.Input, length float64, t
 	}), nil
 }
 
-// twinFigures are the step figures of the continuous loop.
-func twinFigures(ctx context.Context, l *loop.Loop, in loop.Input, length float64, spec sim.StepSpec) (sim.Figures, error) {
+// twinFigures are the step figures of the continuous loop, and its effort at even instants.
+func twinFigures(ctx context.Context, l *loop.Loop, in loop.Input, length float64, spec sim.StepSpec) (sim.Figures, []float64, error) {
 	cfg, err := twinConfig(l, in, length)
 	if err != nil {
-		return sim.Figures{}, err
+		return sim.Figures{}, nil, err
 	}
 	cfg.Step = &spec
 	t, err := sim.Twin(ctx, cfg)
 	if err != nil {
-		return sim.Figures{}, fmt.Errorf("continuous loop: %w", err)
+		return sim.Figures{}, nil, fmt.Errorf("continuous loop: %w", err)
 	}
-	return t.Step, nil
+	return t.Step, t.U, nil
 }

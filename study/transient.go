@@ -20,7 +20,7 @@ func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *an
 	}
 	length := cut(l, stepLonger*horizon(l, in, cont, sampled), mostTicksStep)
 	if cont != nil && cont.stable {
-		f, err := twinFigures(ctx, l, in, length, cont.stepSpec(l, in))
+		f, u, err := twinFigures(ctx, l, in, length, cont.stepSpec(l, in))
 		switch {
 		case errors.Is(err, sim.ErrTwinLength):
 			c.warn("no_continuous_simulation", "%s: the continuous column has no step figures and no curves", tooLongForTwin)
@@ -28,7 +28,7 @@ func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *an
 			return err
 		default:
 			c.Continuous.Transient = transientOf(f)
-			warnSaturation(c, l, "continuous", f)
+			warnSaturation(c, l, "continuous", u)
 		}
 	}
 	if !sampled.stable {
@@ -38,12 +38,12 @@ func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *an
 	if err != nil {
 		return err
 	}
-	f, _, err := sim.StepFigures(ctx, cfg, sampled.stepSpec(l, in))
+	f, trace, err := sim.StepFigures(ctx, cfg, sampled.stepSpec(l, in))
 	if err != nil {
 		return err
 	}
 	c.Sampled.Transient = transientOf(f)
-	warnSaturation(c, l, "sampled", f)
+	warnSaturation(c, l, "sampled", trace.U)
 	return nil
 }
 
@@ -64,15 +64,31 @@ func transientOf(f sim.Figures) Transient {
 	return t
 }
 
-// warnSaturation tells when the step reaches a limit of the actuator: its figures are then not
-// those of the linear loop.
-func warnSaturation(c *Compare, l *loop.Loop, column string, f sim.Figures) {
+// atLimit tells whether an effort lies at a limit of the actuator.
+func atLimit(l *loop.Loop, u float64) bool {
 	limits := l.Actuator.Limits
-	if limits == nil || !f.PeakEffort.OK {
-		return
+	if limits == nil {
+		return false
 	}
-	least := min(-limits[0], limits[1])
-	if f.PeakEffort.Value >= least*(1-1e-9) {
-		c.warn("effort_saturates", "%s column: the step takes the effort to its limit (%.6g %s): overshoot, rise and settling are those of the limited loop at this size of step, not of the linear one", column, f.PeakEffort.Value, l.Effort)
+	near := 1e-9 * (limits[1] - limits[0])
+	return u <= limits[0]+near || u >= limits[1]-near
+}
+
+// warnAtLimit tells that the simulation of input i ends with the effort at a limit, so that
+// the machine does not reach the steady figures, which are those of the linear loop.
+func (c *Compare) warnAtLimit(l *loop.Loop, i int) {
+	if c.Sampled.Steady[i].AtLimit {
+		c.warn("steady_at_limit", "%s: the simulation ends with the effort at its limit: the steady figures are those of the linear loop, which this machine does not reach; errors of that input are not judged", inputTitle(l, l.Inputs[i]))
+	}
+}
+
+// warnSaturation tells when the step takes the effort, u at its instants, to a limit of the actuator: the
+// figures are then not those of the linear loop.
+func warnSaturation(c *Compare, l *loop.Loop, column string, u []float64) {
+	for _, v := range u {
+		if atLimit(l, v) {
+			c.warn("effort_saturates", "%s column: the step takes the effort to its limit (%.6g %s): overshoot, rise and settling are those of the limited loop at this size of step, not of the linear one", column, v, l.Effort)
+			return
+		}
 	}
 }

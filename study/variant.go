@@ -19,7 +19,11 @@ type variant struct {
 // variants builds the loop at its own rate and delay first, then the rates and delays of the study.
 func variants(l *loop.Loop, own *analyzed, d Degrade) []variant {
 	out := []variant{{name: "sampled at " + rateText(l.Timing.Period), loop: l, run: own}}
-	for _, f := range d.Rates {
+	rates := d.Rates
+	if l.Controller.Digital {
+		rates = nil // valid at one rate only
+	}
+	for _, f := range rates {
 		period := new(big.Rat).Quo(l.Timing.Period, f)
 		v := variant{name: fmt.Sprintf("at %s (%s× rate)", rateText(period), ratText(f))}
 		other, problems := l.WithRate(period)

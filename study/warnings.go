@@ -23,7 +23,8 @@ func (c *Compare) warn(code, format string, args ...any) {
 func (c *Compare) collectWarnings(l *loop.Loop, cont, sampled *analyzed) {
 	warnUnstable(c, cont, sampled)
 	warnHidden(c, l, cont, sampled)
-	warnSensor(c, l, cont)
+	warnSensor(c, l)
+	warnReference(c, l)
 	warnPathological(c, l)
 	warnMaps(c, l)
 	warnNyquist(c, l)
@@ -97,7 +98,7 @@ func reportHidden(c *Compare, column string, p dd.Complex, stable bool) {
 }
 
 // warnSensor tells when the sensor makes the error constants mislead.
-func warnSensor(c *Compare, l *loop.Loop, cont *analyzed) {
+func warnSensor(c *Compare, l *loop.Loop) {
 	h := leadingOf(l.Sensor.Model.Ratio)
 	if h.c == nil {
 		return
@@ -110,8 +111,8 @@ func warnSensor(c *Compare, l *loop.Loop, cont *analyzed) {
 		}
 		c.warn("sensor_gain", "%s: y follows r divided by it, so the tracking error r − y does not go to the loop error r − m; scale the reference or the sensor", text)
 	}
-	if _, static := staticSensor(l.Sensor); static {
-		return
+	if _, static := staticSensor(l.Sensor); static || !oneDegree(l.Controller) {
+		return // of two degrees of freedom see warnReference
 	}
 	for _, col := range []*Column{c.Continuous, c.Sampled} {
 		if col == nil || !col.Stable || col.Type < 1 {
@@ -133,6 +134,37 @@ func warnSensor(c *Compare, l *loop.Loop, cont *analyzed) {
 		c.warn("sensor_dynamics", "%s loop: the sensor has dynamics, so the error constants predict the loop error r − m, not the tracking error r − y: per unit of slope the loop error is %.6g s, the tracking error %.6g s",
 			name, col.LoopSeries[1].Value, col.TrackingSeries[1].Value)
 		return
+	}
+}
+
+// warnReference tells when a prefilter, a feedforward or a set-point weight makes the error constants
+// mislead: they are those of the loop, which these do not pass.
+func warnReference(c *Compare, l *loop.Loop) {
+	if oneDegree(l.Controller) || !c.Sampled.Stable || c.Sampled.Type != 1 {
+		return
+	}
+	s := c.Sampled
+	predicted := 1 / s.VelocityConstant.Value
+	if math.Abs(s.LoopSeries[1].Value-predicted) <= 1e-9*math.Abs(predicted) {
+		return
+	}
+	c.warn("reference_path", "a prefilter, feedforward or set-point weight acts on r outside the loop, so 1/Kv = %.6g s predicts neither error: per unit of slope the loop error is %.6g s, the tracking error %.6g s", predicted, s.LoopSeries[1].Value, s.TrackingSeries[1].Value)
+}
+
+// warnStored tells when the study's rates change the controller itself.
+func warnStored(c *Compare, l *loop.Loop, list []variant) {
+	own, _, err := continuousTerms(l.Controller)
+	if err != nil {
+		return
+	}
+	for _, v := range list {
+		if v.loop == nil || v.loop == l {
+			continue
+		}
+		if other, _, err := continuousTerms(v.loop.Controller); err == nil && !other.Ratio.Sub(own.Ratio).IsZero() {
+			c.warn("stored_gains", "Ki and Kd are stored with the period, so the lines at other rates run the stored numbers with another Ki and Kd: they show what the firmware would do at that rate, not what sampling costs")
+			return
+		}
 	}
 }
 

@@ -100,7 +100,11 @@ func pole(list [][2]float64, i int) string {
 // printLedger prints where the lag around the loop comes from.
 func printLedger(t *table, c *study.Compare) {
 	t.line("")
-	t.line("Delay ledger: lag around the sampled loop, degrees at its crossover")
+	if c.Sampled.CrossoverRadS.OK {
+		t.line("Delay ledger: lag around the sampled loop, degrees at its crossover (%s rad/s)", show(c.Sampled.CrossoverRadS))
+	} else {
+		t.line("Delay ledger: lag around the sampled loop")
+	}
 	t.row("", "", "seconds", "degrees")
 	for _, i := range c.DelayLedger {
 		t.row(i.Item, "", show(study.Fig(i.Seconds)), show(i.Degrees))

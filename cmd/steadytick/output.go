@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"io"
 	"os"
+	"path/filepath"
 
 	"steadytick/internal/wholefile"
 )
@@ -17,6 +18,18 @@ func writeTo(stdout io.Writer, path string, fill func(io.Writer) error) error {
 		return requestf("cannot write %s: %v", path, err)
 	}
 	return nil
+}
+
+// sameFile tells whether two paths lead to one file, there or not yet there.
+func sameFile(a, b string) bool {
+	x, errX := os.Stat(a)
+	y, errY := os.Stat(b)
+	if errX == nil && errY == nil {
+		return os.SameFile(x, y)
+	}
+	p, errP := filepath.Abs(a)
+	q, errQ := filepath.Abs(b)
+	return errP == nil && errQ == nil && p == q
 }
 
 // progress prints how far a long piece of work has come on one line of a terminal;

@@ -2,9 +2,9 @@ package main
 
 import (
 	"context"
-	"fmt"
 	"io"
 	"runtime/debug"
+	"strings"
 
 	"github.com/urfave/cli/v2"
 )
@@ -70,9 +70,9 @@ func usageError(c *cli.Context, err error, _ bool) error {
 func oneFile(c *cli.Context, what string) (string, error) {
 	switch c.Args().Len() {
 	case 0:
-		return "", requestf("%s needs %s: %s", c.Command.Name, what, c.Command.UsageText)
+		return "", requestf("%s needs a %s: %s", c.Command.Name, what, c.Command.UsageText)
 	case 1:
 		return c.Args().First(), nil
 	}
-	return "", requestf("%s takes one %s; left over: %q", c.Command.Name, what, fmt.Sprint(c.Args().Slice()[1:]))
+	return "", requestf("%s takes one %s; left over: %s", c.Command.Name, what, strings.Join(c.Args().Slice()[1:], " "))
 }

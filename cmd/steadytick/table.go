@@ -30,6 +30,9 @@ func show(f study.Figure) string {
 
 // seconds is a time with a unit that suits it.
 func seconds(t float64) string {
+	if t == 0 {
+		return "0 s"
+	}
 	for _, u := range []struct {
 		size float64
 		name string

@@ -3,6 +3,7 @@
 package wholefile
 
 import (
+	"errors"
 	"io"
 	"os"
 	"path/filepath"
@@ -24,7 +25,7 @@ func Write(path string, fill func(io.Writer) error) (err error) {
 	}
 	tmp, err := os.CreateTemp(filepath.Dir(path), "."+filepath.Base(path)+".*")
 	if err != nil {
-		return err
+		return plain(err)
 	}
 	defer func() {
 		if err != nil {
@@ -44,7 +45,23 @@ func Write(path string, fill func(io.Writer) error) (err error) {
 	if err = tmp.Close(); err != nil {
 		return err
 	}
-	return os.Rename(tmp.Name(), path)
+	if err = os.Rename(tmp.Name(), path); err != nil {
+		err = plain(err)
+	}
+	return err
+}
+
+// plain is the cause of an error without the temporary name, which means nothing to a user.
+func plain(err error) error {
+	var p *os.PathError
+	var l *os.LinkError
+	switch {
+	case errors.As(err, &p):
+		return p.Err
+	case errors.As(err, &l):
+		return l.Err
+	}
+	return err
 }
 
 func direct(path string, fill func(io.Writer) error) error {
