@@ -101,7 +101,7 @@ func pole(list [][2]float64, i int) string {
 func printLedger(t *table, c *study.Compare) {
 	t.line("")
 	if c.Sampled.CrossoverRadS.OK {
-		t.line("Delay ledger: lag around the sampled loop, degrees at its crossover (%s rad/s)", show(c.Sampled.CrossoverRadS))
+		t.line("Delay ledger: lag around the sampled loop, degrees at %s rad/s", show(c.Sampled.CrossoverRadS)) // its crossover
 	} else {
 		t.line("Delay ledger: lag around the sampled loop")
 	}
