@@ -65,13 +65,16 @@ func (cv *canvas) poles(c *study.Compare) (section, error) {
 	return s, err
 }
 
-// lookAtDominant sets the axes to all poles and the first view to those within five times the crossover
-// of the origin or right of the imaginary axis. It returns how many are outside that view.
+// lookAtDominant sets the axes to all poles and the first view to those within five times the highest
+// crossing of |L| = 1 from the origin or right of the imaginary axis. It returns how many are outside that view.
 func (c *chart) lookAtDominant(r *study.Compare) int {
 	fast := 0.0
 	for _, col := range []*study.Column{r.Continuous, r.Sampled} {
-		if col != nil && col.CrossoverRadS.OK && col.CrossoverRadS.Value > 0 {
-			fast = max(fast, col.CrossoverRadS.Value)
+		if col == nil {
+			continue
+		}
+		for _, g := range col.GainCrossings {
+			fast = max(fast, g.RadS)
 		}
 	}
 	radius := 5 * fast
