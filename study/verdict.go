@@ -47,7 +47,7 @@ func marginChange(c *Compare, cont *Column) string {
 	if s.Value > was {
 		return fmt.Sprintf("; the phase margin is %s°, against %s° of the continuous loop", number(s.Value), number(was))
 	}
-	return fmt.Sprintf("; the phase margin falls from %s° to %s°", number(was), number(s.Value)) + culprit(c, nil, ", ")
+	return fmt.Sprintf("; the phase margin falls from %s° to %s°", number(was), number(s.Value)) + culprit(c, nil, ": ")
 }
 
 // culprit names the largest entry of the delay ledger that sampling brought in. The
@@ -74,10 +74,10 @@ func culprit(c *Compare, cont *Column, join string) string {
 	case total <= 0:
 		return ""
 	case cont != nil && cont.PhaseMarginDeg.OK && !math.IsInf(cont.PhaseMarginDeg.Value, 0):
-		return join + fmt.Sprintf("the continuous loop has %s° of phase margin, sampling adds %s° of lag at %s, the most by the %s (%s°)",
+		return join + fmt.Sprintf("the continuous loop has %s° of phase margin, sampling adds %s° of lag at %s, the largest part by the %s (%s°)",
 			number(cont.PhaseMarginDeg.Value), number(total), at, worst.Item, number(most))
 	}
-	return join + fmt.Sprintf("of the %s° of lag that sampling adds at %s the most comes from the %s (%s°)",
+	return join + fmt.Sprintf("sampling adds %s° of lag at %s, the largest part by the %s (%s°)",
 		number(total), at, worst.Item, number(most))
 }
 

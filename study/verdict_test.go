@@ -10,9 +10,9 @@ import (
 func TestVerdict(t *testing.T) {
 	for _, c := range []struct{ controller, timing, want string }{
 		{"1", "rate: 10 MHz, compute: 0 s", "Sampled at 10 MHz the loop is stable; the phase margin stays at "},
-		{"1", "rate: 100 Hz, compute: 1 ms", "comes from the hold, half a tick ("},
-		{"1", "rate: 100 Hz, compute: 7 ms", "comes from the compute ("},
-		{"1", "rate: 100 Hz, compute: 1 ms, update: {after: 15 ms}", "comes from the waiting for the update ("},
+		{"1", "rate: 100 Hz, compute: 1 ms", "largest part by the hold, half a tick ("},
+		{"1", "rate: 100 Hz, compute: 7 ms", "largest part by the compute ("},
+		{"1", "rate: 100 Hz, compute: 1 ms, update: {after: 15 ms}", "largest part by the waiting for the update ("},
 		{"3", "rate: 3 Hz, compute: 0 s", "Sampled at 3 Hz the loop is unstable: the continuous loop has "},
 		{"-1", "rate: 1 kHz, compute: 0 s", "and so is the continuous loop: mend the design before the sample rate."},
 	} {
