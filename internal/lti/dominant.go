@@ -14,8 +14,9 @@ import (
 // number. Where roots are missing, up to three rounds of further starts are made.
 func dominant(ch characteristic, f factored, limit int) (half []dd.Complex, complete bool) {
 	c := newChain(f)
+	places := c.places(ch)
 	c.branches(limit/2+24, cornerOf(f))
-	c.near(c.places(ch))
+	c.near(places)
 	for round := range 4 {
 		half = c.polished(ch)
 		half, sigma, ok := cutAt(half, ch, limit)
@@ -88,11 +89,11 @@ next:
 			r.Im = dd.Zero
 		}
 		r.Im = r.Im.Abs()
-		if !r.IsFinite() || !(r.Sub(dd.FromComplex(x)).Abs() <= 1e-3*(cmplx.Abs(x)+1/c.tau)) {
+		if !r.IsFinite() || !(r.Sub(dd.FromComplex(x)).Abs() <= 1e-3*(cmplx.Abs(x)+c.small)) {
 			continue
 		}
 		for _, q := range out {
-			if q.Sub(r).Abs() <= 1e-9*(r.Abs()+1/c.tau) {
+			if q.Sub(r).Abs() <= 1e-9*(r.Abs()+c.small) {
 				continue next
 			}
 		}

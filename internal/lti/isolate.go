@@ -37,7 +37,8 @@ type span struct {
 // excludes intervals without a level, and |f'(m)| > M·h makes f monotone, so
 // that the ends tell all (of up to 256 levels); everything else is halved. Where the curve
 // stays within 1e-12 of a level, at a tangent or over a band, it only touches: a single
-// level (|L| = 1) then yields one point for the whole stretch, repeated ones (phase) none,
+// level (|L| = 1) then yields one point for the whole stretch, or none when it begins at t = 0 and
+// the level is only the limit at rest; repeated ones (phase) none,
 // rounding being all that could tell where to put it.
 // The search stops when *budget evaluations are used up.
 func (c curve) crossings(lo, hi float64, budget *int) []float64 {
@@ -64,7 +65,7 @@ func (c curve) crossings(lo, hi float64, budget *int) []float64 {
 			out = c.monotone(s.lo, s.hi, out)
 		case reach <= touching || s.depth >= maxHalvings || !(s.lo < m && m < s.hi):
 			near, ok := c.first(f - touching)
-			if ok && near <= f+touching && c.step == 0 && s.lo > touched {
+			if ok && near <= f+touching && c.step == 0 && s.lo > touched && s.lo > 0 {
 				out = append(out, m)
 			}
 			touched = s.hi

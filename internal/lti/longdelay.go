@@ -26,6 +26,7 @@ type chain struct {
 	op           int
 	logLead      complex128
 	T, tau       float64
+	small        float64      // 1/τ or, where that is less, the smallest root without delay: what two roots are told apart by
 	found        []complex128 // upper half
 }
 
@@ -35,6 +36,7 @@ func newChain(f factored) *chain {
 		tau:     f.dead.Float64() + f.period.Float64()*float64(f.ticks),
 		logLead: cmplx.Log(complex(f.lead.Hi, 0)),
 	}
+	c.small = 1 / c.tau
 	for _, z := range f.zeros {
 		c.zeros = append(c.zeros, z.Complex128())
 	}
@@ -130,7 +132,7 @@ func (c *chain) deflated(s complex128) (complex128, bool) {
 			step *= complex(limit/size, 0)
 		}
 		s -= step
-		if size <= 1e-12*(cmplx.Abs(s)+1/c.tau) {
+		if size <= 1e-12*(cmplx.Abs(s)+c.small) {
 			return s, true
 		}
 	}
@@ -144,11 +146,11 @@ func (c *chain) add(s complex128) {
 		s = complex(real(s), math.Remainder(imag(s), 2*math.Pi/c.T))
 	}
 	s = complex(real(s), math.Abs(imag(s)))
-	if imag(s) < 1e-10*(cmplx.Abs(s)+1/c.tau) {
+	if imag(s) < 1e-10*(cmplx.Abs(s)+c.small) {
 		s = complex(real(s), 0)
 	}
 	for _, r := range c.found {
-		if cmplx.Abs(s-r) <= 1e-9*(cmplx.Abs(s)+1/c.tau) {
+		if cmplx.Abs(s-r) <= 1e-9*(cmplx.Abs(s)+c.small) {
 			return
 		}
 	}
@@ -187,7 +189,7 @@ func (c *chain) branches(count int, corner float64) {
 // near runs the deflated method from each place and from beside it.
 func (c *chain) near(places []complex128) {
 	for _, p := range places {
-		size := cmplx.Abs(p) + 1/c.tau
+		size := cmplx.Abs(p) + c.small
 		for _, d := range []complex128{1e-3i, 0.1 + 0.1i, -0.2 + 0.05i} {
 			if r, ok := c.deflated(p + d*complex(size, 0)); ok {
 				c.add(r)
@@ -196,12 +198,15 @@ func (c *chain) near(places []complex128) {
 	}
 }
 
-// places are open-loop poles and closed-loop poles without delay, as s.
+// places are open-loop poles and closed-loop poles without delay, as s; the smallest sets c.small.
 func (c *chain) places(ch characteristic) []complex128 {
 	var out []complex128
 	keep := func(x dd.Complex) {
 		if s := equivalent(x, ch.period); x.Im.Sign() >= 0 && !cmplx.IsInf(s) && !cmplx.IsNaN(s) {
 			out = append(out, s)
+			if size := cmplx.Abs(s); size > 0 {
+				c.small = math.Min(c.small, size)
+			}
 		}
 	}
 	for _, p := range ch.poles {
