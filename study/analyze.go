@@ -25,6 +25,7 @@ type analyzed struct {
 	margins    lti.MarginSet
 	delay      float64 // around the loop, seconds: dead times and whole ticks
 	fastest    float64 // largest frequency among the plant's modes, rad/s
+	shortest   float64 // shortest time constant among them, seconds; 0 without one
 	warnings   []Warning
 }
 
@@ -66,7 +67,7 @@ func analyze(l *loop.Loop, b *block) (*analyzed, error) {
 	a.loopErrDD = b.sys.LoopErrorSeries(steadyTerms)
 	a.loopErr = floats(a.loopErrDD)
 	a.crossCheck()
-	a.fastest = fastestMode(l)
+	a.fastest, a.shortest = fastestModes(l)
 	a.delay = b.open.DeadTime.Float64() + b.open.Period.Float64()*float64(b.open.Ticks)
 	return a, nil
 }
@@ -113,17 +114,22 @@ func (a *analyzed) crossCheck() {
 	}
 }
 
-// fastestMode is the largest pole magnitude of the plant, rad/s.
-func fastestMode(l *loop.Loop) float64 {
+// fastestModes gives the largest frequency |Im p| of the plant's poles, rad/s, and the
+// shortest time 1/|p|, seconds, 0 for a plant without poles off the origin.
+func fastestModes(l *loop.Loop) (frequency, shortest float64) {
 	poles, err := l.Plant.Ratio.Poles()
 	if err != nil {
-		return 0
+		return 0, 0
 	}
-	w := 0.0
+	speed := 0.0
 	for _, p := range poles {
-		w = math.Max(w, math.Abs(p.Im.Float64()))
+		frequency = math.Max(frequency, math.Abs(p.Im.Float64()))
+		speed = math.Max(speed, p.Abs())
 	}
-	return w
+	if speed > 0 {
+		shortest = 1 / speed
+	}
+	return frequency, shortest
 }
 
 // bandwidth is where the response from r to y has fallen by 3 dB.

@@ -147,6 +147,7 @@ func (x outcome) fill(l *loop.Loop, s *Steady, in loop.Input, a *analyzed) {
 	fillFromRun(s, in, a, x.run)
 	if x.end.trace != nil && !x.end.diverged {
 		s.EndError, s.EndTimeS = Fig(x.end.end), Fig(x.end.endTime)
+		s.PeakError, s.RMSError = x.end.peak, x.end.rms // over the input itself, not the settling after it
 	}
 }
 

@@ -5,6 +5,7 @@ import (
 	"math"
 	"math/big"
 	"math/cmplx"
+	"slices"
 
 	"steadytick/internal/dd"
 	"steadytick/internal/lti"
@@ -17,12 +18,12 @@ import (
 type ripple struct{ high, low, peakToPeak float64 }
 
 // ripplePolynomial computes the ripple for a step, ramp or parabola of size a, whose
-// order is n = 0, 1, 2. With q integrators in the plant the effort that keeps y on a
-// polynomial of order n is one of order n − q:
+// order is n = 0, 1, 2. The effort u = Cr/(1 + L)·r is then of order n − k, k the order of
+// Cr/(1 + L) at the origin (the integrators of the plant, as a rule):
 //
-//	n − q <= 0   constant or zero: the hold hides nothing, no ripple
-//	n − q  = 1   a staircase of equal steps: a ripple that stays
-//	n − q  = 2   steps that grow: a ripple that grows for ever, infinite
+//	n − k <= 0   constant or zero: the hold hides nothing, no ripple
+//	n − k  = 1   a staircase of equal steps: a ripple that stays
+//	n − k  = 2   steps that grow: a ripple that grows for ever, infinite
 //
 // In the middle case, with y(kT+θ) = t0·r + t1·δr + t2·δ²r from the series of the response at
 // offset θ and the asymptote g of the ticks continued through time, the deviation is
@@ -31,12 +32,11 @@ type ripple struct{ high, low, peakToPeak float64 }
 //	ramp:      a·(θ(1−c0) − t1 − c1)
 //	parabola:  a·((1−c0)θ²/2 − c1·θ − t1·T/2 − t2 − c2 − c1·T/2)
 func (a *analyzed) ripplePolynomial(l *loop.Loop, in loop.Input) ripple {
-	n := map[string]int{"step": 0, "ramp": 1, "parabola": 2}[in.Kind]
-	q := l.Plant.Ratio.OriginPoles - l.Plant.Ratio.OriginZeros
+	n := map[string]int{"step": 0, "ramp": 1, "parabola": 2}[in.Kind] - a.effortOrder()
 	switch {
-	case n-q <= 0 || in.Size == 0:
+	case n <= 0 || in.Size == 0:
 		return ripple{}
-	case n-q >= 2:
+	case n >= 2:
 		inf := math.Inf(1)
 		return ripple{inf, -inf, inf}
 	}
@@ -63,6 +63,13 @@ func (a *analyzed) ripplePolynomial(l *loop.Loop, in loop.Input) ripple {
 		return d.MulFloat(in.Size).Float64()
 	})
 	return ripple{hi, lo, hi - lo}
+}
+
+// effortOrder is the order at the origin of Cr/(1 + L), from r to u: exact, by the integrators and zeros there.
+func (a *analyzed) effortOrder() int {
+	cr, _ := lti.Leading(a.block.sys.Cr)
+	open, _ := lti.Leading(a.block.open)
+	return cr - min(0, open)
 }
 
 // rippleSine compares the response at each offset with the sine through the ticks.
@@ -123,15 +130,29 @@ type part struct {
 	points   int
 }
 
-// smoothParts cuts the tick at the instant where the effort changes.
+// ladderStep is the ratio of the lengths of neighbouring parts after a switch of the effort.
+const ladderStep = 4
+
+// smoothParts cuts the tick at the instant where the effort switches, and the time since the switch
+// at τ, 4τ, 16τ, … of the plant's fastest mode τ: a mode far faster than the tick has all of its transient in the first
+// of them, and each is smooth for its few points.
 func (a *analyzed) smoothParts(l *loop.Loop) []part {
 	T := a.block.period
-	total := new(big.Rat).Add(a.block.delay, l.Plant.Delay)
-	cut := remainder(total, T)
+	cut := remainder(new(big.Rat).Add(a.block.delay, l.Plant.Delay), T)
 	bounds := []*big.Rat{new(big.Rat), T}
 	if cut.Sign() > 0 {
-		bounds = []*big.Rat{new(big.Rat), cut, T}
+		bounds = append(bounds, cut)
 	}
+	tick, _ := T.Float64()
+	for since := a.shortest; since > 0 && since < tick; since *= ladderStep {
+		at := new(big.Rat).SetFloat64(since)
+		at.Add(at, cut)
+		if at.Cmp(T) >= 0 {
+			at.Sub(at, T)
+		}
+		bounds = append(bounds, at)
+	}
+	slices.SortFunc(bounds, (*big.Rat).Cmp)
 	var out []part
 	for i := 1; i < len(bounds); i++ {
 		width, _ := new(big.Rat).Sub(bounds[i], bounds[i-1]).Float64()

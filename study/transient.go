@@ -4,6 +4,7 @@ import (
 	"context"
 	"errors"
 
+	"steadytick/internal/dd"
 	"steadytick/loop"
 	"steadytick/sim"
 )
@@ -49,7 +50,7 @@ func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *an
 
 // stepSpec asks for figures about the final value (1 − c0)·size.
 func (a *analyzed) stepSpec(l *loop.Loop, in loop.Input) sim.StepSpec {
-	return sim.StepSpec{Final: (1 - a.tracking[0]) * in.Size, Band: l.SettlingBand}
+	return sim.StepSpec{Final: dd.One.Sub(a.trackingDD[0]).Float64() * in.Size, Band: l.SettlingBand}
 }
 
 func transientOf(f sim.Figures) Transient {

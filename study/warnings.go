@@ -53,7 +53,7 @@ func warnUnstable(c *Compare, cont, sampled *analyzed) {
 			continue
 		}
 		worst := ""
-		if len(a.poles.Equivalent) > 0 {
+		if len(a.poles.Equivalent) > 0 && (a.poles.Unstable > 0 || !a.byNyquist && a.byPoles) {
 			p := a.poles.Equivalent[0]
 			worst = fmt.Sprintf(" (rightmost pole %s rad/s)", complexText(p))
 		}
@@ -77,6 +77,9 @@ func warnHidden(c *Compare, l *loop.Loop, cont, sampled *analyzed) {
 		}
 	}
 	for _, p := range hiddenModes(sampled.block.open) {
+		if sampled.block.open.Period.Mul(p.Re) == dd.One.Neg() && p.Im.Sign() == 0 {
+			continue // z = 0: a register that a zero of the map meets is no mode of the machine
+		}
 		z := dd.Complex{Re: dd.One.Add(sampled.block.open.Period.Mul(p.Re)), Im: sampled.block.open.Period.Mul(p.Im)}
 		reportHidden(c, "sampled", z, lti.Inside(p, sampled.block.open.Period))
 	}
@@ -104,7 +107,8 @@ func warnSensor(c *Compare, l *loop.Loop) {
 		return
 	}
 	gain, _ := h.c.Float64()
-	if h.order != 0 || gain != 1 {
+	follows := c.Sampled.TrackingSeries[0].OK && c.Sampled.TrackingSeries[0].Value == 0 // a prefilter makes up for it
+	if (h.order != 0 || gain != 1) && !follows {
 		text := fmt.Sprintf("the sensor's gain at rest is %.6g, not 1", gain)
 		if h.order != 0 {
 			text = "the sensor passes nothing at rest, or integrates"
@@ -184,18 +188,28 @@ func warnPathological(c *Compare, l *loop.Loop) {
 func warnMaps(c *Compare, l *loop.Loop) {
 	for _, t := range l.Controller.Terms {
 		for _, p := range t.Parts {
-			if p.Continuous == nil {
-				continue
-			}
-			m, err := mapPart(p, l.Timing.Period)
-			if err != nil {
-				continue
-			}
-			for _, v := range discretize.MovedOutside(*p.Continuous, m) {
-				c.warn("map_moved_pole", "the %s map moves the stable controller pole s = %s of term %s to z = %s, outside the unit circle; use tustin or backward there, or a higher rate",
-					p.Map.Method, complexText(v.S), t.Name, complexText(v.Z))
-			}
+			warnMoved(c, l, p, "of term "+t.Name)
 		}
+	}
+	if p := l.Controller.Prefilter; p != nil {
+		warnMoved(c, l, *p, "of the prefilter")
+	}
+	if p := l.Controller.Feedforward; p != nil {
+		warnMoved(c, l, *p, "of the feedforward")
+	}
+}
+
+func warnMoved(c *Compare, l *loop.Loop, p loop.Part, whose string) {
+	if p.Continuous == nil {
+		return
+	}
+	m, err := mapPart(p, l.Timing.Period)
+	if err != nil {
+		return // the assembly has reported it
+	}
+	for _, v := range discretize.MovedOutside(*p.Continuous, m) {
+		c.warn("map_moved_pole", "the %s map moves the stable controller pole s = %s %s to z = %s, outside the unit circle; use tustin or backward there, or a higher rate",
+			p.Map.Method, complexText(v.S), whose, complexText(v.Z))
 	}
 }
 
