@@ -14,11 +14,12 @@ import (
 // above 0. The result is good to the last digits of t.
 func Bandwidth(t func(w float64) complex128, dc float64, marks []complex128, limit float64) float64 {
 	level := dc / math.Sqrt2
-	f := func(w float64) float64 { return cmplx.Abs(t(w)) - level }
-	grid := responseGrid(marks, limit)
-	if len(grid) == 0 {
-		return math.Inf(1)
-	}
+	return firstBelow(func(w float64) float64 { return cmplx.Abs(t(w)) - level }, responseGrid(marks, limit))
+}
+
+// firstBelow is where f first falls below 0 on an ascending grid, dips between its points
+// included; +Inf when it does not.
+func firstBelow(f func(w float64) float64, grid []float64) float64 {
 	values := make([]float64, len(grid))
 	for i, w := range grid {
 		values[i] = f(w)
@@ -142,7 +143,51 @@ func (s System) Bandwidth(poles Poles) (w float64, ok bool, err error) {
 	for _, g := range []*Scan{scan.cr, scan.gy} {
 		marks = append(marks, g.marks()...)
 	}
-	return Bandwidth(scan.Tracking, dc, marks, limit), true, nil
+	grid := responseGrid(marks, limit)
+	level := dc / math.Sqrt2
+	loop := s.Loop()
+	delay := loop.DeadTime.Float64() + loop.Period.Float64()*float64(loop.Ticks)
+	grid = withComb(grid, delay, func(w float64) bool { return scan.least(w) < combSlack*level })
+	return firstBelow(func(w float64) float64 { return cmplx.Abs(scan.Tracking(w)) - level }, grid), true, nil
+}
+
+// least is the smallest |T| near ω for any phase of the loop, |Cr·Gy|/(1 + |L|): how low the dips of a
+// long delay can reach.
+func (s *SystemScan) least(w float64) float64 {
+	return cmplx.Abs(s.cr.At(w)*s.gy.At(w)) / (1 + cmplx.Abs(s.Loop(w)))
+}
+
+const (
+	// combSlack allows for the change of the envelope between two points of the grid, whose marks keep
+	// it to less.
+	combSlack = 1.25
+	// combPoints are taken in each turn of the delay; combMost in all (some 50 ms).
+	combPoints = 16
+	combMost   = 200_000
+)
+
+// withComb adds points between those of the grid where a long delay turns |T| up and down faster than the
+// grid follows and a dip can reach the level: from the low end until combMost are used up.
+func withComb(grid []float64, delay float64, reaches func(w float64) bool) []float64 {
+	if !(delay > 0) || len(grid) == 0 {
+		return grid
+	}
+	step := 2 * math.Pi / (combPoints * delay)
+	out := grid[:1:1]
+	left := combMost
+	below := reaches(grid[0])
+	for i, w := range grid[1:] {
+		from := grid[i]
+		next := reaches(w)
+		if n := int(math.Min((w-from)/step, combMost)); (below || next) && n > 1 && n <= left {
+			left -= n
+			for k := 1; k < n; k++ {
+				out = append(out, from+(w-from)*float64(k)/float64(n))
+			}
+		}
+		out, below = append(out, w), next
+	}
+	return out
 }
 
 // marks are zeros and poles as places along the axis in rad/s: a root a + jb in w shows at

@@ -113,3 +113,27 @@ func TestBandwidthNone(t *testing.T) {
 		t.Errorf("flat: %g", w)
 	}
 }
+
+// A dead time of 1 s on a lag of 1e-4 s: |T| rises and falls with each turn of the delay, and the first dip
+// below 3 dB is at a turn that the envelope 0.67g/(1 + 0.67g) = dc/√2, g = |1/(1 + jω·1e-4)|, names to within
+// one turn: dc = 0.67/1.67.
+func TestBandwidthOfADelayComb(t *testing.T) {
+	gy := TF{Num: ascending(1e4), Poles: reals(-1e4), DeadTime: dd.One}
+	c := Constant(num(t, "0.67"), dd.Zero)
+	s := System{Cr: c, Cm: c, Gy: gy, Gm: gy, OneDegree: true, StaticSensor: &dd.One}
+	p, err := ClosedPoles(s.Loop(), 64)
+	if err != nil {
+		t.Fatal(err)
+	}
+	w, ok, err := s.Bandwidth(p)
+	if !ok || err != nil {
+		t.Fatal(ok, err)
+	}
+	level := 0.67 / 1.67 / math.Sqrt2
+	g := level / (0.67 * (1 - level))
+	envelope := 1e4 * math.Sqrt(1/(g*g)-1)
+	// the first dip after the envelope has passed: less than a turn later, and a dip's width of slack
+	if !(w >= envelope-0.1 && w <= envelope+2*2*math.Pi) {
+		t.Errorf("bandwidth %.10g, envelope at %.10g", w, envelope)
+	}
+}
