@@ -4,7 +4,6 @@ import (
 	"bytes"
 	"encoding/csv"
 	"errors"
-	"math"
 	"strconv"
 	"testing"
 )
@@ -56,12 +55,3 @@ var errBroken = errors.New("broken")
 type broken struct{}
 
 func (broken) Write([]byte) (int, error) { return 0, errBroken }
-
-func TestHorizon(t *testing.T) {
-	for _, c := range []struct{ sigma, delay, shortest, want float64 }{
-		{-2, 0, 0.1, 6}, {-2, 1, 0.1, 9}, {7, 0, 0.1, 1}, {0, 1, 0.5, 150}, {-1e9, 0, 0.1, 0.1}, {-1e-12, 0, 0.1, 1e5},
-		{math.NaN(), 0, 1, 100}, {math.Inf(-1), 0, 1, 1}, {-1, -5, 0, 12},
-	} {
-		near(t, "horizon", Horizon(c.sigma, c.delay, c.shortest), c.want, 1e-9*c.want)
-	}
-}

@@ -105,9 +105,6 @@ func (s *SystemScan) Measured(w float64) complex128 {
 	return closed(s.cr.At(w)*s.gm.At(w), s.Loop(w))
 }
 
-// Sensitivity returns 1/(1 + L) at ω > 0.
-func (s *SystemScan) Sensitivity(w float64) complex128 { return closed(1, s.Loop(w)) }
-
 // closed is f/(1 + l), complex infinity where that is not finite.
 func closed(f, l complex128) complex128 {
 	v := f / (1 + l)
