@@ -174,7 +174,7 @@ func (v variant) row(l *loop.Loop, in loop.Input, r run) DegradeRow {
 	period, _ := v.run.block.period.Float64()
 	delay, _ := v.run.block.delay.Float64()
 	out.PeriodS, out.LoopDelayS = Fig(period), Fig(delay)
-	if v.converters {
+	if v.converters && v.run.stable {
 		out.SteadyError = Figure{}
 		out.Note = "simulated with the word lengths of the file; its steady error is not predicted by linear analysis"
 	}

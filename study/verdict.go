@@ -16,7 +16,7 @@ func verdict(c *Compare) string {
 	case !s.Stable && cont != nil && !cont.Stable:
 		text = rate + " the loop is unstable, and so is the continuous loop: mend the design before the sample rate."
 	case !s.Stable:
-		text = rate + " the loop is unstable" + culprit(c, cont, ": ") + "."
+		text = rate + " the loop is unstable" + tooSlow(c, cont, ": ") + "."
 	case cont != nil && !cont.Stable:
 		text = rate + " the loop is stable, though the continuous loop is not."
 	default:
@@ -79,6 +79,16 @@ func culprit(c *Compare, cont *Column, join string) string {
 	}
 	return join + fmt.Sprintf("sampling adds %s° of lag at %s, the largest part by the %s (%s°)",
 		number(total), at, worst.Item, number(most))
+}
+
+// tooSlow is culprit, or that the continuous loop crosses over where the samples see nothing.
+func tooSlow(c *Compare, cont *Column, join string) string {
+	half := math.Pi / c.PeriodS
+	if cont != nil && cont.CrossoverRadS.OK && cont.CrossoverRadS.Value >= half {
+		return join + fmt.Sprintf("the continuous loop crosses over at %s rad/s, above half the sample rate (%s rad/s)",
+			number(cont.CrossoverRadS.Value), number(half))
+	}
+	return culprit(c, cont, join)
 }
 
 // criticalRadS is the gain crossing that gives the phase margin, 0 when there is none.
