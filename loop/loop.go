@@ -22,7 +22,11 @@ type Loop struct {
 	Timing         Timing
 	Inputs         []Input
 	Requirements   []Requirement
-	SettlingBand   float64 // fraction of the final value, default 0.02
+	SettlingBand   float64    // fraction of the final value, default 0.02
+	Timer          *Timer     // nil: not given
+	Processor      *Processor // nil: not given
+	Search         *RateRange // the rate section, nil: not given
+	Disturbances   []Disturbance
 
 	open    func(path string) ([]byte, error) // as given to Parse, for WithRate and WithMap
 	options Options
@@ -121,6 +125,45 @@ func (t Timing) LoopDelay() *big.Rat {
 		return new(big.Rat).Set(t.UpdateAfter)
 	}
 	return new(big.Rat).Add(t.Conversion, t.Compute)
+}
+
+// Counting is how a timer counts.
+type Counting int
+
+const (
+	// CountUp counts 0 … reload and starts again: reload + 1 counts a tick.
+	CountUp Counting = iota
+	// CountCenter counts 0 … reload … 0: 2·reload counts a tick.
+	CountCenter
+)
+
+// Timer is the hardware timer that makes the ticks. The prescaler divides its clock by
+// (prescaler + 1); every postscale-th period of the counter is a tick.
+type Timer struct {
+	Clock         *big.Rat // Hz
+	PrescalerBits int      // 0: no prescaler, 32 at most
+	ReloadBits    int      // 1 … 32
+	Counting      Counting
+	Postscale     int // 1 or more
+}
+
+// Processor is what a tick costs it.
+type Processor struct {
+	Cost   *big.Rat // seconds of processor time a tick, from cost or from cost_cycles and clock; nil: not given, timing.compute stands for it
+	Budget *big.Rat // the part of the tick that the loop may use, 1 when not given
+}
+
+// RateRange is the range of rates to search, Hz; an end that is nil is found by the program.
+type RateRange struct{ From, To *big.Rat }
+
+// Disturbance is one entry of disturbances.
+type Disturbance struct {
+	Kind      string   // "sine"
+	Name      string   // "" when not given
+	At        string   // where it enters: "input" (plant input), "output" or "sensor"
+	Size      float64  // amplitude; 0 when not given: only its frequency is known
+	SizeExact *big.Rat // nil when not given
+	Frequency *big.Rat // rad/s
 }
 
 // Input is one entry of inputs.
