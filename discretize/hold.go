@@ -48,33 +48,61 @@ func Hold(m sdomain.Model, T, delay *big.Rat) (zdomain.Model, error) {
 // Hold is the function Hold for a prepared plant: use it when one plant is held
 // at many periods or delays.
 func (p *Plant) Hold(T, delay *big.Rat) (zdomain.Model, error) {
-	if T == nil || T.Sign() <= 0 {
-		return zdomain.Model{}, &PeriodError{T}
-	}
-	at, err := splitDelay(T, new(big.Rat).Add(delay, p.delay))
+	a, err := p.At(T)
 	if err != nil {
 		return zdomain.Model{}, err
 	}
-	td := dd.FromRat(T)
+	return a.Hold(delay)
+}
+
+// PlantAt is a Plant at one period, with what no delay changes computed once: use it for
+// many delays or instants within the tick.
+type PlantAt struct {
+	p  *Plant
+	T  *big.Rat
+	td dd.Float
+	c  *cascade // nil for the zero function
+}
+
+// At prepares the plant for one period. Errors as for Hold.
+func (p *Plant) At(T *big.Rat) (*PlantAt, error) {
+	if T == nil || T.Sign() <= 0 {
+		return nil, &PeriodError{T}
+	}
+	a := &PlantAt{p: p, T: T, td: dd.FromRat(T)}
 	if p.zero {
-		return sampled(lti.TF{Period: td, Ticks: at.ticks}, T)
+		return a, nil
 	}
-	if err := p.check(td); err != nil {
-		return zdomain.Model{}, err
+	if err := p.check(a.td); err != nil {
+		return nil, err
 	}
-	e := expTable(p.nodes(td, 1))
-	c := p.cascade(td, e, 1, func(c *cascade, k int) []dd.Complex {
+	e := expTable(p.nodes(a.td, 1))
+	a.c = p.cascade(a.td, e, 1, func(c *cascade, k int) []dd.Complex {
 		return []dd.Complex{e[k+1][0].Scale(c.pow[k])}
 	})
+	return a, nil
+}
+
+// Hold is the function Hold at this period.
+func (a *PlantAt) Hold(delay *big.Rat) (zdomain.Model, error) {
+	p := a.p
+	at, err := splitDelay(a.T, new(big.Rat).Add(delay, p.delay))
+	if err != nil {
+		return zdomain.Model{}, err
+	}
+	if p.zero {
+		return sampled(lti.TF{Period: a.td, Ticks: at.ticks}, a.T)
+	}
+	c := a.c
 	w, feed := p.output(dd.FromRat(at.h), at.h.Sign() == 0)
 	num := realPart(c.combine([]dd.Complex{dd.Real(feed)}, w))
-	tf := lti.TF{Period: td, Ticks: at.ticks, Poles: c.d[:p.num:p.num], OriginPoles: len(p.lambda) - p.num + p.hidden}
+	tf := lti.TF{Period: a.td, Ticks: at.ticks, Poles: c.d[:p.num:p.num], OriginPoles: len(p.lambda) - p.num + p.hidden}
 	tf.Num, tf.OriginZeros = p.structure(num, c.d[:p.num], 1)
 	if at.pole {
-		tf.Poles = append(tf.Poles, dd.Real(dd.One.Div(td).Neg()))
-		tf.Num = tf.Num.Scale(dd.One.Div(td))
+		tf.Poles = append(tf.Poles, dd.Real(dd.One.Div(a.td).Neg()))
+		tf.Num = tf.Num.Scale(dd.One.Div(a.td))
 	}
-	return sampled(tf, T)
+	return sampled(tf, a.T)
 }
 
 // output returns the row C·e^{Ah} and C·Γ(h) + D.

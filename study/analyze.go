@@ -5,7 +5,6 @@ import (
 
 	"steadytick/internal/dd"
 	"steadytick/internal/lti"
-	"steadytick/loop"
 )
 
 // maxPoles is how many closed-loop poles of a loop with a long delay are given.
@@ -24,8 +23,6 @@ type analyzed struct {
 	loopErr    []float64 // of r − m
 	margins    lti.MarginSet
 	delay      float64 // around the loop, seconds: dead times and whole ticks
-	fastest    float64 // largest frequency among the plant's modes, rad/s
-	shortest   float64 // shortest time constant among them, seconds; 0 without one
 	warnings   []Warning
 }
 
@@ -39,7 +36,7 @@ func (a *analyzed) seconds() float64 {
 }
 
 // analyze computes poles, verdicts, series and margins of a block.
-func analyze(l *loop.Loop, b *block) (*analyzed, error) {
+func analyze(b *block) (*analyzed, error) {
 	a := &analyzed{block: b}
 	got, err := lti.Analyze(b.open, maxPoles)
 	if err != nil {
@@ -67,7 +64,6 @@ func analyze(l *loop.Loop, b *block) (*analyzed, error) {
 	a.loopErrDD = b.sys.LoopErrorSeries(steadyTerms)
 	a.loopErr = floats(a.loopErrDD)
 	a.crossCheck()
-	a.fastest, a.shortest = fastestModes(l)
 	a.delay = b.open.DeadTime.Float64() + b.open.Period.Float64()*float64(b.open.Ticks)
 	return a, nil
 }
@@ -112,24 +108,6 @@ func (a *analyzed) crossCheck() {
 			return
 		}
 	}
-}
-
-// fastestModes gives the largest frequency |Im p| of the plant's poles, rad/s, and the
-// shortest time 1/|p|, seconds, 0 for a plant without poles off the origin.
-func fastestModes(l *loop.Loop) (frequency, shortest float64) {
-	poles, err := l.Plant.Ratio.Poles()
-	if err != nil {
-		return 0, 0
-	}
-	speed := 0.0
-	for _, p := range poles {
-		frequency = math.Max(frequency, math.Abs(p.Im.Float64()))
-		speed = math.Max(speed, p.Abs())
-	}
-	if speed > 0 {
-		shortest = 1 / speed
-	}
-	return frequency, shortest
 }
 
 // bandwidth is where the response from r to y has fallen by 3 dB.

@@ -22,7 +22,7 @@ type block struct {
 
 	period *big.Rat // nil in the continuous column
 	delay  *big.Rat // sample to update, seconds; nil in the continuous column
-	held   held     // sampled column
+	held   *heldAt  // sampled column
 
 	// What the simulation runs.
 	terms       []weighted
@@ -124,49 +124,21 @@ func assembleContinuous(l *loop.Loop) (*block, error) {
 	return b, nil
 }
 
-// held is what is behind the hold, its roots found once for every period and delay.
-type held struct {
-	plant      *discretize.Plant
-	withSensor *discretize.Plant // nil for a static sensor
-}
-
-func prepare(l *loop.Loop) (held, error) {
-	var h held
-	var err error
-	if h.plant, err = discretize.Prepare(l.Plant); err != nil {
-		return h, fmt.Errorf("plant: %w", err)
-	}
-	if _, ok := staticSensor(l.Sensor); ok {
-		return h, nil
-	}
-	pm, err := l.Plant.Mul(l.Sensor.Model)
-	if err != nil {
-		return h, err
-	}
-	if h.withSensor, err = discretize.Prepare(pm); err != nil {
-		return h, fmt.Errorf("plant with sensor: %w", err)
-	}
-	return h, nil
-}
-
 // assembleSampled builds the sampled column at period T with the given time from
 // sample to update, both exact seconds.
 func assembleSampled(l *loop.Loop, h held, period, delay *big.Rat) (*block, error) {
-	b := &block{period: period, delay: delay, held: h}
-	gy, err := h.plant.Hold(period, delay)
+	a, err := h.at(period, delay)
 	if err != nil {
-		return nil, fmt.Errorf("plant: %w", err)
+		return nil, err
 	}
-	b.sys.Gy = gy.TF
-	if g, ok := staticSensor(l.Sensor); ok {
-		b.sys.Gm = gy.TF.Scale(dd.FromRat(g)) // the same numbers as the plant's
-	} else {
-		gm, err := h.withSensor.Hold(period, delay)
-		if err != nil {
-			return nil, fmt.Errorf("plant with sensor: %w", err)
-		}
-		b.sys.Gm = gm.TF
-	}
+	return a.assemble(l)
+}
+
+// assemble closes the loop around what is behind the hold with the controller of l.
+func (a *heldAt) assemble(l *loop.Loop) (*block, error) {
+	period := a.period
+	b := &block{period: period, delay: a.delay, held: a}
+	b.sys.Gy, b.sys.Gm = a.gy, a.gm
 	for _, t := range l.Controller.Terms {
 		m, err := mapTerm(t, period)
 		if err != nil {

@@ -4,7 +4,10 @@ import (
 	"context"
 	"testing"
 
+	"steadytick/discretize"
+
 	"steadytick/internal/yardstick"
+	"steadytick/loop"
 )
 
 // orderSix is an invented loop of order six: drive, belt mode, sensor and controller lag.
@@ -39,7 +42,7 @@ func BenchmarkFullAnalysis(b *testing.B) {
 		if err != nil {
 			b.Fatal(err)
 		}
-		a, err := analyze(l, blk)
+		a, err := analyze(blk)
 		if err != nil {
 			b.Fatal(err)
 		}
@@ -56,6 +59,46 @@ func BenchmarkCompare(b *testing.B) {
 	for b.Loop() {
 		if _, err := RunCompare(context.Background(), l, Options{Degrade: DefaultDegrade(), Curves: true}); err != nil {
 			b.Fatal(err)
+		}
+	}
+	yardstick.Report(b)
+}
+
+// One rate, every map: what a sweep over rates repeats.
+func BenchmarkRateAllMaps(b *testing.B) {
+	l := parsed(b, orderSix)
+	h, err := prepare(l)
+	if err != nil {
+		b.Fatal(err)
+	}
+	var loops []*loop.Loop
+	for _, m := range append(discretize.Methods(), "prewarped at 8 Hz") {
+		if m == "prewarped" {
+			continue
+		}
+		other, problems := l.WithMap(m)
+		if len(problems) > 0 {
+			b.Fatal(problems)
+		}
+		loops = append(loops, other)
+	}
+	for b.Loop() {
+		a, err := h.at(l.Timing.Period, l.Timing.LoopDelay())
+		if err != nil {
+			b.Fatal(err)
+		}
+		for _, o := range loops {
+			blk, err := a.assemble(o)
+			if err != nil {
+				b.Fatal(err)
+			}
+			x, err := analyze(blk)
+			if err != nil {
+				b.Fatal(err)
+			}
+			if _, err := x.column(o); err != nil {
+				b.Fatal(err)
+			}
 		}
 	}
 	yardstick.Report(b)

@@ -58,7 +58,7 @@ func RunCompare(ctx context.Context, l *loop.Loop, o Options) (*Compare, error) 
 	if o.Curves {
 		c.addFrequencyAndPoles(cont, sampled)
 		o.progress("rates", 1, 1)
-		if err := c.Curves.addRates(ctx, l, sampled.block.held); err != nil {
+		if err := c.Curves.addRates(ctx, l, sampled.block.held.held); err != nil {
 			return nil, err
 		}
 	}
@@ -74,7 +74,7 @@ func bothColumns(l *loop.Loop, c *Compare) (cont, sampled *analyzed, err error) 
 	case err != nil:
 		return nil, nil, err
 	default:
-		if cont, err = analyze(l, b); err != nil {
+		if cont, err = analyze(b); err != nil {
 			return nil, nil, err
 		}
 	}
@@ -85,7 +85,7 @@ func bothColumns(l *loop.Loop, c *Compare) (cont, sampled *analyzed, err error) 
 	if b, err = assembleSampled(l, h, l.Timing.Period, l.Timing.LoopDelay()); err != nil {
 		return nil, nil, err
 	}
-	sampled, err = analyze(l, b)
+	sampled, err = analyze(b)
 	return cont, sampled, err
 }
 

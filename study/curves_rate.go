@@ -97,7 +97,7 @@ func atRate(l *loop.Loop, h held, period *big.Rat) *Compare {
 	if err != nil {
 		return nil
 	}
-	a, err := analyze(other, b)
+	a, err := analyze(b)
 	if err != nil {
 		return nil
 	}

@@ -6,17 +6,14 @@ import (
 )
 
 // extremes finds the least and the greatest value of f over the parts, NaN where f is NaN.
-// In each part f is interpolated at Chebyshev points; the interpolant's extreme is
-// confirmed by one value of f, and where that is off by more than confirmed of the range of f,
-// successive parabolas through values of f take over.
+// In each part f is interpolated at its Chebyshev instants. Where the last coefficients of the interpolant
+// do not show that it holds to confirmed of the range of f, its extreme is confirmed by one value of f, and where
+// that is off by more, successive parabolas through values of f take over.
 func extremes(parts []part, f func(*big.Rat) float64) (lo, hi float64) {
 	lo, hi = math.Inf(1), math.Inf(-1)
 	for _, p := range parts {
-		if p.from.Cmp(p.to) >= 0 {
-			continue
-		}
 		at := func(x float64) float64 { return f(between(p.from, p.to, x)) } // x from 0 to 1
-		c := chebyshev(p.points, at)
+		c := chebyshev(p.nodes, f)
 		hi = math.Max(hi, c.peak(at))
 		c.flip()
 		lo = math.Min(lo, -c.peak(func(x float64) float64 { return -at(x) }))
@@ -41,13 +38,38 @@ func between(from, to *big.Rat, x float64) *big.Rat {
 //	x_i = (1 − cos(πi/n))/2,   i = 0 … n
 type samples struct{ x, y []float64 }
 
-func chebyshev(n int, f func(float64) float64) samples {
-	s := samples{make([]float64, n+1), make([]float64, n+1)}
-	for i := range s.x {
-		s.x[i] = (1 - math.Cos(math.Pi*float64(i)/float64(n))) / 2
-		s.y[i] = f(s.x[i])
+func chebyshevPoint(i, n int) float64 { return (1 - math.Cos(math.Pi*float64(i)/float64(n))) / 2 }
+
+// chebyshev samples f at the Chebyshev instants of an interval.
+func chebyshev(nodes []*big.Rat, f func(*big.Rat) float64) samples {
+	s := samples{make([]float64, len(nodes)), make([]float64, len(nodes))}
+	for i, t := range nodes {
+		s.x[i], s.y[i] = chebyshevPoint(i, len(nodes)-1), f(t)
 	}
 	return s
+}
+
+// tail bounds how far the interpolant may be from f by the last coefficients of its Chebyshev series,
+//
+//	a_k = (2/n)·Σ'' y_i·cos(πik/n),   k = n−3 … n−1
+//
+// the first and last term of the sum halved; those left out are smaller still for a function whose coefficients fall
+// geometrically, as those of exponentials do. Four times their sum of magnitudes is the bound.
+func (s samples) tail() float64 {
+	n := len(s.y) - 1
+	sum := 0.0
+	for k := n - 3; k < n; k++ {
+		a := 0.0
+		for i, y := range s.y {
+			c := y * math.Cos(math.Pi*float64(i*k%(2*n))/float64(n))
+			if i == 0 || i == n {
+				c /= 2
+			}
+			a += c
+		}
+		sum += math.Abs(a) * 2 / float64(n)
+	}
+	return 4 * sum
 }
 
 func (s samples) flip() {
@@ -98,6 +120,9 @@ func (s samples) peak(f func(float64) float64) float64 {
 		return best
 	}
 	x := goldenMax(s.value, s.x[k-1], s.x[k+1])
+	if s.tail() <= confirmed*(best-low) {
+		return math.Max(best, s.value(x))
+	}
 	v := f(x)
 	if math.Abs(v-s.value(x)) <= confirmed*(best-low) {
 		return math.Max(best, v)

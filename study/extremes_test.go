@@ -13,8 +13,8 @@ func TestExtremes(t *testing.T) {
 	of := func(f func(float64) float64) func(*big.Rat) float64 {
 		return func(r *big.Rat) float64 { x, _ := r.Float64(); return f(x) }
 	}
-	one := []part{{rat(0), rat(4), 16}}
-	two := []part{{rat(0), rat(1), 14}, {rat(1), rat(3), 14}}
+	one := []part{newPart(rat(0), rat(4), 16)}
+	two := []part{newPart(rat(0), rat(1), 14), newPart(rat(1), rat(3), 14)}
 	dip := (math.Pi - math.Atan(1.0/7)) / 7 // of cos(7x)·exp(−x): tan 7x = −1/7
 	for name, c := range map[string]struct {
 		parts  []part

@@ -5,7 +5,6 @@ import (
 	"math"
 	"math/big"
 	"math/cmplx"
-	"slices"
 
 	"steadytick/internal/dd"
 	"steadytick/internal/lti"
@@ -31,7 +30,7 @@ type ripple struct{ high, low, peakToPeak float64 }
 //	step:      a·(1 − c0 − t0)
 //	ramp:      a·(θ(1−c0) − t1 − c1)
 //	parabola:  a·((1−c0)θ²/2 − c1·θ − t1·T/2 − t2 − c2 − c1·T/2)
-func (a *analyzed) ripplePolynomial(l *loop.Loop, in loop.Input) ripple {
+func (a *analyzed) ripplePolynomial(in loop.Input) ripple {
 	n := map[string]int{"step": 0, "ramp": 1, "parabola": 2}[in.Kind] - a.effortOrder()
 	switch {
 	case n <= 0 || in.Size == 0:
@@ -44,7 +43,7 @@ func (a *analyzed) ripplePolynomial(l *loop.Loop, in loop.Input) ripple {
 	half := a.block.open.Period.Ldexp(-1)
 	rest := dd.One.Sub(c[0])
 	at := a.offsetResponse()
-	lo, hi := extremes(a.smoothParts(l), func(theta *big.Rat) float64 {
+	lo, hi := extremes(a.block.held.smoothParts(), func(theta *big.Rat) float64 {
 		t, err := at(theta)
 		if err != nil {
 			return math.NaN()
@@ -73,22 +72,22 @@ func (a *analyzed) effortOrder() int {
 }
 
 // rippleSine compares the response at each offset with the sine through the ticks.
-func (a *analyzed) rippleSine(l *loop.Loop, in loop.Input, w float64) ripple {
+func (a *analyzed) rippleSine(in loop.Input, w float64) ripple {
 	size := math.Abs(in.Size)
-	atTick := a.block.toOutput(w)
+	atTick, cr, open := a.block.toOutput(w), a.block.sys.Cr.Freq(w), 1+a.block.open.Freq(w)
 	var worst float64
 	at := func(theta *big.Rat) float64 {
-		g, err := a.block.held.plant.Hold(a.block.period, new(big.Rat).Sub(a.block.delay, theta))
-		if err != nil {
+		s := a.block.held.seenAt(theta)
+		if s.err != nil {
 			return math.NaN()
 		}
 		th, _ := theta.Float64()
 		turn := cmplx.Rect(1, w*th)
-		y := a.block.sys.Cr.Freq(w) * g.TF.Freq(w) / (1 + a.block.open.Freq(w))
+		y := cr * s.g.Freq(w) / open
 		worst = math.Max(worst, cmplx.Abs(turn-y)*size)
 		return cmplx.Abs(turn*atTick-y) * size
 	}
-	_, hi := extremes(a.smoothParts(l), at)
+	_, hi := extremes(a.block.held.smoothParts(), at)
 	return ripple{high: worst, low: -hi, peakToPeak: 2 * hi}
 }
 
@@ -108,11 +107,11 @@ func (a *analyzed) offsetResponse() func(theta *big.Rat) ([]dd.Float, error) {
 		if err != nil {
 			return nil, err
 		}
-		g, err := b.held.plant.Hold(b.period, new(big.Rat).Sub(b.delay, theta))
-		if err != nil {
-			return nil, err
+		s := b.held.seenAt(theta)
+		if s.err != nil {
+			return nil, s.err
 		}
-		q := front.Mul(g.TF.Series(terms))
+		q := front.Mul(s.laurent(terms))
 		t := make([]dd.Float, 3)
 		for k := range t {
 			var known bool
@@ -122,54 +121,4 @@ func (a *analyzed) offsetResponse() func(theta *big.Rat) ([]dd.Float, error) {
 		}
 		return t, nil
 	}
-}
-
-// part is an interval of offsets in which the error is smooth, with the number of points it needs.
-type part struct {
-	from, to *big.Rat
-	points   int
-}
-
-// ladderStep is the ratio of the lengths of neighbouring parts after a switch of the effort.
-const ladderStep = 4
-
-// smoothParts cuts the tick at the instant where the effort switches, and the time since the switch
-// at τ, 4τ, 16τ, … of the plant's fastest mode τ: a mode far faster than the tick has all of its transient in the first
-// of them, and each is smooth for its few points.
-func (a *analyzed) smoothParts(l *loop.Loop) []part {
-	T := a.block.period
-	cut := remainder(new(big.Rat).Add(a.block.delay, l.Plant.Delay), T)
-	bounds := []*big.Rat{new(big.Rat), T}
-	if cut.Sign() > 0 {
-		bounds = append(bounds, cut)
-	}
-	tick, _ := T.Float64()
-	for since := a.shortest; since > 0 && since < tick; since *= ladderStep {
-		at := new(big.Rat).SetFloat64(since)
-		at.Add(at, cut)
-		if at.Cmp(T) >= 0 {
-			at.Sub(at, T)
-		}
-		bounds = append(bounds, at)
-	}
-	slices.SortFunc(bounds, (*big.Rat).Cmp)
-	var out []part
-	for i := 1; i < len(bounds); i++ {
-		width, _ := new(big.Rat).Sub(bounds[i], bounds[i-1]).Float64()
-		out = append(out, part{bounds[i-1], bounds[i], pointsFor(a.fastest, width)})
-	}
-	return out
-}
-
-// pointsFor is the number of Chebyshev points for modes up to fastest rad/s over
-// width seconds: 12 for a smooth arc and two per radian on top, at most 200.
-func pointsFor(fastest, width float64) int {
-	return int(math.Min(200, 12+2*fastest*width))
-}
-
-// remainder is total mod T, exact.
-func remainder(total, T *big.Rat) *big.Rat {
-	q := new(big.Rat).Quo(total, T)
-	n := new(big.Int).Div(q.Num(), q.Denom())
-	return new(big.Rat).Sub(total, new(big.Rat).Mul(new(big.Rat).SetInt(n), T))
 }

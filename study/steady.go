@@ -50,9 +50,9 @@ func (a *analyzed) steady(l *loop.Loop) []Steady {
 		s := blankSteady(in)
 		switch in.Kind {
 		case "step", "ramp", "parabola":
-			a.steadyPolynomial(l, in, &s)
+			a.steadyPolynomial(in, &s)
 		case "sine":
-			a.steadySine(l, in, &s)
+			a.steadySine(in, &s)
 		case "load_step":
 			a.steadyLoad(l, in, &s)
 		}
@@ -61,7 +61,7 @@ func (a *analyzed) steady(l *loop.Loop) []Steady {
 	return out
 }
 
-func (a *analyzed) steadyPolynomial(l *loop.Loop, in loop.Input, s *Steady) {
+func (a *analyzed) steadyPolynomial(in loop.Input, s *Steady) {
 	if !a.stable {
 		return
 	}
@@ -74,7 +74,7 @@ func (a *analyzed) steadyPolynomial(l *loop.Loop, in loop.Input, s *Steady) {
 		s.WorstError = absFigure(s.TrackingError)
 		return
 	}
-	r := a.ripplePolynomial(l, in)
+	r := a.ripplePolynomial(in)
 	s.Ripple = Fig(r.peakToPeak)
 	s.WorstError = absFigure(s.TrackingError)
 	if !math.IsInf(s.TrackingError.Value, 0) {
@@ -86,7 +86,7 @@ func absFigure(f Figure) Figure { return Figure{math.Abs(f.Value), f.OK} }
 
 // steadySine gives amplitude and phase of the error E = 1 − T(jω) for a sine of
 // the reference, at the ticks.
-func (a *analyzed) steadySine(l *loop.Loop, in loop.Input, s *Steady) {
+func (a *analyzed) steadySine(in loop.Input, s *Steady) {
 	w, _ := in.Frequency.Float64()
 	if !a.stable {
 		return
@@ -97,7 +97,7 @@ func (a *analyzed) steadySine(l *loop.Loop, in loop.Input, s *Steady) {
 	s.LoopError = Fig(cmplx.Abs(1-a.block.toMeasurement(w)) * math.Abs(in.Size))
 	s.WorstError = s.TrackingError
 	if a.block.period != nil {
-		r := a.rippleSine(l, in, w)
+		r := a.rippleSine(in, w)
 		s.Ripple, s.WorstError = Fig(r.peakToPeak), Fig(r.high)
 	}
 }

@@ -31,7 +31,7 @@ func variants(l *loop.Loop, own *analyzed, d Degrade) []variant {
 			v.note = problems[0].Message
 		} else {
 			v.loop = other
-			v.analyse(own.block.held, other.Timing.LoopDelay())
+			v.analyse(own.block.held.held, other.Timing.LoopDelay())
 		}
 		out = append(out, v)
 	}
@@ -46,7 +46,7 @@ func variants(l *loop.Loop, own *analyzed, d Degrade) []variant {
 			delay.Mul(l.Timing.Period, big.NewRat(int64(x.Extra), 1))
 			delay.Add(delay, l.Timing.LoopDelay())
 		}
-		v.analyse(own.block.held, delay)
+		v.analyse(own.block.held.held, delay)
 		out = append(out, v)
 	}
 	if l.Sensor.Bits > 0 || l.Actuator.Bits > 0 {
@@ -59,7 +59,7 @@ func variants(l *loop.Loop, own *analyzed, d Degrade) []variant {
 func (v *variant) analyse(h held, delay *big.Rat) {
 	b, err := assembleSampled(v.loop, h, v.loop.Timing.Period, delay)
 	if err == nil {
-		v.run, err = analyze(v.loop, b)
+		v.run, err = analyze(b)
 	}
 	if err != nil {
 		v.note = err.Error()

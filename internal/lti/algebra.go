@@ -55,6 +55,7 @@ func (a TF) Mul(b TF) TF {
 		return TF{Period: a.Period}
 	}
 	return TF{
+		zeros:       bothZeros(a, b),
 		Num:         a.Num.Mul(b.Num),
 		Poles:       append(append([]dd.Complex(nil), a.Poles...), b.Poles...),
 		OriginZeros: a.OriginZeros + b.OriginZeros,
@@ -63,6 +64,19 @@ func (a TF) Mul(b TF) TF {
 		Ticks:       a.Ticks + b.Ticks,
 		DeadTime:    a.DeadTime.Add(b.DeadTime),
 	}
+}
+
+// bothZeros are the zeros of a product, nil unless those of one factor are known and those of the other are or
+// can be found.
+func bothZeros(a, b TF) []dd.Complex {
+	if a.zeros == nil && b.zeros == nil {
+		return nil
+	}
+	a, b = a.FindZeros(), b.FindZeros()
+	if a.zeros == nil || b.zeros == nil {
+		return nil
+	}
+	return append(append(make([]dd.Complex, 0, len(a.zeros)+len(b.zeros)), a.zeros...), b.zeros...)
 }
 
 // Add returns a + b over the least common denominator: a pole that stands in

@@ -32,9 +32,12 @@ type factored struct {
 // factor finds the zeros of g, which must not be the zero function.
 func (g TF) factor() (factored, error) {
 	n := g.Num.Trim()
-	zeros, err := n.Roots()
-	if err != nil {
-		return factored{}, err
+	zeros := g.zeros
+	if zeros == nil || len(zeros) != n.Degree() {
+		var err error
+		if zeros, err = n.Roots(); err != nil {
+			return factored{}, err
+		}
 	}
 	f := factored{
 		lead: n[len(n)-1], zeros: zeros, poles: g.Poles,
@@ -128,4 +131,15 @@ func (f factored) shifted(sigma dd.Float) factored {
 	add(f.zeros, f.oz, &out.zeros, &out.oz)
 	add(f.poles, f.op, &out.poles, &out.op)
 	return out
+}
+
+// FindZeros returns g with the roots of its numerator kept beside it, so that products of it need not
+// find them again. Where the roots cannot be found g is returned as it is.
+func (g TF) FindZeros() TF {
+	if g.zeros == nil && !g.IsZero() {
+		if z, err := g.Num.Trim().Roots(); err == nil {
+			g.zeros = append([]dd.Complex{}, z...) // not nil, even when there are none
+		}
+	}
+	return g
 }

@@ -27,4 +27,6 @@ type TF struct {
 	Period                   dd.Float // seconds; 0 for the continuous domain
 	Ticks                    int      // whole ticks of delay, sampled domain only
 	DeadTime                 dd.Float // seconds, continuous domain only
+
+	zeros []dd.Complex // roots of Num, nil when not known; see FindZeros
 }

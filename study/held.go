@@ -1,0 +1,198 @@
+package study
+
+import (
+	"fmt"
+	"math"
+	"math/big"
+	"slices"
+
+	"steadytick/discretize"
+	"steadytick/internal/dd"
+	"steadytick/internal/lti"
+	"steadytick/loop"
+)
+
+// held is what is behind the hold, its roots found once for every period and delay.
+type held struct {
+	plant      *discretize.Plant
+	withSensor *discretize.Plant // nil for a static sensor
+	sensor     dd.Float          // its gain, where static
+	deadTime   *big.Rat          // of the plant, seconds
+	fastest    float64           // largest frequency among the plant's modes, rad/s
+	shortest   float64           // shortest time constant among them, seconds; 0 without one
+}
+
+func prepare(l *loop.Loop) (held, error) {
+	h := held{deadTime: l.Plant.Delay}
+	var err error
+	if h.plant, err = discretize.Prepare(l.Plant); err != nil {
+		return h, fmt.Errorf("plant: %w", err)
+	}
+	h.fastest, h.shortest = fastestModes(l)
+	if g, ok := staticSensor(l.Sensor); ok {
+		h.sensor = dd.FromRat(g)
+		return h, nil
+	}
+	pm, err := l.Plant.Mul(l.Sensor.Model)
+	if err != nil {
+		return h, err
+	}
+	if h.withSensor, err = discretize.Prepare(pm); err != nil {
+		return h, fmt.Errorf("plant with sensor: %w", err)
+	}
+	return h, nil
+}
+
+// fastestModes gives the largest frequency |Im p| of the plant's poles, rad/s, and the
+// shortest time 1/|p|, seconds, 0 for a plant without poles off the origin.
+func fastestModes(l *loop.Loop) (frequency, shortest float64) {
+	poles, err := l.Plant.Ratio.Poles()
+	if err != nil {
+		return 0, 0
+	}
+	speed := 0.0
+	for _, p := range poles {
+		frequency = math.Max(frequency, math.Abs(p.Im.Float64()))
+		speed = math.Max(speed, p.Abs())
+	}
+	if speed > 0 {
+		shortest = 1 / speed
+	}
+	return frequency, shortest
+}
+
+// heldAt is what is behind the hold at one period and one time from sample to update. Controllers of
+// any map share it; it is not for concurrent use.
+type heldAt struct {
+	held
+	period, delay *big.Rat
+	gy, gm        lti.TF // zeros known
+
+	ticked *discretize.PlantAt
+	cut    []part                // see smoothParts
+	seen   map[*big.Rat]*instant // by the offsets of cut
+}
+
+// at holds the plant at a period with the given time from sample to update, exact seconds.
+func (h held) at(period, delay *big.Rat) (*heldAt, error) {
+	a := &heldAt{held: h, period: period, delay: delay, seen: map[*big.Rat]*instant{}}
+	var err error
+	if a.ticked, err = h.plant.At(period); err != nil {
+		return nil, fmt.Errorf("plant: %w", err)
+	}
+	gy, err := a.ticked.Hold(delay)
+	if err != nil {
+		return nil, fmt.Errorf("plant: %w", err)
+	}
+	a.gy = gy.TF.FindZeros()
+	if h.withSensor == nil {
+		a.gm = a.gy.Scale(h.sensor) // the same numbers as the plant's
+		return a, nil
+	}
+	gm, err := h.withSensor.Hold(period, delay)
+	if err != nil {
+		return nil, fmt.Errorf("plant with sensor: %w", err)
+	}
+	a.gm = gm.TF.FindZeros()
+	return a, nil
+}
+
+// instant is the plant seen at one offset within the tick.
+type instant struct {
+	g      lti.TF
+	err    error
+	terms  int // of series
+	series lti.Laurent
+}
+
+// seenAt returns the hold equivalent of the plant seen theta after the tick. Offsets of smoothParts are
+// computed once.
+func (a *heldAt) seenAt(theta *big.Rat) *instant {
+	if s := a.seen[theta]; s != nil {
+		return s
+	}
+	s := &instant{}
+	g, err := a.ticked.Hold(new(big.Rat).Sub(a.delay, theta))
+	s.g, s.err = g.TF, err
+	return s
+}
+
+// laurent returns n terms of the series at rest.
+func (s *instant) laurent(n int) lti.Laurent {
+	if s.terms != n {
+		s.series, s.terms = s.g.Series(n), n
+	}
+	return s.series
+}
+
+// part is an interval of offsets in which the error is smooth, with its Chebyshev instants.
+type part struct {
+	from, to *big.Rat
+	nodes    []*big.Rat // from first to last, both ends included
+}
+
+// newPart places points + 1 Chebyshev instants in an interval.
+func newPart(from, to *big.Rat, points int) part {
+	p := part{from: from, to: to, nodes: make([]*big.Rat, points+1)}
+	for i := range p.nodes {
+		p.nodes[i] = between(from, to, chebyshevPoint(i, points))
+	}
+	return p
+}
+
+// ladderStep is the ratio of the lengths of neighbouring parts after a switch of the effort.
+const ladderStep = 4
+
+// smoothParts cuts the tick at the instant where the effort switches, and the time since the switch
+// at τ, 4τ, 16τ, … of the plant's fastest mode τ: a mode far faster than the tick has all of its transient in the first
+// of them, and each is smooth for its few points.
+func (a *heldAt) smoothParts() []part {
+	if a.cut != nil {
+		return a.cut
+	}
+	T := a.period
+	at := remainder(new(big.Rat).Add(a.delay, a.deadTime), T)
+	bounds := []*big.Rat{new(big.Rat), T}
+	if at.Sign() > 0 {
+		bounds = append(bounds, at)
+	}
+	tick, _ := T.Float64()
+	for since := a.shortest; since > 0 && since < tick; since *= ladderStep {
+		x := new(big.Rat).SetFloat64(since)
+		x.Add(x, at)
+		if x.Cmp(T) >= 0 {
+			x.Sub(x, T)
+		}
+		bounds = append(bounds, x)
+	}
+	slices.SortFunc(bounds, (*big.Rat).Cmp)
+	for i := 1; i < len(bounds); i++ {
+		if bounds[i-1].Cmp(bounds[i]) == 0 {
+			continue
+		}
+		width, _ := new(big.Rat).Sub(bounds[i], bounds[i-1]).Float64()
+		p := newPart(bounds[i-1], bounds[i], pointsFor(a.fastest, width))
+		for _, theta := range p.nodes {
+			a.seen[theta] = nil
+		}
+		a.cut = append(a.cut, p)
+	}
+	for theta := range a.seen {
+		s := a.seenAt(theta)
+		a.seen[theta] = s
+	}
+	return a.cut
+}
+
+// pointsFor is the number of Chebyshev points for modes up to fastest rad/s over
+// width seconds: 12 for a smooth arc and two per radian on top, at most 200.
+func pointsFor(fastest, width float64) int {
+	return int(math.Min(200, 12+2*fastest*width))
+}
+
+// remainder is total mod T, exact.
+func remainder(total, T *big.Rat) *big.Rat {
+	q := new(big.Rat).Quo(total, T)
+	n := new(big.Int).Div(q.Num(), q.Denom())
+	return new(big.Rat).Sub(total, new(big.Rat).Mul(new(big.Rat).SetInt(n), T))
+}
