@@ -85,16 +85,21 @@ func (p *Plant) At(T *big.Rat) (*PlantAt, error) {
 
 // Hold is the function Hold at this period.
 func (a *PlantAt) Hold(delay *big.Rat) (zdomain.Model, error) {
-	p := a.p
-	at, err := splitDelay(a.T, new(big.Rat).Add(delay, p.delay))
+	at, err := splitDelay(a.T, new(big.Rat).Add(delay, a.p.delay))
 	if err != nil {
 		return zdomain.Model{}, err
 	}
+	tf := a.hold(at, dd.FromRat(at.h))
+	return sampled(tf, a.T)
+}
+
+// hold is the hold equivalent with h as at.h rounded.
+func (a *PlantAt) hold(at place, h dd.Float) lti.TF {
+	p, c := a.p, a.c
 	if p.zero {
-		return sampled(lti.TF{Period: a.td, Ticks: at.ticks}, a.T)
+		return lti.TF{Period: a.td, Ticks: at.ticks}
 	}
-	c := a.c
-	w, feed := p.output(dd.FromRat(at.h), at.h.Sign() == 0)
+	w, feed := p.output(h, h.Sign() == 0)
 	num := realPart(c.combine([]dd.Complex{dd.Real(feed)}, w))
 	tf := lti.TF{Period: a.td, Ticks: at.ticks, Poles: c.d[:p.num:p.num], OriginPoles: len(p.lambda) - p.num + p.hidden}
 	tf.Num, tf.OriginZeros = p.structure(num, c.d[:p.num], 1)
@@ -102,7 +107,43 @@ func (a *PlantAt) Hold(delay *big.Rat) (zdomain.Model, error) {
 		tf.Poles = append(tf.Poles, dd.Real(dd.One.Div(a.td).Neg()))
 		tf.Num = tf.Num.Scale(dd.One.Div(a.td))
 	}
-	return sampled(tf, a.T)
+	return tf
+}
+
+// Along returns the hold equivalents for the delays
+//
+//	delay_i = from + x_i·(to − from),   0 < x_i < 1
+//
+// which must all lie between the same two whole numbers of ticks together with the plant's own dead time. The
+// delays are formed in double-double arithmetic, 1e-32 of a tick; that saves the exact fractions of Hold. Errors
+// as for Hold, and *DelayError where whole ticks lie between.
+func (a *PlantAt) Along(from, to *big.Rat, x []float64) ([]lti.TF, error) {
+	middle := new(big.Rat).Add(from, to)
+	middle.Quo(middle, big.NewRat(2, 1))
+	at, err := splitDelay(a.T, middle.Add(middle, a.p.delay))
+	if err != nil {
+		return nil, err
+	}
+	// h falls as the delay rises; both ends of the interval of delays lie within [0, T] of h.
+	first := new(big.Rat).Add(at.h, middle)
+	first.Sub(first, from).Sub(first, a.p.delay)
+	span := new(big.Rat).Sub(from, to)
+	last := new(big.Rat).Add(first, span)
+	for _, h := range [2]*big.Rat{first, last} {
+		if h.Sign() < 0 || h.Cmp(a.T) > 0 {
+			return nil, &DelayError{"hold", new(big.Rat).Quo(span, a.T), "delays along an interval must stay within one tick"}
+		}
+	}
+	h0, dh := dd.FromRat(first), dd.FromRat(span)
+	out := make([]lti.TF, len(x))
+	for i, f := range x {
+		m, err := sampled(a.hold(at, h0.Add(dh.MulFloat(f))), a.T)
+		if err != nil {
+			return nil, err
+		}
+		out[i] = m.TF
+	}
+	return out, nil
 }
 
 // output returns the row C·e^{Ah} and C·Γ(h) + D.

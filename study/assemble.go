@@ -7,7 +7,6 @@ import (
 
 	"steadytick/discretize"
 	"steadytick/internal/dd"
-	"steadytick/internal/exact"
 	"steadytick/internal/lti"
 	"steadytick/loop"
 	"steadytick/sdomain"
@@ -160,7 +159,7 @@ func (a *heldAt) assemble(l *loop.Loop) (*block, error) {
 		}
 		*x.dst = &m
 	}
-	cm, cr, err := joinTerms(b, period)
+	cm, cr, err := joinTerms(b, oneDegree(l.Controller))
 	if err != nil {
 		return nil, err
 	}
@@ -183,17 +182,15 @@ func mapPart(p loop.Part, period *big.Rat) (zdomain.Model, error) {
 }
 
 // mapTerm maps the parts of a term and multiplies them.
-func mapTerm(t loop.Term, period *big.Rat) (zdomain.Model, error) {
-	out, err := zdomain.FromDelta(exact.Const(big.NewRat(1, 1)), period)
-	if err != nil {
-		return out, err
-	}
-	for _, p := range t.Parts {
+func mapTerm(t loop.Term, period *big.Rat) (out zdomain.Model, err error) {
+	for i, p := range t.Parts {
 		m, err := mapPart(p, period)
 		if err != nil {
 			return out, err
 		}
-		if out, err = out.Mul(m); err != nil {
+		if i == 0 {
+			out = m
+		} else if out, err = out.Mul(m); err != nil {
 			return out, err
 		}
 	}
@@ -201,23 +198,30 @@ func mapTerm(t loop.Term, period *big.Rat) (zdomain.Model, error) {
 }
 
 // joinTerms adds the mapped terms: Cm, and Cr with weights, prefilter and feedforward.
-func joinTerms(b *block, period *big.Rat) (cm, cr zdomain.Model, err error) {
-	zero, err := zdomain.FromDelta(exact.Const(new(big.Rat)), period)
-	if err != nil {
-		return cm, cr, err
-	}
-	cm, cr = zero, zero
-	for _, t := range b.terms {
+func joinTerms(b *block, one bool) (cm, cr zdomain.Model, err error) {
+	for i, t := range b.terms {
+		w := t.model
+		if !one {
+			if w, err = t.model.Scale(t.weight); err != nil {
+				return cm, cr, err
+			}
+		}
+		if i == 0 {
+			cm, cr = t.model, w
+			continue
+		}
 		if cm, err = cm.Add(t.model); err != nil {
 			return cm, cr, err
 		}
-		w, err := t.model.Scale(t.weight)
-		if err != nil {
-			return cm, cr, err
+		if one {
+			continue
 		}
 		if cr, err = cr.Add(w); err != nil {
 			return cm, cr, err
 		}
+	}
+	if one {
+		return cm, cm, nil
 	}
 	if b.prefilter != nil {
 		if cr, err = cr.Mul(*b.prefilter); err != nil {

@@ -10,14 +10,14 @@ import (
 // is an end of both; exp(−300x) needs the parabolas or finds its ends.
 func TestExtremes(t *testing.T) {
 	rat := func(x float64) *big.Rat { return new(big.Rat).SetFloat64(x) }
-	of := func(f func(float64) float64) func(*big.Rat) float64 {
-		return func(r *big.Rat) float64 { x, _ := r.Float64(); return f(x) }
+	of := func(f func(float64) float64) func(*offset) float64 {
+		return func(o *offset) float64 { return f(o.seconds().Float64()) }
 	}
-	one := []part{newPart(rat(0), rat(4), 16)}
-	two := []part{newPart(rat(0), rat(1), 14), newPart(rat(1), rat(3), 14)}
+	one := []*part{newPart(rat(0), rat(4), 16)}
+	two := []*part{newPart(rat(0), rat(1), 14), newPart(rat(1), rat(3), 14)}
 	dip := (math.Pi - math.Atan(1.0/7)) / 7 // of cos(7x)·exp(−x): tan 7x = −1/7
 	for name, c := range map[string]struct {
-		parts  []part
+		parts  []*part
 		f      func(float64) float64
 		lo, hi float64
 	}{

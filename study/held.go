@@ -69,13 +69,12 @@ type heldAt struct {
 	gy, gm        lti.TF // zeros known
 
 	ticked *discretize.PlantAt
-	cut    []part                // see smoothParts
-	seen   map[*big.Rat]*instant // by the offsets of cut
+	cut    []*part // see smoothParts
 }
 
 // at holds the plant at a period with the given time from sample to update, exact seconds.
 func (h held) at(period, delay *big.Rat) (*heldAt, error) {
-	a := &heldAt{held: h, period: period, delay: delay, seen: map[*big.Rat]*instant{}}
+	a := &heldAt{held: h, period: period, delay: delay}
 	var err error
 	if a.ticked, err = h.plant.At(period); err != nil {
 		return nil, fmt.Errorf("plant: %w", err)
@@ -105,16 +104,47 @@ type instant struct {
 	series lti.Laurent
 }
 
-// seenAt returns the hold equivalent of the plant seen theta after the tick. Offsets of smoothParts are
-// computed once.
-func (a *heldAt) seenAt(theta *big.Rat) *instant {
-	if s := a.seen[theta]; s != nil {
-		return s
+// seenAt returns the hold equivalent of the plant seen at an offset after the tick.
+func (a *heldAt) seenAt(o *offset) *instant {
+	if o.seen != nil {
+		return o.seen
 	}
-	s := &instant{}
-	g, err := a.ticked.Hold(new(big.Rat).Sub(a.delay, theta))
-	s.g, s.err = g.TF, err
-	return s
+	o.seen = &instant{}
+	switch o.x {
+	case 0, 1:
+		theta := o.in.from
+		if o.x == 1 {
+			theta = o.in.to
+		}
+		m, err := a.ticked.Hold(new(big.Rat).Sub(a.delay, theta))
+		o.seen.g, o.seen.err = m.TF, err
+	default:
+		list, err := a.along(o.in, []float64{o.x})
+		if o.seen.err = err; err == nil {
+			o.seen.g = list[0]
+		}
+	}
+	return o.seen
+}
+
+func (a *heldAt) along(p *part, x []float64) ([]lti.TF, error) {
+	return a.ticked.Along(new(big.Rat).Sub(a.delay, p.from), new(big.Rat).Sub(a.delay, p.to), x)
+}
+
+// look fills in the inner instants of a part in one go.
+func (a *heldAt) look(p *part) {
+	inner := p.nodes[1 : len(p.nodes)-1]
+	x := make([]float64, len(inner))
+	for i, o := range inner {
+		x[i] = o.x
+	}
+	list, err := a.along(p, x)
+	for i, o := range inner {
+		o.seen = &instant{err: err}
+		if err == nil {
+			o.seen.g = list[i]
+		}
+	}
 }
 
 // laurent returns n terms of the series at rest.
@@ -127,15 +157,28 @@ func (s *instant) laurent(n int) lti.Laurent {
 
 // part is an interval of offsets in which the error is smooth, with its Chebyshev instants.
 type part struct {
-	from, to *big.Rat
-	nodes    []*big.Rat // from first to last, both ends included
+	from, to    *big.Rat // seconds after the tick
+	start, span dd.Float // from, to − from
+	nodes       []*offset
 }
 
-// newPart places points + 1 Chebyshev instants in an interval.
-func newPart(from, to *big.Rat, points int) part {
-	p := part{from: from, to: to, nodes: make([]*big.Rat, points+1)}
-	for i := range p.nodes {
-		p.nodes[i] = between(from, to, chebyshevPoint(i, points))
+// offset is an instant of a part: from + x·(to − from).
+type offset struct {
+	in   *part
+	x    float64
+	seen *instant
+}
+
+// seconds is the offset itself, to 1e-32 of the tick.
+func (o *offset) seconds() dd.Float { return o.in.start.Add(o.in.span.MulFloat(o.x)) }
+
+func (p *part) at(x float64) *offset { return &offset{in: p, x: x} }
+
+// newPart places points + 1 Chebyshev instants in an interval, both ends included.
+func newPart(from, to *big.Rat, points int) *part {
+	p := &part{from: from, to: to, start: dd.FromRat(from), span: dd.FromRat(new(big.Rat).Sub(to, from))}
+	for i := range points + 1 {
+		p.nodes = append(p.nodes, p.at(chebyshevPoint(i, points)))
 	}
 	return p
 }
@@ -146,7 +189,7 @@ const ladderStep = 4
 // smoothParts cuts the tick at the instant where the effort switches, and the time since the switch
 // at τ, 4τ, 16τ, … of the plant's fastest mode τ: a mode far faster than the tick has all of its transient in the first
 // of them, and each is smooth for its few points.
-func (a *heldAt) smoothParts() []part {
+func (a *heldAt) smoothParts() []*part {
 	if a.cut != nil {
 		return a.cut
 	}
@@ -172,14 +215,8 @@ func (a *heldAt) smoothParts() []part {
 		}
 		width, _ := new(big.Rat).Sub(bounds[i], bounds[i-1]).Float64()
 		p := newPart(bounds[i-1], bounds[i], pointsFor(a.fastest, width))
-		for _, theta := range p.nodes {
-			a.seen[theta] = nil
-		}
+		a.look(p)
 		a.cut = append(a.cut, p)
-	}
-	for theta := range a.seen {
-		s := a.seenAt(theta)
-		a.seen[theta] = s
 	}
 	return a.cut
 }

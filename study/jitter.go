@@ -44,7 +44,7 @@ func (a *analyzed) jitterMargin() Figure {
 		}
 	}
 	lo, hi := grid[max(at-1, 0)], grid[min(at+1, len(grid)-1)]
-	best = math.Max(best, f(goldenMax(f, lo, hi)))
+	best = math.Max(best, f(greatestAt(f, lo, hi)))
 	if a.block.period == nil {
 		best = math.Max(best, slopeAtInfinity(a.block.open))
 	}

@@ -3,7 +3,6 @@ package study
 import (
 	"errors"
 	"math"
-	"math/big"
 	"math/cmplx"
 
 	"steadytick/internal/dd"
@@ -43,12 +42,12 @@ func (a *analyzed) ripplePolynomial(in loop.Input) ripple {
 	half := a.block.open.Period.Ldexp(-1)
 	rest := dd.One.Sub(c[0])
 	at := a.offsetResponse()
-	lo, hi := extremes(a.block.held.smoothParts(), func(theta *big.Rat) float64 {
-		t, err := at(theta)
+	lo, hi := extremes(a.block.held.smoothParts(), func(o *offset) float64 {
+		t, err := at(o)
 		if err != nil {
 			return math.NaN()
 		}
-		th := dd.FromRat(theta)
+		th := o.seconds()
 		var d dd.Float
 		switch in.Kind {
 		case "step":
@@ -76,13 +75,12 @@ func (a *analyzed) rippleSine(in loop.Input, w float64) ripple {
 	size := math.Abs(in.Size)
 	atTick, cr, open := a.block.toOutput(w), a.block.sys.Cr.Freq(w), 1+a.block.open.Freq(w)
 	var worst float64
-	at := func(theta *big.Rat) float64 {
-		s := a.block.held.seenAt(theta)
+	at := func(o *offset) float64 {
+		s := a.block.held.seenAt(o)
 		if s.err != nil {
 			return math.NaN()
 		}
-		th, _ := theta.Float64()
-		turn := cmplx.Rect(1, w*th)
+		turn := cmplx.Rect(1, w*o.seconds().Float64())
 		y := cr * s.g.Freq(w) / open
 		worst = math.Max(worst, cmplx.Abs(turn-y)*size)
 		return cmplx.Abs(turn*atTick-y) * size
@@ -96,27 +94,26 @@ func (a *analyzed) rippleSine(in loop.Input, w float64) ripple {
 //	y(kT+θ) = Cr/(1 + L) · Gθ · r
 //
 // with Gθ the hold equivalent seen θ after the tick, the only part that changes.
-func (a *analyzed) offsetResponse() func(theta *big.Rat) ([]dd.Float, error) {
+func (a *analyzed) offsetResponse() func(*offset) ([3]dd.Float, error) {
 	b := a.block
 	terms := 4 + 2*(b.open.OriginPoles+b.open.OriginZeros) + b.sys.Cr.OriginPoles + b.sys.Cr.OriginZeros
 	l := b.open.Series(terms)
 	one := make([]dd.Float, terms+max(l.Start, 0)-min(l.Start, 0))
 	one[-min(l.Start, 0)] = dd.One
 	front, err := b.sys.Cr.Series(terms).Div(lti.NewLaurent(min(l.Start, 0), one).Add(l))
-	return func(theta *big.Rat) ([]dd.Float, error) {
+	return func(o *offset) (t [3]dd.Float, _ error) {
 		if err != nil {
-			return nil, err
+			return t, err
 		}
-		s := b.held.seenAt(theta)
+		s := b.held.seenAt(o)
 		if s.err != nil {
-			return nil, s.err
+			return t, s.err
 		}
-		q := front.Mul(s.laurent(terms))
-		t := make([]dd.Float, 3)
+		g := s.laurent(terms)
 		for k := range t {
 			var known bool
-			if t[k], known = q.Coefficient(k); !known {
-				return nil, errors.New("series too short")
+			if t[k], known = front.ProductCoefficient(g, k); !known {
+				return t, errors.New("series too short")
 			}
 		}
 		return t, nil

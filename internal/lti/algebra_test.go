@@ -121,3 +121,37 @@ func TestInside(t *testing.T) {
 		}
 	}
 }
+
+// Zeros kept beside a product are those of its numerator, and a double zero stays one.
+func TestFindZeros(t *testing.T) {
+	a := TF{Num: ascending(2, 3, 1), Poles: reals(-5, -6, -7)}.FindZeros() // −1, −2
+	b := TF{Num: ascending(4, 1), Poles: reals(-8), Ticks: 2}              // −4
+	f, err := a.Mul(b).Mul(b).Scale(dd.New(3)).factor()
+	if err != nil || len(f.zeros) != 4 || f.lead != dd.New(3) {
+		t.Fatalf("%v, %d zeros", err, len(f.zeros))
+	}
+	for i, want := range []float64{-1, -2, -4, -4} {
+		found := false
+		for _, z := range f.zeros {
+			found = found || z.Im.Sign() == 0 && !(z.Re.Sub(dd.New(want)).Abs().Float64() > 1e-30) // roots of quadratics to the last digits
+		}
+		if !found {
+			t.Errorf("zero %d: %g is not among %v", i, want, f.zeros)
+		}
+	}
+	if z := (TF{}).FindZeros(); z.zeros != nil {
+		t.Error("the zero function has zeros")
+	}
+}
+
+func TestProductCoefficient(t *testing.T) {
+	a, b := NewLaurent(-2, ascending(1, 2, 3, 4)), NewLaurent(1, ascending(5, 6, 7, 8, 9))
+	all := a.Mul(b)
+	for k := -3; k < 5; k++ {
+		want, known := all.Coefficient(k)
+		got, ok := a.ProductCoefficient(b, k)
+		if ok != known || got != want {
+			t.Errorf("x^%d: %v %v, want %v %v", k, got, ok, want, known)
+		}
+	}
+}

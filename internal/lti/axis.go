@@ -97,7 +97,7 @@ func (p *plane) bend(lo, hi float64) float64 {
 	for i := range p.factors {
 		c := &p.factors[i]
 		b := c.b + c.bLow
-		u := math.Max(0, math.Max(lo-b, b-hi))
+		u := max(0, lo-b, b-hi)
 		m += 1 / (u*u + c.a*c.a)
 	}
 	return m
@@ -105,11 +105,15 @@ func (p *plane) bend(lo, hi float64) float64 {
 
 // gainBend bounds |d² log|L|/dν²| on [lo, hi].
 func (p *plane) gainBend(lo, hi float64) float64 {
-	m := p.bend(lo, hi)
-	if p.e != 0 {
-		m += math.Abs(float64(p.e)) / (lo * lo)
+	return p.bend(lo, hi) + p.gainRest(lo)
+}
+
+// gainRest is the share of (jν)^e.
+func (p *plane) gainRest(lo float64) float64 {
+	if p.e == 0 {
+		return 0
 	}
-	return m
+	return math.Abs(float64(p.e)) / (lo * lo)
 }
 
 // phaseBend bounds |d² phase/dν²| on [lo, hi], which holds no undamped root in its
@@ -120,16 +124,21 @@ func (p *plane) phaseBend(lo, hi float64) float64 {
 	for i := range p.factors {
 		if c := &p.factors[i]; c.a != 0 {
 			b := c.b + c.bLow
-			u := math.Max(0, math.Max(lo-b, b-hi))
+			u := max(0, lo-b, b-hi)
 			m += 1 / (u*u + c.a*c.a)
 		}
 	}
-	if p.ticks != 0 {
-		h := p.period / 2
-		q := 1 + h*h*lo*lo
-		m += 4 * float64(p.ticks) * h * h * h * hi / (q * q)
+	return m + p.phaseRest(lo, hi)
+}
+
+// phaseRest is the share of the delay.
+func (p *plane) phaseRest(lo, hi float64) float64 {
+	if p.ticks == 0 {
+		return 0
 	}
-	return m
+	h := p.period / 2
+	q := 1 + h*h*lo*lo
+	return 4 * float64(p.ticks) * h * h * h * hi / (q * q)
 }
 
 // farGain is log|L| and its derivative with respect to μ = 1/ν.
@@ -185,19 +194,25 @@ func (p *plane) farBend(_, hi float64) float64 {
 }
 
 func (p *plane) farGainBend(lo, hi float64) float64 {
-	m := p.farBend(lo, hi)
+	return p.farBend(lo, hi) + p.farGainRest(lo)
+}
+
+func (p *plane) farGainRest(lo float64) float64 {
 	if k := p.slope(); k != 0 {
-		m += math.Abs(float64(k)) / (lo * lo)
+		return math.Abs(float64(k)) / (lo * lo)
 	}
-	return m
+	return 0
 }
 
 func (p *plane) farPhaseBend(lo, hi float64) float64 {
-	m := p.farBend(lo, hi)
-	if p.ticks != 0 {
-		c := 2 / p.period
-		q := 1 + c*c*lo*lo
-		m += 4 * float64(p.ticks) * c * c * c * hi / (q * q)
+	return p.farBend(lo, hi) + p.farPhaseRest(lo, hi)
+}
+
+func (p *plane) farPhaseRest(lo, hi float64) float64 {
+	if p.ticks == 0 {
+		return 0
 	}
-	return m
+	c := 2 / p.period
+	q := 1 + c*c*lo*lo
+	return 4 * float64(p.ticks) * c * c * c * hi / (q * q)
 }

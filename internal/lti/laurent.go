@@ -71,6 +71,20 @@ func (a Laurent) Order() (int, bool) {
 	return 0, false
 }
 
+// ProductCoefficient returns the coefficient of x^k of a·b, without the others; false when it is beyond the
+// terms that both determine. What cancels is left as it comes.
+func (a Laurent) ProductCoefficient(b Laurent, k int) (dd.Float, bool) {
+	n := k - a.Start - b.Start
+	if n >= min(len(a.C), len(b.C)) {
+		return dd.Zero, false
+	}
+	sum := dd.Zero
+	for j := 0; j <= n; j++ {
+		sum = sum.Add(a.C[j].Mul(b.C[n-j]))
+	}
+	return sum, true
+}
+
 // Mul returns a·b.
 func (a Laurent) Mul(b Laurent) Laurent {
 	n := min(len(a.C), len(b.C))

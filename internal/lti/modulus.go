@@ -2,7 +2,6 @@ package lti
 
 import (
 	"math"
-	"math/cmplx"
 )
 
 // modulus returns the least |1 + L| along the boundary and the ν where it is (+Inf:
@@ -25,6 +24,7 @@ func (p *plane) modulus(marks []float64) (least, at float64) {
 	for _, nu := range marks {
 		s.offer(nu)
 	}
+	s.descend()
 	cuts := p.corners()
 	from := 0.0
 	if p.e != 0 {
@@ -44,28 +44,31 @@ type lowest struct {
 	best, at float64
 }
 
-// side is the near or the far half of the axis: log L at a place with its
-// derivative, and bounds on the second derivative of log|L| and of the phase.
+// side is the near or the far half of the axis: L at a place with the derivative of its logarithm, and
+// bounds on the second derivatives of log|L| and of the phase.
 type side struct {
 	p   *plane
 	far bool
 }
 
-func (s side) log(t float64) (v, dv complex128) {
-	gain, phase := s.p.gain, s.p.phase
+func (s side) at(t float64) response {
 	if s.far {
-		gain, phase = s.p.farGain, s.p.farPhase
+		return s.p.farAt(t)
 	}
-	f, df := gain(t)
-	a, da := phase(t)
-	return complex(f, a), complex(df, da)
+	return s.p.nearAt(t)
 }
 
+// bends bounds both second derivatives on [lo, hi].
 func (s side) bends(lo, hi float64) (gain, phase float64) {
-	if s.far {
-		return s.p.farGainBend(lo, hi), s.p.farPhaseBend(lo, hi)
+	switch {
+	case s.far:
+		sum := s.p.farBend(lo, hi)
+		return sum + s.p.farGainRest(lo), sum + s.p.farPhaseRest(lo, hi)
+	case s.p.onAxis:
+		return s.p.gainBend(lo, hi), s.p.phaseBend(lo, hi)
 	}
-	return s.p.gainBend(lo, hi), s.p.phaseBend(lo, hi)
+	sum := s.p.bend(lo, hi)
+	return sum + s.p.gainRest(lo), sum + s.p.phaseRest(lo, hi)
 }
 
 // nu is the ν of the place t.
@@ -113,18 +116,34 @@ func (s *lowest) offerValue(nu, v float64) {
 // offer evaluates |1 + L| at ν.
 func (s *lowest) offer(nu float64) {
 	if nu > 0 && !math.IsInf(nu, 1) {
-		f, _ := s.p.gain(nu)
-		a, _ := s.p.phase(nu)
-		s.offerValue(nu, distance(complex(f, a)))
+		s.offerValue(nu, s.p.nearAt(nu).distance())
 	}
 }
 
-// distance is |1 + e^v|.
-func distance(v complex128) float64 {
-	if real(v) > 300 {
-		return math.Inf(1) // never the least
+// descend improves the best place so far by a few secant steps on the slope of |1 + L|²: the search drops more
+// intervals at once when the best value is near the least.
+func (s *lowest) descend() {
+	if !(s.at > 0) || math.IsInf(s.at, 1) {
+		return
 	}
-	return cmplx.Abs(1 + cmplx.Exp(v))
+	slope := func(t float64) float64 {
+		v := s.p.nearAt(t)
+		s.offerValue(t, v.distance())
+		return v.slope()
+	}
+	x, y := s.at, s.at*(1+0x1p-6)
+	a, b := slope(x), slope(y)
+	for range 8 {
+		z := y - b*(y-x)/(b-a)
+		if !(z > s.at/2 && z < s.at*2) {
+			return
+		}
+		x, a = y, b
+		y, b = z, slope(z)
+		if math.Abs(y-x) <= 1e-6*y { // 1e-12 in value, and the search goes on from there
+			return
+		}
+	}
 }
 
 // lowest returns where the search begins when log|L| has a straight part below end:
@@ -178,10 +197,10 @@ func (s *lowest) search(on side, lo, hi float64) {
 		s.p.evals--
 		m := middle(q.lo, q.hi)
 		h := math.Max(m-q.lo, q.hi-m)
-		v, dv := on.log(m)
+		v := on.at(m)
 		gain, phase := on.bends(q.lo, q.hi)
-		r := cmplx.Abs(dv)*h + (gain+phase)*h*h/2
-		g := math.Abs(real(dv))*h + gain*h*h/2
+		r := length(v.dlog)*h + (gain+phase)*h*h/2
+		g := math.Abs(real(v.dlog))*h + gain*h*h/2
 		switch {
 		case floor(v, r, g) >= s.best:
 		case r < 0.02 || q.depth >= maxHalvings:
@@ -192,13 +211,13 @@ func (s *lowest) search(on side, lo, hi float64) {
 	}
 }
 
-// floor bounds |1 + L| from below, given log L in the middle, the reach r of log L
+// floor bounds |1 + L| from below, given L in the middle, the reach r of log L
 // and the reach g of log|L|.
-func floor(v complex128, r, g float64) float64 {
-	f := real(v)
+func floor(v response, r, g float64) float64 {
+	f := v.log
 	bound := math.Inf(-1)
-	if f < 300 {
-		bound = distance(v) - math.Exp(f)*math.Expm1(r)
+	if f < largeLog {
+		bound = v.distance() - math.Exp(f)*math.Expm1(r)
 	}
 	switch {
 	case f > g:
@@ -214,10 +233,9 @@ func floor(v complex128, r, g float64) float64 {
 // position rule (Dahlquist and Björck; from memory).
 func (s *lowest) bottom(on side, lo, hi float64) {
 	slope := func(t float64) float64 {
-		v, dv := on.log(t)
-		l := cmplx.Exp(v)
-		s.offerValue(on.nu(t), distance(v))
-		return real(cmplx.Conj(1+l) * l * dv)
+		v := on.at(t)
+		s.offerValue(on.nu(t), v.distance())
+		return v.slope()
 	}
 	a, b := slope(lo), slope(hi)
 	if !(a < 0 && b > 0) {

@@ -29,7 +29,9 @@ type plane struct {
 
 	factors      []factor // zeros and poles but for pairs that cancel
 	logK         float64
+	leadFloat    float64 // K
 	small, large float64 // least and greatest modulus among factors, 1 without any
+	onAxis       bool    // a factor is undamped
 	hidden       bool    // a pole on the boundary is cancelled by a zero
 	evals        int     // evaluations left before a search is given up
 	exhausted    bool
@@ -59,7 +61,7 @@ func newPlane(f factored) (*plane, error) {
 	if !p.lead.IsFinite() || p.lead.Sign() == 0 {
 		return nil, ErrRange
 	}
-	p.logK = math.Log(math.Abs(p.lead.Hi))
+	p.logK, p.leadFloat = math.Log(math.Abs(p.lead.Hi)), p.lead.Float64()
 	p.collect()
 	return p, nil
 }
@@ -138,6 +140,7 @@ next:
 	p.small, p.large = math.Inf(1), 0
 	for _, f := range p.factors {
 		p.small, p.large = math.Min(p.small, f.mod), math.Max(p.large, f.mod)
+		p.onAxis = p.onAxis || f.a == 0
 	}
 	if len(p.factors) == 0 {
 		p.small, p.large = 1, 1

@@ -1,7 +1,6 @@
 package lti
 
 import (
-	"math"
 	"math/cmplx"
 )
 
@@ -40,31 +39,24 @@ func (s *Scan) At(w float64) complex128 {
 		return 0
 	}
 	nu := s.p.nu(w)
-	v := complex(s.lead, 0)
-	scale := 0
+	l := product{v: complex(s.lead, 0)}
 	for i := range s.p.factors {
 		c := &s.p.factors[i]
-		d := complex(-c.a, (nu-c.b)-c.bLow)
+		u := (nu - c.b) - c.bLow
 		if c.sign > 0 {
-			v *= d
-		} else {
-			v /= d
+			l.times(-c.a, u)
+			continue
 		}
-		if m := math.Abs(real(v)) + math.Abs(imag(v)); !(m > 1e-100 && m < 1e100) {
-			_, e := math.Frexp(m)
-			v = complex(math.Ldexp(real(v), -e), math.Ldexp(imag(v), -e))
-			scale += e
-		}
+		d := u*u + c.a*c.a
+		l.times(-c.a/d, -u/d)
 	}
 	for range s.p.e {
-		v *= complex(0, nu)
+		l.times(0, nu)
 	}
 	for range -s.p.e {
-		v /= complex(0, nu)
+		l.times(0, -1/nu)
 	}
-	if scale != 0 {
-		v = complex(math.Ldexp(real(v), scale), math.Ldexp(imag(v), scale))
-	}
+	v := l.value()
 	if s.dead != 0 {
 		v *= cmplx.Rect(1, -w*s.dead)
 	}
@@ -75,34 +67,64 @@ func (s *Scan) At(w float64) complex128 {
 }
 
 // SystemScan evaluates a feedback loop at many frequencies.
-type SystemScan struct{ cr, cm, gy, gm *Scan }
+type SystemScan struct {
+	cr, cm, gy, gm *Scan // cr is cm where the controller acts on r − m alone
+	sensor         complex128
+	static         bool // gm is sensor·gy
+}
 
 // Scan prepares s. Errors as for TF.Scan.
 func (s System) Scan() (*SystemScan, error) {
 	out := &SystemScan{}
-	for _, x := range []struct {
-		g   TF
-		dst **Scan
-	}{{s.Cr, &out.cr}, {s.Cm, &out.cm}, {s.Gy, &out.gy}, {s.Gm, &out.gm}} {
-		var err error
-		if *x.dst, err = x.g.Scan(); err != nil {
+	var err error
+	if out.cm, err = s.Cm.Scan(); err != nil {
+		return nil, err
+	}
+	if out.gy, err = s.Gy.Scan(); err != nil {
+		return nil, err
+	}
+	if out.cr = out.cm; !s.OneDegree {
+		if out.cr, err = s.Cr.Scan(); err != nil {
 			return nil, err
 		}
 	}
-	return out, nil
+	if s.StaticSensor != nil {
+		out.sensor, out.static = complex(s.StaticSensor.Float64(), 0), true
+		return out, nil
+	}
+	out.gm, err = s.Gm.Scan()
+	return out, err
+}
+
+// parts returns Cr, Gy, Gm and L at ω rad/s.
+func (s *SystemScan) parts(w float64) (cr, gy, gm, l complex128) {
+	gy = s.gy.At(w)
+	if gm = s.sensor * gy; !s.static {
+		gm = s.gm.At(w)
+	}
+	cm := s.cm.At(w)
+	if cr = cm; s.cr != s.cm {
+		cr = s.cr.At(w)
+	}
+	return cr, gy, gm, cm * gm
 }
 
 // Loop returns L at ω rad/s.
-func (s *SystemScan) Loop(w float64) complex128 { return s.cm.At(w) * s.gm.At(w) }
+func (s *SystemScan) Loop(w float64) complex128 {
+	_, _, _, l := s.parts(w)
+	return l
+}
 
 // Tracking returns the response from r to y at ω > 0.
 func (s *SystemScan) Tracking(w float64) complex128 {
-	return closed(s.cr.At(w)*s.gy.At(w), s.Loop(w))
+	cr, gy, _, l := s.parts(w)
+	return closed(cr*gy, l)
 }
 
 // Measured returns the response from r to m at ω > 0.
 func (s *SystemScan) Measured(w float64) complex128 {
-	return closed(s.cr.At(w)*s.gm.At(w), s.Loop(w))
+	cr, _, gm, l := s.parts(w)
+	return closed(cr*gm, l)
 }
 
 // closed is f/(1 + l), complex infinity where that is not finite.
