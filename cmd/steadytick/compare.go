@@ -5,7 +5,6 @@ import (
 	"encoding/json"
 	"fmt"
 	"io"
-	"path/filepath"
 
 	"github.com/urfave/cli/v2"
 
@@ -67,37 +66,11 @@ func compareAction(c *cli.Context) error {
 	if req.csv != "" && req.csvInput > len(l.Inputs) {
 		return requestf("--csv-input %d: the file has %d inputs", req.csvInput, len(l.Inputs))
 	}
-	if err := req.checkOutputs(file, l); err != nil {
+	outputs := []namedPath{{"--json", req.json}, {"--csv", req.csv}, {"--html", req.html}}
+	if err := checkOutputs(outputs, loopSources(file, l)); err != nil {
 		return err
 	}
 	return compare(c.Context, c.App.Writer, c.App.ErrWriter, l, req)
-}
-
-// checkOutputs refuses an output that would replace what the comparison reads, or another output.
-func (req compareRequest) checkOutputs(file string, l *loop.Loop) error {
-	type source struct{ path, what string }
-	taken := []source{{file, "the loop file"}}
-	for _, in := range l.Inputs {
-		if in.Kind == "file" {
-			name := in.File
-			if !filepath.IsAbs(name) {
-				name = filepath.Join(filepath.Dir(file), name)
-			}
-			taken = append(taken, source{name, "an input of the loop file"})
-		}
-	}
-	for _, out := range []struct{ flag, path string }{{"--json", req.json}, {"--csv", req.csv}, {"--html", req.html}} {
-		if out.path == "" || out.path == "-" {
-			continue
-		}
-		for _, x := range taken {
-			if sameFile(out.path, x.path) {
-				return requestf("%s %s would overwrite %s; give another name", out.flag, out.path, x.what)
-			}
-		}
-		taken = append(taken, source{out.path, "the file of " + out.flag})
-	}
-	return nil
 }
 
 // loadLoop reads a loop file and applies the overrides of the flags.

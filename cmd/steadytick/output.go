@@ -7,6 +7,7 @@ import (
 	"path/filepath"
 
 	"steadytick/internal/wholefile"
+	"steadytick/loop"
 )
 
 // writeTo writes to path, or to stdout for "-".
@@ -16,6 +17,47 @@ func writeTo(stdout io.Writer, path string, fill func(io.Writer) error) error {
 	}
 	if err := wholefile.Write(path, fill); err != nil {
 		return requestf("cannot write %s: %v", path, err)
+	}
+	return nil
+}
+
+// namedPath is a file with what it is in a message: a flag, "the loop file".
+type namedPath struct{ what, path string }
+
+// loopSources lists what a command reads for a loop file: the file itself and the inputs that it
+// names. l is nil for a file that could not be read.
+func loopSources(file string, l *loop.Loop) []namedPath {
+	out := []namedPath{{"the loop file", file}}
+	if l == nil {
+		return out
+	}
+	for _, in := range l.Inputs {
+		if in.Kind != "file" {
+			continue
+		}
+		name := in.File
+		if !filepath.IsAbs(name) {
+			name = filepath.Join(filepath.Dir(file), name)
+		}
+		out = append(out, namedPath{"an input of the loop file", name})
+	}
+	return out
+}
+
+// checkOutputs refuses an output, named by its flag, that would replace what the command reads, or another
+// output. An output "" is not asked for, "-" is stdout.
+func checkOutputs(outputs, sources []namedPath) error {
+	taken := append([]namedPath(nil), sources...)
+	for _, out := range outputs {
+		if out.path == "" || out.path == "-" {
+			continue
+		}
+		for _, x := range taken {
+			if sameFile(out.path, x.path) {
+				return requestf("%s %s would overwrite %s; give another name", out.what, out.path, x.what)
+			}
+		}
+		taken = append(taken, namedPath{"the file of " + out.what, out.path})
 	}
 	return nil
 }
