@@ -22,7 +22,8 @@ type analyzed struct {
 	tracking   []float64 // of r − y
 	loopErr    []float64 // of r − m
 	margins    lti.MarginSet
-	delay      float64 // around the loop, seconds: dead times and whole ticks
+	scan       *lti.Scan // of the open loop
+	delay      float64   // around the loop, seconds: dead times and whole ticks
 	warnings   []Warning
 }
 
@@ -42,7 +43,7 @@ func analyze(b *block) (*analyzed, error) {
 	if err != nil {
 		return nil, err
 	}
-	a.poles, a.margins = got.Poles, got.Margins
+	a.poles, a.margins, a.scan = got.Poles, got.Margins, got.Scan
 	outside := 0
 	for _, p := range b.outer {
 		if !lti.Inside(p, b.open.Period) {

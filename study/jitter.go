@@ -13,13 +13,9 @@ import (
 //	δ = 1 / max ω·|T(jω)|,   T = L/(1 + L)
 //
 // in seconds (Kao and Lincoln, Automatica 40, 2004; from memory). Sampled, ω runs to π/T; continuous, to
-// infinity. It is a sufficient condition: a loop may bear more. Not applicable where the
-// response cannot be evaluated.
+// infinity. It is a sufficient condition: a loop may bear more.
 func (a *analyzed) jitterMargin() Figure {
-	scan, err := a.block.open.Scan()
-	if err != nil {
-		return Figure{}
-	}
+	scan := a.scan
 	f := func(w float64) float64 {
 		l := scan.At(w)
 		return w * cmplx.Abs(l/(1+l))

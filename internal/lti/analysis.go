@@ -7,6 +7,7 @@ type Analysis struct {
 	Marginal bool // of the argument count
 	Stable   bool // by both verdicts
 	Margins  MarginSet
+	Scan     *Scan // of L
 }
 
 // Analyze computes poles (as ClosedPoles does with max), the argument count and the margins of L,
@@ -19,7 +20,7 @@ func Analyze(l TF, max int) (Analysis, error) {
 		a.Poles = openPoles(l)
 		a.Unstable, a.Marginal, err = hiddenOrOpen(l)
 		a.Stable = a.Unstable == 0 && !a.Marginal && a.Poles.Unstable == 0
-		a.Margins = noMargins(a.Stable)
+		a.Margins, a.Scan = noMargins(a.Stable), &Scan{}
 		return a, err
 	}
 	f, err := l.factor()
@@ -36,6 +37,7 @@ func Analyze(l TF, max int) (Analysis, error) {
 	if a.Poles, err = closedPoles(l, f, max); err != nil {
 		return a, err
 	}
+	a.Scan = p.scan()
 	gains := p.gainCrossings()
 	a.Unstable, a.Marginal = p.unstable(gains)
 	a.Stable = a.Unstable == 0 && !a.Marginal && a.Poles.Unstable == 0

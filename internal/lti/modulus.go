@@ -45,7 +45,7 @@ type lowest struct {
 }
 
 // side is the near or the far half of the axis: L at a place with the derivative of its logarithm, and
-// bounds on the second derivatives of log|L| and of the phase.
+// bounds on the second derivatives of log|L| and of log L.
 type side struct {
 	p   *plane
 	far bool
@@ -58,17 +58,14 @@ func (s side) at(t float64) response {
 	return s.p.nearAt(t)
 }
 
-// bends bounds both second derivatives on [lo, hi].
-func (s side) bends(lo, hi float64) (gain, phase float64) {
-	switch {
-	case s.far:
-		sum := s.p.farBend(lo, hi)
-		return sum + s.p.farGainRest(lo), sum + s.p.farPhaseRest(lo, hi)
-	case s.p.onAxis:
-		return s.p.gainBend(lo, hi), s.p.phaseBend(lo, hi)
+// bends bounds the second derivatives of log|L| and of log L itself on [lo, hi].
+func (s side) bends(lo, hi float64) (gain, both float64) {
+	if s.far {
+		gain = s.p.farGainBend(lo, hi)
+		return gain, gain + s.p.farPhaseRest(lo, hi)
 	}
-	sum := s.p.bend(lo, hi)
-	return sum + s.p.gainRest(lo), sum + s.p.phaseRest(lo, hi)
+	gain = s.p.gainBend(lo, hi)
+	return gain, gain + s.p.phaseRest(lo, hi)
 }
 
 // nu is the ν of the place t.
@@ -198,8 +195,8 @@ func (s *lowest) search(on side, lo, hi float64) {
 		m := middle(q.lo, q.hi)
 		h := math.Max(m-q.lo, q.hi-m)
 		v := on.at(m)
-		gain, phase := on.bends(q.lo, q.hi)
-		r := length(v.dlog)*h + (gain+phase)*h*h/2
+		gain, both := on.bends(q.lo, q.hi)
+		r := length(v.dlog)*h + both*h*h/2
 		g := math.Abs(real(v.dlog))*h + gain*h*h/2
 		switch {
 		case floor(v, r, g) >= s.best:

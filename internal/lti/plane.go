@@ -31,7 +31,6 @@ type plane struct {
 	logK         float64
 	leadFloat    float64 // K
 	small, large float64 // least and greatest modulus among factors, 1 without any
-	onAxis       bool    // a factor is undamped
 	hidden       bool    // a pole on the boundary is cancelled by a zero
 	evals        int     // evaluations left before a search is given up
 	exhausted    bool
@@ -140,7 +139,6 @@ next:
 	p.small, p.large = math.Inf(1), 0
 	for _, f := range p.factors {
 		p.small, p.large = math.Min(p.small, f.mod), math.Max(p.large, f.mod)
-		p.onAxis = p.onAxis || f.a == 0
 	}
 	if len(p.factors) == 0 {
 		p.small, p.large = 1, 1

@@ -1,6 +1,7 @@
 package lti
 
 import (
+	"math"
 	"math/cmplx"
 )
 
@@ -11,7 +12,6 @@ import (
 type Scan struct {
 	p    *plane // nil for the zero function
 	lead float64
-	T    float64 // seconds
 	dead float64 // seconds of delay
 }
 
@@ -28,9 +28,13 @@ func (g TF) Scan() (*Scan, error) {
 	if err != nil {
 		return nil, err
 	}
-	s := &Scan{p: p, lead: p.lead.Float64(), T: g.Period.Float64()}
-	s.dead = g.DeadTime.Float64() + s.T*float64(p.ticks)
-	return s, nil
+	return p.scan(), nil
+}
+
+// scan evaluates the function of a plane.
+func (p *plane) scan() *Scan {
+	T := math.Ldexp(p.period, -p.scale)
+	return &Scan{p: p, lead: p.leadFloat, dead: math.Ldexp(p.dead, -p.scale) + T*float64(p.ticks)}
 }
 
 // At returns the response at ω rad/s, delay included; complex infinity at a pole.
