@@ -50,35 +50,46 @@ func marginChange(c *Compare, cont *Column) string {
 	return fmt.Sprintf("; the phase margin falls from %s° to %s°", number(was), number(s.Value)) + culprit(c, nil, ": ")
 }
 
-// culprit names the largest entry of the delay ledger that sampling brought in. The
-// lag is taken where the phase margin is smallest, which a resonance can put elsewhere than
-// at crossover.
-func culprit(c *Compare, cont *Column, join string) string {
-	at, scale := "crossover", 1.0
+// addedLag is the lag that sampling brought into the loop, by the delay ledger, taken where the phase
+// margin is smallest, which a resonance can put elsewhere than at crossover.
+type addedLag struct {
+	worst LedgerItem // the largest entry, its degrees taken there; Item "" when none adds lag
+	total float64    // degrees, of the entries that add lag
+	at    string     // where, in words
+}
+
+// lagOf adds up the entries of the ledger that sampling brought in.
+func lagOf(c *Compare) addedLag {
+	a := addedLag{at: "crossover"}
+	scale := 1.0
 	if w := criticalRadS(c.Sampled); w > 0 && c.Sampled.CrossoverRadS.Value != w {
-		at, scale = fmt.Sprintf("%s rad/s, where the margin is smallest,", number(w)), w/c.Sampled.CrossoverRadS.Value
+		a.at, scale = fmt.Sprintf("%s rad/s, where the margin is smallest,", number(w)), w/c.Sampled.CrossoverRadS.Value
 	}
-	var worst LedgerItem
-	most, total := 0.0, 0.0
 	for _, i := range c.DelayLedger {
 		if i.Item == itemDeadTime || i.Item == itemSensor || !i.Degrees.OK || scale != 1 && i.Item == itemMap {
 			continue
 		}
-		lag := i.Degrees.Value * scale
-		total += math.Max(0, lag)
-		if lag > most {
-			worst, most = i, lag
+		i.Degrees.Value *= scale
+		a.total += math.Max(0, i.Degrees.Value)
+		if i.Degrees.Value > a.worst.Degrees.Value {
+			a.worst = i
 		}
 	}
+	return a
+}
+
+// culprit names the largest entry of the delay ledger that sampling brought in.
+func culprit(c *Compare, cont *Column, join string) string {
+	lag := lagOf(c)
+	adds := fmt.Sprintf("sampling adds %s° of lag at %s, the largest part by the %s (%s°)",
+		number(lag.total), lag.at, lag.worst.Item, number(lag.worst.Degrees.Value))
 	switch {
-	case total <= 0:
+	case lag.total <= 0:
 		return ""
 	case cont != nil && cont.PhaseMarginDeg.OK && !math.IsInf(cont.PhaseMarginDeg.Value, 0):
-		return join + fmt.Sprintf("the continuous loop has %s° of phase margin, sampling adds %s° of lag at %s, the largest part by the %s (%s°)",
-			number(cont.PhaseMarginDeg.Value), number(total), at, worst.Item, number(most))
+		return join + fmt.Sprintf("the continuous loop has %s° of phase margin, ", number(cont.PhaseMarginDeg.Value)) + adds
 	}
-	return join + fmt.Sprintf("sampling adds %s° of lag at %s, the largest part by the %s (%s°)",
-		number(total), at, worst.Item, number(most))
+	return join + adds
 }
 
 // tooSlow is culprit, or that the continuous loop crosses over where the samples see nothing.

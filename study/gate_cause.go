@@ -1,0 +1,163 @@
+package study
+
+import (
+	"fmt"
+	"math"
+
+	"steadytick/loop"
+)
+
+// GateCause is what a missed requirement points at.
+type GateCause struct {
+	// Kind is one of
+	//
+	//	design      the continuous loop misses it as well: no sample rate helps
+	//	sampling    hold, conversion, compute, waiting, or the controller map
+	//	type        integrators or gain at rest are missing
+	//	sensor      the sensor stands between y and what the firmware sees
+	//	reference   prefilter, feedforward or set-point weight
+	//	ripple      what lives between the ticks
+	//	actuator    the effort reaches its limit
+	//	processor   the compute time
+	//	unstable    the loop is unstable and meets nothing
+	Kind string `json:"kind"`
+	Text string `json:"text"`
+
+	// The largest entry of the delay ledger that sampling brought in, where lag is the cause.
+	Item    string `json:"item"` // "" where it is not
+	Seconds Figure `json:"seconds"`
+	Degrees Figure `json:"degrees"`
+}
+
+func causef(kind, format string, args ...any) *GateCause {
+	return &GateCause{Kind: kind, Text: fmt.Sprintf(format, args...)}
+}
+
+// causeOf finds the nearest cause of a missed requirement. The continuous column is the witness: what it misses
+// too is not the doing of sampling.
+func causeOf(l *loop.Loop, c *Compare, r GateRequirement) *GateCause {
+	if !c.Sampled.Stable {
+		return causef("unstable", "the loop is unstable: it meets no requirement, whatever its figures")
+	}
+	switch r.Name {
+	case "step_error", "ramp_error", "parabola_error":
+		return steadyCause(l, c, r)
+	case "load_error":
+		return loadCause(l, c, r)
+	case "position_constant", "velocity_constant", "acceleration_constant":
+		return constantCause(c, r)
+	case "ripple":
+		return rippleCause(c, r)
+	case "peak_tracking_error", "rms_tracking_error":
+		return followCause(l, c, r)
+	case "overshoot", "rise_time", "settling_time", "peak_effort":
+		return stepCause(l, c, r)
+	case "samples_per_rise":
+		return samplesCause(c, r)
+	case "processor_load":
+		return processorCause(c, r)
+	}
+	return marginCause(c, r)
+}
+
+// designMisses tells whether the continuous loop misses the requirement as well.
+func designMisses(c *Compare, r GateRequirement) bool {
+	switch {
+	case c.Continuous == nil:
+		return false
+	case !c.Continuous.Stable:
+		return true
+	}
+	return r.Continuous.OK && !meets(r.Continuous.Value, r.Op, r.Limit.Value)
+}
+
+// designCause says that the design is the cause, and what sampling adds to it.
+func designCause(c *Compare, r GateRequirement) *GateCause {
+	if !c.Continuous.Stable {
+		return causef("design", "the continuous loop is unstable: mend the design before the sample rate")
+	}
+	g := causef("design", "the continuous loop has %s and misses it too: the design, not the sampling", r.withUnit(r.Continuous))
+	before, after := r.Continuous.Value, r.Value.Value
+	worse := after < before
+	if r.Op == "<=" || r.Op == "<" {
+		worse = after > before
+	}
+	if by := math.Abs(after - before); worse && !math.IsInf(by, 0) && by > 1e-3*math.Abs(before) {
+		g.Text += fmt.Sprintf("; sampling takes another %s", r.withUnit(Fig(by)))
+	}
+	return g
+}
+
+// marginCause is for what lag takes from: margins, crossover and bandwidth.
+func marginCause(c *Compare, r GateRequirement) *GateCause {
+	if designMisses(c, r) {
+		return designCause(c, r)
+	}
+	text := ""
+	if r.Continuous.OK {
+		text = fmt.Sprintf("the continuous loop has %s; ", r.withUnit(r.Continuous))
+	}
+	if r.Name == "crossover" {
+		text += "the hold and the controller map move it, a pure delay does not; "
+	}
+	return lagCause(c, text)
+}
+
+// lagCause is the largest entry of the delay ledger that sampling brought in, after an introduction.
+func lagCause(c *Compare, before string) *GateCause {
+	lag := lagOf(c)
+	if lag.worst.Item == "" {
+		if longest := longestDelay(c); longest.Seconds > 0 && !c.Sampled.CrossoverRadS.OK {
+			return &GateCause{Kind: "sampling", Item: longest.Item, Seconds: Fig(longest.Seconds),
+				Text: before + fmt.Sprintf("the longest delay that sampling brought in is the %s (%s); there is no crossover to count its degrees at", longest.Item, timeText(longest.Seconds))}
+		}
+		return causef("sampling", "%s", before+"hold and controller map change the loop's response, though they add no lag at crossover")
+	}
+	w := lag.worst
+	return &GateCause{Kind: "sampling", Item: w.Item, Seconds: Fig(w.Seconds), Degrees: w.Degrees,
+		Text: before + fmt.Sprintf("sampling adds %s° of lag at %s, the largest part by the %s (%s, %s°)",
+			number(lag.total), lag.at, w.Item, timeText(w.Seconds), number(w.Degrees.Value))}
+}
+
+// longestDelay is the longest entry of the ledger that sampling brought in.
+func longestDelay(c *Compare) LedgerItem {
+	var worst LedgerItem
+	for _, i := range c.DelayLedger {
+		if i.Item != itemDeadTime && i.Item != itemSensor && i.Item != itemMap && i.Seconds > worst.Seconds {
+			worst = i
+		}
+	}
+	return worst
+}
+
+// stableCauses are the warnings that explain instability by themselves, nearest first.
+var stableCauses = []struct{ code, kind string }{
+	{"hidden_unstable_mode", "design"},
+	{"unstable_outside_loop", "reference"},
+	{"map_moved_pole", "sampling"},
+	{"verdicts_disagree", "sampling"},
+}
+
+// stableCause says why the sampled loop is unstable.
+func stableCause(c *Compare) *GateCause {
+	if c.Continuous != nil && !c.Continuous.Stable {
+		return causef("design", "the continuous loop is unstable too: mend the design before the sample rate")
+	}
+	for _, x := range stableCauses {
+		for _, w := range c.Warnings {
+			if w.Code == x.code {
+				return causef(x.kind, "%s", w.Text)
+			}
+		}
+	}
+	cont := c.Continuous
+	if half := math.Pi / c.PeriodS; cont != nil && cont.CrossoverRadS.OK && cont.CrossoverRadS.Value >= half {
+		return causef("sampling", "the continuous loop crosses over at %s rad/s, above half the sample rate (%s rad/s)",
+			number(cont.CrossoverRadS.Value), number(half))
+	}
+	text := ""
+	if cont != nil && cont.PhaseMarginDeg.OK {
+		text = fmt.Sprintf("the continuous loop is stable with %s° of phase margin; ", number(cont.PhaseMarginDeg.Value))
+	}
+	return lagCause(c, text)
+}
