@@ -23,14 +23,13 @@ type GateAgainst struct {
 
 // Verdicts on a metric.
 const (
-	ChangeSame     = "same"         // equal to 1e-9
-	ChangeWithin   = "within"       // worse, but within the tolerance
-	ChangeWorse    = "worse"        // worse by more than the tolerance, infinite now, or gone
-	ChangeBetter   = "better"       // better
-	ChangeNeutral  = "changed"      // of a metric that has no better and worse
-	ChangeNew      = "new"          // there was no figure before
-	ChangeApart    = "not compared" // the two figures answer different questions; see the note
-	ChangeUnstable = "unstable"     // the loop before was unstable: its figures are no measure
+	ChangeSame    = "same"         // equal to 1e-9
+	ChangeWithin  = "within"       // worse, but within the tolerance
+	ChangeWorse   = "worse"        // worse by more than the tolerance, infinite now, or gone
+	ChangeBetter  = "better"       // better
+	ChangeNeutral = "changed"      // of a metric that has no better and worse
+	ChangeNew     = "new"          // there was no figure before
+	ChangeApart   = "not compared" // the two figures answer different questions; see the note
 )
 
 // MetricChange is one metric of both revisions, in the units of the revision that is checked.
@@ -45,6 +44,9 @@ type MetricChange struct {
 	TolerancePercent float64 `json:"tolerance_percent"`
 	Verdict          string  `json:"verdict"`
 	Note             string  `json:"note"`
+
+	// Shown is a unit that suits the figures, for readers.
+	Shown WrittenUnit `json:"-"`
 }
 
 // RunGateAgainst compares a checked loop with the revision before it. The error says that the two cannot be
@@ -136,13 +138,14 @@ func (r revisions) change(m loop.Metric, tolerance Tolerance) (MetricChange, boo
 			c.ChangePercent = Fig(100 * d / math.Abs(c.Before.Value))
 		}
 	}
+	c.Shown = suitedUnit(c.Unit, shownSize(c))
 	apart := r.apart(m.Name)
 	switch {
 	case !r.was.Sampled.Stable:
-		c.Verdict, c.Note = ChangeUnstable, "the loop before is unstable, so its figures are no measure"
+		c.Verdict, c.Note = ChangeApart, "the loop before is unstable, so its figures are no measure"
 	case !c.Before.OK:
 		c.Verdict, c.Note = ChangeNew, "no figure before"
-	case !c.After.OK && c.WorseWhen != Neutral:
+	case !c.After.OK && c.WorseWhen != Neutral && !c.worst():
 		c.Verdict, c.Note = ChangeWorse, "no figure any more: "+why
 	case !c.After.OK:
 		c.Verdict, c.Note = ChangeNeutral, "no figure any more: "+why
@@ -152,6 +155,22 @@ func (r revisions) change(m loop.Metric, tolerance Tolerance) (MetricChange, boo
 		c.Verdict = judgeChange(c, r.floor(m.Name))
 	}
 	return c, true
+}
+
+// worst tells whether the figure before is one that cannot get worse: an infinite error.
+func (c MetricChange) worst() bool {
+	return c.WorseWhen == WorseUp && math.IsInf(c.Before.Value, 1) || c.WorseWhen == WorseDown && math.IsInf(c.Before.Value, -1)
+}
+
+// shownSize is the figure before, or the one after where there was none or no size.
+func shownSize(c MetricChange) float64 {
+	if c.Before.OK && c.Before.Value != 0 && !math.IsInf(c.Before.Value, 0) {
+		return c.Before.Value
+	}
+	if c.After.OK && !math.IsInf(c.After.Value, 0) {
+		return c.After.Value
+	}
+	return 0
 }
 
 // figureOf is a metric that a requirement could be judged by.

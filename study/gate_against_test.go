@@ -82,11 +82,15 @@ func TestAgainstStability(t *testing.T) {
 	if r := changeOf(t, a, "ramp_error"); r.Verdict != ChangeWorse || !strings.Contains(r.Note, "the loop is unstable") {
 		t.Errorf("a figure that went with stability: %+v", r)
 	}
+	grows := strings.NewReplacer("{ramp: 1}", "{parabola: 1}")
+	if p := changeOf(t, against(t, grows.Replace(at("0.1 s")), grows.Replace(at("0.21 s"))), "parabola_error"); p.Verdict != ChangeNeutral {
+		t.Errorf("an error without bound got worse: %+v", p)
+	}
 	a = against(t, at("0.21 s"), at("0.1 s"))
 	if len(a.Worse) > 0 {
 		t.Errorf("worse than an unstable loop: %v", a.Worse)
 	}
-	if r := changeOf(t, a, "phase_margin"); r.Verdict != ChangeUnstable {
+	if r := changeOf(t, a, "phase_margin"); r.Verdict != ChangeApart || !strings.Contains(r.Note, "the loop before is unstable") {
 		t.Errorf("%+v", r)
 	}
 }

@@ -21,9 +21,9 @@ const (
 	Neutral Worse = ""
 )
 
-// worseWhen is the direction in which each metric gets worse. Faster is not better without a reason, so
-// crossover and bandwidth are neutral; samples_per_rise is, because it moves against rise_time at one rate. An op in
-// the file's requirements says otherwise.
+// worseWhen is the direction in which each metric gets worse. Faster is not better without a reason: a loop that
+// loses damping rises sooner. So crossover, bandwidth, rise_time and samples_per_rise are neutral, unless an op in the
+// file's requirements says otherwise.
 var worseWhen = map[string]Worse{
 	"step_error":            WorseUp,
 	"ramp_error":            WorseUp,
@@ -40,7 +40,7 @@ var worseWhen = map[string]Worse{
 	"crossover":             Neutral,
 	"bandwidth":             Neutral,
 	"overshoot":             WorseUp,
-	"rise_time":             WorseUp,
+	"rise_time":             Neutral,
 	"settling_time":         WorseUp,
 	"peak_effort":           WorseUp,
 	"ripple":                WorseUp,

@@ -82,15 +82,29 @@ func (r GateRequirement) withUnit(f Figure) string {
 	return number(v.Value) + " " + r.Written.Name
 }
 
-// timeText is a time in a sentence, with a unit that suits it.
-func timeText(t float64) string {
-	for _, u := range []struct {
-		size float64
-		name string
-	}{{1, "s"}, {1e-3, "ms"}, {1e-6, "µs"}, {1e-9, "ns"}} {
-		if math.Abs(t) >= u.size {
-			return number(t/u.size) + " " + u.name
+// timeSteps are the units of time that suit a size, longest first.
+var timeSteps = []WrittenUnit{{"s", 1}, {"ms", 1e-3}, {"µs", 1e-6}, {"ns", 1e-9}}
+
+// suitedTime is the unit that suits a time of t seconds.
+func suitedTime(t float64) WrittenUnit {
+	for _, u := range timeSteps {
+		if math.Abs(t) >= u.Size {
+			return u
 		}
 	}
-	return number(t) + " s"
+	return timeSteps[0]
+}
+
+// suitedUnit is a unit for figures in a base unit of which the largest has size v: only times have others.
+func suitedUnit(base string, v float64) WrittenUnit {
+	if base != "s" {
+		return WrittenUnit{Name: base}
+	}
+	return suitedTime(v)
+}
+
+// timeText is a time in a sentence, with a unit that suits it.
+func timeText(t float64) string {
+	u := suitedTime(t)
+	return number(t/u.Size) + " " + u.Name
 }

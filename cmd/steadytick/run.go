@@ -37,12 +37,12 @@ func run(ctx context.Context, stdout, stderr io.Writer, args []string) error {
 		DisableSliceFlagSeparator: true,
 		HideHelpCommand:           true,
 		Suggest:                   true,
-		Commands:                  []*cli.Command{compareCommand(), newCommand()},
+		Commands:                  []*cli.Command{compareCommand(), gateCommand(), newCommand()},
 		OnUsageError:              usageError,
 		CommandNotFound:           nil,
 		Action: func(c *cli.Context) error {
 			if c.Args().Present() {
-				return requestf("unknown command %q; the commands are compare and new (steadytick --help)", c.Args().First())
+				return requestf("unknown command %q; the commands are %s (steadytick --help)", c.Args().First(), commandNames(c.App.Commands))
 			}
 			return cli.ShowAppHelp(c)
 		},
@@ -56,6 +56,16 @@ func run(ctx context.Context, stdout, stderr io.Writer, args []string) error {
 		return err
 	}
 	return app.RunContext(ctx, args)
+}
+
+// commandNames lists commands: "compare, gate and new".
+func commandNames(list []*cli.Command) string {
+	names := make([]string, len(list))
+	for i, c := range list {
+		names[i] = c.Name
+	}
+	last := len(names) - 1
+	return strings.Join(names[:last], ", ") + " and " + names[last]
 }
 
 func usageError(c *cli.Context, err error, _ bool) error {

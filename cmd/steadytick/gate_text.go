@@ -1,0 +1,287 @@
+package main
+
+import (
+	"fmt"
+	"io"
+	"math"
+	"strings"
+	"unicode/utf8"
+
+	"steadytick/study"
+)
+
+// gateGap stands before each column of a gate: verdict, name, value, limit, slack and its share; or before, now, unit, change
+// and its share.
+var gateGap = []int{2, 1, 1, 2, 1, 1, 1}
+
+// gateLine is one requirement or metric: a word for the verdict, then its figures. Under it stands why.
+type gateLine struct {
+	cells []string // verdict, name, then figures
+	why   []string
+}
+
+// printGate prints the files, each with one line a requirement, then the comparison, then one line on the whole.
+func printGate(w io.Writer, result *study.Gate) error {
+	t := &table{w: w}
+	var all []gateLine
+	for _, g := range result.Loops {
+		all = append(all, requirementLines(g)...)
+	}
+	widths := columnWidths(all, 6, limitColumn)
+	for i, g := range result.Loops {
+		if i > 0 {
+			t.line("")
+		}
+		printGateLoop(t, g, widths)
+	}
+	if result.Against != nil {
+		t.line("")
+		printAgainst(t, result)
+	}
+	t.line("")
+	t.line("%s", gateSummary(result))
+	t.line("Figures of a linear model: no proof of safety.")
+	return t.err
+}
+
+// printGateLoop prints one file.
+func printGateLoop(t *table, g *study.GateLoop, widths []int) {
+	if len(g.Problems) > 0 {
+		t.line("%s: NOT CHECKED, %s in the file (see stderr)", g.File, count(len(g.Problems), "problem"))
+		return
+	}
+	missed := 0
+	for _, r := range g.Requirements {
+		if !r.Passed() {
+			missed++
+		}
+	}
+	switch {
+	case missed > 0:
+		t.line("%s: %d of %d NOT MET", g.File, missed, len(g.Requirements))
+	case len(g.Requirements) == 1:
+		t.line("%s: met", g.File)
+	default:
+		t.line("%s: all %d met", g.File, len(g.Requirements))
+	}
+	t.line("  %s, a tick of %s", g.Loop, seconds(g.PeriodS.Value))
+	head := gateLine{cells: []string{"", "", "value", "limit", "slack", ""}}
+	if len(g.Requirements) > 1 {
+		printGateLine(t, head, widths, limitColumn)
+	}
+	for _, l := range requirementLines(g) {
+		printGateLine(t, l, widths, limitColumn)
+	}
+	if g.Note != "" && t.err == nil {
+		printWrapped(t.w, "  note: ", g.Note)
+	}
+}
+
+// requirementLines turns requirements into lines, figures in the unit in which the file writes the limit.
+func requirementLines(g *study.GateLoop) []gateLine {
+	var out []gateLine
+	for _, r := range g.Requirements {
+		l := gateLine{cells: []string{word(r), r.Name, "", "", "", ""}}
+		if r.Name == "stable" {
+			l.cells[2] = yesNo(r.Passed())
+		} else {
+			l.cells[2] = show(r.Written.In(r.Value))
+			l.cells[3] = strings.TrimRight(r.Op+" "+show(r.Written.In(r.Limit))+" "+cut(r.Written.Name, 12), " ")
+			l.cells[4], l.cells[5] = short(r.Written.In(r.Slack), 4), percent(r.SlackPercent)
+		}
+		if r.NotJudged != "" {
+			l.why = append(l.why, r.NotJudged)
+		}
+		if r.Cause != nil && r.Cause.Kind != "unstable" { // the line of "stable" has said it
+			l.why = append(l.why, r.Cause.Kind+": "+r.Cause.Text)
+		}
+		out = append(out, l)
+	}
+	return out
+}
+
+func word(r study.GateRequirement) string {
+	switch {
+	case r.Met == nil:
+		return "NOT JUDGED"
+	case !*r.Met:
+		return "NOT MET"
+	}
+	return "met"
+}
+
+func yesNo(v bool) string {
+	if v {
+		return "yes"
+	}
+	return "NO"
+}
+
+// short is a difference, to as many digits as help.
+func short(f study.Figure, digits int) string {
+	if !f.OK || math.IsInf(f.Value, 0) {
+		return show(f)
+	}
+	return fmt.Sprintf("%.*g", digits, f.Value)
+}
+
+// percent is a share to three digits, below one per cent to two, as long as there are no more before the point.
+func percent(f study.Figure) string {
+	switch {
+	case !f.OK:
+		return ""
+	case math.IsInf(f.Value, 0):
+		return show(f)
+	case f.Value >= 999.5:
+		return "> 999 %"
+	case f.Value <= -999.5:
+		return "< -999 %"
+	case f.Value != 0 && math.Abs(f.Value) < 0.001:
+		return "~ 0 %"
+	}
+	if math.Abs(f.Value) < 1 {
+		return fmt.Sprintf("%.2g %%", f.Value)
+	}
+	return fmt.Sprintf("%.3g %%", f.Value)
+}
+
+// columnWidths are the widths of n columns; name and text, which ends with a unit, are cut to what a terminal has left.
+func columnWidths(lines []gateLine, n, text int) []int {
+	const leastName, leastText = 10, 5 // characters that still tell what it is
+	widths := make([]int, n)
+	over := -width
+	for i := range widths {
+		for _, l := range lines {
+			widths[i] = max(widths[i], utf8.RuneCountInString(l.cells[i]))
+		}
+		over += widths[i] + gateGap[i]
+	}
+	for _, c := range [2]struct{ column, least int }{{1, leastName}, {text, leastText}} {
+		take := min(max(over, 0), max(widths[c.column]-c.least, 0))
+		widths[c.column] -= take
+		over -= take
+	}
+	return widths
+}
+
+// limitColumn and unitColumn hold text, not figures.
+const limitColumn, unitColumn = 3, 4
+
+// printGateLine prints verdict, name and the column of text to the left, figures to the right.
+func printGateLine(t *table, l gateLine, widths []int, text int) {
+	var b strings.Builder
+	for i, c := range l.cells {
+		b.WriteString(strings.Repeat(" ", gateGap[i]))
+		if i < 2 || i == text {
+			b.WriteString(padRight(cut(c, widths[i]), widths[i]))
+		} else {
+			b.WriteString(padLeft(c, widths[i]))
+		}
+	}
+	t.line("%s", b.String())
+	for _, why := range l.why {
+		if t.err == nil {
+			printIndented(t.w, "      ", why)
+		}
+	}
+}
+
+// printIndented prints a text wrapped, every line after the same indent.
+func printIndented(w io.Writer, indent, text string) {
+	line := ""
+	for _, word := range strings.Fields(text) {
+		if line != "" && utf8.RuneCountInString(indent+line)+1+utf8.RuneCountInString(word) > width {
+			fmt.Fprintln(w, indent+line)
+			line = ""
+		}
+		line = strings.TrimLeft(line+" "+word, " ")
+	}
+	fmt.Fprintln(w, indent+line)
+}
+
+// gateSummary is the verdict on the whole run.
+func gateSummary(result *study.Gate) string {
+	met, broken, missed := 0, 0, 0
+	for _, g := range result.Loops {
+		switch {
+		case len(g.Problems) > 0:
+			broken++
+		case g.Met:
+			met++
+		}
+		for _, r := range g.Requirements {
+			if !r.Passed() {
+				missed++
+			}
+		}
+	}
+	text := map[bool]string{true: "MET: ", false: "NOT MET: "}[result.Met]
+	if n := len(result.Loops); n > 1 {
+		text += fmt.Sprintf("%d of %d files met", met, n)
+		if not := n - met - broken; not > 0 {
+			text += fmt.Sprintf(", %d not met", not)
+		}
+		if broken > 0 {
+			text += fmt.Sprintf(", %d not checked", broken)
+		}
+		return text + "."
+	}
+	switch {
+	case broken > 0:
+		text += "the file was not checked"
+	case missed == 0:
+		text += "every requirement is met"
+	default:
+		text += fmt.Sprintf("%d of %s not met", missed, count(len(result.Loops[0].Requirements), "requirement"))
+	}
+	if a := result.Against; a != nil && len(a.Worse) == 0 {
+		text += ", nothing got worse"
+	} else if a != nil {
+		text += map[bool]string{true: ", but ", false: ", and "}[missed == 0] + count(len(a.Worse), "figure") + " got worse"
+	}
+	return text + "."
+}
+
+// count is a number with its noun.
+func count(n int, noun string) string {
+	if n == 1 {
+		return "1 " + noun
+	}
+	return fmt.Sprintf("%d %ss", n, noun)
+}
+
+// shownProblems is how many problems of a file are printed before they are only counted: more than a screen of
+// them is no help.
+const shownProblems = 20
+
+// printGateNotes prints problems and warnings, each with its file.
+func printGateNotes(stderr io.Writer, result *study.Gate) {
+	for _, g := range result.Loops {
+		for i, p := range g.Problems {
+			if i == shownProblems {
+				fmt.Fprintf(stderr, "%s: and %d more\n", g.File, len(g.Problems)-shownProblems)
+				break
+			}
+			fmt.Fprintln(stderr, p)
+		}
+		printGateWarnings(stderr, g.File, g.Warnings)
+	}
+	if result.Against != nil {
+		printGateWarnings(stderr, result.Against.File, result.Against.Warnings)
+	}
+}
+
+// explaining are the warnings that explain figures of compare; they put no verdict of a gate in doubt and
+// stand in its JSON and JUnit files only.
+var explaining = map[string]bool{
+	"sensor_dynamics": true, "reference_path": true, "no_continuous_column": true, "no_figure": true,
+	"unstable": true, "effort_saturates": true, "requirement_not_judged": true,
+}
+
+func printGateWarnings(stderr io.Writer, file string, list []study.Warning) {
+	for _, x := range list {
+		if !explaining[x.Code] {
+			printWrapped(stderr, "warning: ", file+": "+x.Text)
+		}
+	}
+}
