@@ -206,6 +206,33 @@ the first of it.
 A file has the header t_s,r and two rows or more (at most a million), rising times from 0 on
 in seconds.
 
+# Timer, processor, rate
+
+	timer: {clock: 72 MHz, prescaler_bits: 16, reload_bits: 16, counting: up, postscale: 1}
+
+The hardware timer that makes the ticks. Its rates are clock/((prescaler + 1)·(reload + 1)·postscale), and with
+counting: center, up and down again, clock/(2·(prescaler + 1)·reload·postscale). clock and reload_bits (1 to 32) must be
+there; prescaler_bits (0 to 32) is 0, counting up and postscale (1 to 65536) 1 when left out.
+
+	processor: {cost: 55 us, budget: 40 %}
+	processor: {cost_cycles: 3960, clock: 72 MHz, budget: 40 %}
+
+cost is the processor time that a tick takes, interrupt entry and all; without one timing.compute stands for it. budget
+is the part of the tick that the loop may use, 100 % when left out.
+
+	rate: {from: 50 Hz, to: 50 kHz}
+
+The range of rates to search; each end is found by the program when it is left out. The loop's own rate is in timing.
+
+# Disturbances
+
+At most 20, each a mapping of one key:
+
+  - sine: {name: gear mesh, at: sensor, size: 0.002, frequency: 310 Hz}
+
+A vibration or ripple of known frequency. at is input (of the plant), output (when left out) or sensor; name and size may be
+left out. It tells where the frequency lands among the samples; runs do not contain it.
+
 # Requirements
 
 Lines "name op number unit" with op one of <= >= < >. Names and units:

@@ -28,8 +28,9 @@ type Loop struct {
 	Search         *RateRange // the rate section, nil: not given
 	Disturbances   []Disturbance
 
-	open    func(path string) ([]byte, error) // as given to Parse, for WithRate and WithMap
-	options Options
+	open     func(path string) ([]byte, error) // as given to Parse, for WithRate and WithMap
+	options  Options
+	periodic bool // more than Timing.Period depends on the period
 }
 
 // Symbol is a named number of the symbols section.

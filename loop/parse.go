@@ -92,15 +92,8 @@ func ParseWith(file string, src []byte, open func(path string) ([]byte, error), 
 	if len(r.problems) > 0 {
 		return nil, r.problems.sorted(file)
 	}
-	l.File, l.Source, l.open, l.options = file, append([]byte(nil), src...), open, o
+	l.File, l.Source, l.open, l.options, l.periodic = file, append([]byte(nil), src...), open, o, r.periodic
 	return l, nil
-}
-
-// WithRate reads the same file again for another tick of period seconds.
-func (l *Loop) WithRate(period *big.Rat) (*Loop, Problems) {
-	o := l.options
-	o.Period = new(big.Rat).Set(period)
-	return ParseWith(l.File, l.Source, l.open, o)
 }
 
 // WithMap reads the same file again with another map for the controller, written as
@@ -114,7 +107,7 @@ func (l *Loop) WithMap(method string) (*Loop, Problems) {
 // loop reads the whole file. Sections that others need come first.
 func (r *reader) loop(root *node) *Loop {
 	s, broken := r.section(root, "the loop file", "loop", "output", "effort", "symbols", "plant", "controller",
-		"sensor", "actuator", "timing", "inputs", "requirements", "settling_band")
+		"sensor", "actuator", "timing", "inputs", "requirements", "settling_band", "timer", "processor", "rate", "disturbances")
 	s.at = place{1, 1}
 	if broken {
 		return nil
@@ -137,6 +130,10 @@ func (r *reader) loop(root *node) *Loop {
 	r.inputs(l, s.get("inputs"))
 	r.requirements(l, s.get("requirements"))
 	r.settlingBand(l, s.get("settling_band"))
+	r.timer(l, s.get("timer"))
+	r.processor(l, s.get("processor"))
+	r.search(l, s.get("rate"))
+	r.disturbances(l, s.get("disturbances"))
 	if len(r.problems) == 0 {
 		r.check(l, s)
 	}

@@ -121,6 +121,7 @@ func (r *reader) pidStored(f *pidForm, s *section, timed bool) {
 	if !timed {
 		return // the missing period is reported
 	}
+	r.periodic = true
 	if f.ki != nil {
 		f.ki = new(big.Rat).Quo(f.ki, r.period)
 	}

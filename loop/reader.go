@@ -23,6 +23,7 @@ type reader struct {
 	zUsed      place    // where the first z model stands, for messages about rates
 	timingAt   place    // where the rate stands
 	filePeriod *big.Rat // seconds as the file says, nil when that is wrong
+	periodic   bool     // a number of the controller was made with the period
 	period     *big.Rat // seconds in force: the option's or the file's, nil when wrong
 }
 
