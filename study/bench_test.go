@@ -2,6 +2,7 @@ package study
 
 import (
 	"context"
+	"math"
 	"testing"
 
 	"steadytick/discretize"
@@ -64,42 +65,42 @@ func BenchmarkCompare(b *testing.B) {
 	yardstick.Report(b)
 }
 
-// One rate, every map: what a sweep over rates repeats.
-func BenchmarkRateAllMaps(b *testing.B) {
+// The sweep of rate: 1000 rates under seven maps, every linear figure, on all cores.
+func BenchmarkSweep(b *testing.B) {
 	l := parsed(b, orderSix)
-	h, err := prepare(l)
+	s, maps := sevenMaps(b, l)
+	grid := make([]float64, 1000)
+	for i := range grid {
+		grid[i] = 100 * math.Pow(200, float64(i)/999) // 100 Hz to 20 kHz
+	}
+	for b.Loop() {
+		scans, err := s.scanRates(context.Background(), maps, grid, nil, func(int) {})
+		if err != nil {
+			b.Fatal(err)
+		}
+		if n := len(scans) * len(scans[0].points); n != 7000 {
+			b.Fatalf("%d analyses", n)
+		}
+	}
+	yardstick.Report(b)
+}
+
+// sevenMaps is the loop under every map.
+func sevenMaps(b testing.TB, l *loop.Loop) (*sweeper, []mapped) {
+	s, err := newSweeper(l, nil)
 	if err != nil {
 		b.Fatal(err)
 	}
-	var loops []*loop.Loop
-	for _, m := range append(discretize.Methods(), "prewarped at 8 Hz") {
+	var maps []mapped
+	for _, m := range discretize.Methods() {
 		if m == "prewarped" {
-			continue
+			m = "prewarped at 8 Hz"
 		}
 		other, problems := l.WithMap(m)
 		if len(problems) > 0 {
 			b.Fatal(problems)
 		}
-		loops = append(loops, other)
+		maps = append(maps, mapped{m, other})
 	}
-	for b.Loop() {
-		a, err := h.at(l.Timing.Period, l.Timing.LoopDelay())
-		if err != nil {
-			b.Fatal(err)
-		}
-		for _, o := range loops {
-			blk, err := a.assemble(o)
-			if err != nil {
-				b.Fatal(err)
-			}
-			x, err := analyze(blk)
-			if err != nil {
-				b.Fatal(err)
-			}
-			if _, err := x.column(o); err != nil {
-				b.Fatal(err)
-			}
-		}
-	}
-	yardstick.Report(b)
+	return s, maps
 }

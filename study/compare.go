@@ -58,7 +58,7 @@ func RunCompare(ctx context.Context, l *loop.Loop, o Options) (*Compare, error) 
 	if o.Curves {
 		c.addFrequencyAndPoles(cont, sampled)
 		o.progress("rates", 1, 1)
-		if err := c.Curves.addRates(ctx, l, sampled.block.held.held); err != nil {
+		if err := c.Curves.addRates(ctx, l, cont); err != nil {
 			return nil, err
 		}
 	}

@@ -4,7 +4,6 @@ import (
 	"context"
 	"fmt"
 	"math"
-	"math/big"
 
 	"steadytick/loop"
 )
@@ -14,24 +13,29 @@ const (
 	sweepPoints  = 37  // odd, so that the loop's own rate is one of them
 )
 
-// sweepPoint is the sampled loop at one rate; col is nil where it cannot run.
-type sweepPoint struct {
-	hz  float64
-	col *Compare
-}
-
 // addRates fills margins and errors over the sample rate and the rate window. A
 // controller given in z is valid at one rate only and has none of these.
-func (v *Curves) addRates(ctx context.Context, l *loop.Loop, h held) error {
-	own, _ := new(big.Rat).Inv(l.Timing.Period).Float64()
+func (v *Curves) addRates(ctx context.Context, l *loop.Loop, cont *analyzed) error {
+	own := 1 / seconds(l.Timing.Period)
 	v.RateHz = own
 	if l.Controller.Digital {
 		return nil
 	}
-	points, err := sweep(ctx, l, h)
+	s, err := newSweeper(l, cont)
 	if err != nil {
 		return err
 	}
+	grid := make([]float64, sweepPoints)
+	for i := range grid {
+		x := 2*float64(i)/float64(sweepPoints-1) - 1
+		grid[i] = own * math.Pow(10, x*sweepDecades)
+	}
+	list, _ := constraints(l)
+	scans, err := s.scanRates(ctx, []mapped{{mapName(l), l}}, grid, list, func(int) {})
+	if err != nil {
+		return err
+	}
+	points := scans[0].points
 	phase := Curve{Name: "phase margin"}
 	errs := map[int]*Curve{}
 	var order []int
@@ -43,10 +47,10 @@ func (v *Curves) addRates(ctx context.Context, l *loop.Loop, h held) error {
 		}
 	}
 	for _, p := range points {
-		if p.col == nil || !p.col.Sampled.Stable {
+		if !p.stable() {
 			continue
 		}
-		s := p.col.Sampled
+		s := p.c.Sampled
 		if f := s.PhaseMarginDeg; f.OK && !math.IsInf(f.Value, 0) {
 			phase.X, phase.Y = append(phase.X, p.hz), append(phase.Y, f.Value)
 		}
@@ -66,63 +70,23 @@ func (v *Curves) addRates(ctx context.Context, l *loop.Loop, h held) error {
 	return nil
 }
 
-// sweep analyses the loop at rates spaced evenly in logarithm.
-func sweep(ctx context.Context, l *loop.Loop, h held) ([]sweepPoint, error) {
-	own, _ := l.Timing.Period.Float64()
-	points := make([]sweepPoint, sweepPoints)
-	err := parallel(sweepPoints, func(i int) error {
-		if err := ctx.Err(); err != nil {
-			return err
-		}
-		x := 2*float64(i)/float64(sweepPoints-1) - 1
-		period := l.Timing.Period
-		if x != 0 {
-			period = new(big.Rat).SetFloat64(own * math.Pow(10, -x*sweepDecades))
-		}
-		hz, _ := new(big.Rat).Inv(period).Float64()
-		points[i] = sweepPoint{hz: hz, col: atRate(l, h, period)}
-		return nil
-	})
-	return points, err
-}
-
-// atRate is the sampled loop at another period, without simulation; nil where the
-// loop cannot run there.
-func atRate(l *loop.Loop, h held, period *big.Rat) *Compare {
-	other, problems := l.WithRate(period)
-	if problems != nil {
-		return nil
-	}
-	b, err := assembleSampled(other, h, other.Timing.Period, other.Timing.LoopDelay())
-	if err != nil {
-		return nil
-	}
-	a, err := analyze(b)
-	if err != nil {
-		return nil
-	}
-	T, _ := period.Float64()
-	c := &Compare{PeriodS: T, Units: Units{l.Output, l.Effort}}
-	if c.Sampled, err = a.column(other); err != nil {
-		return nil
-	}
-	judge(other, c)
-	return c
-}
-
 // windows turns the points into intervals: for "stable" and for each requirement that can be
-// judged without simulation, the rates between the first and last neighbouring points that meet it.
-func windows(l *loop.Loop, points []sweepPoint) []RateBar {
-	bars := []RateBar{{Requirement: "stable", Intervals: intervals(points, func(c *Compare) bool { return c.Sampled.Stable })}}
-	for i, r := range l.Requirements {
-		judged := false
-		meets := func(c *Compare) bool {
-			q := c.Requirements[i]
-			judged = judged || (q.Met != nil && c.Sampled.Stable)
-			return q.Met != nil && *q.Met
+// judged without simulation, the rates between the first and last neighbouring points that meet it. The command rate finds
+// the bounds themselves.
+func windows(l *loop.Loop, points []*ratePoint) []RateBar {
+	bars := []RateBar{{Requirement: "stable", Intervals: intervals(points, (*ratePoint).stable)}}
+	for _, r := range l.Requirements {
+		c := constraintOf(l, r)
+		if !judged(r.Name) || c.needs.any() {
+			continue
 		}
-		in := intervals(points, meets)
-		if judged {
+		known := false
+		in := intervals(points, func(p *ratePoint) bool {
+			s := c.slack(p)
+			known = known || p.stable() && !math.IsNaN(s)
+			return met(s)
+		})
+		if known {
 			bars = append(bars, RateBar{Requirement: fmt.Sprintf("%s %s", r.Name, requirementText(r)), Intervals: in})
 		}
 	}
@@ -131,11 +95,11 @@ func windows(l *loop.Loop, points []sweepPoint) []RateBar {
 
 func requirementText(r loop.Requirement) string { return fmt.Sprintf("%s %.4g", r.Op, r.Limit) }
 
-func intervals(points []sweepPoint, meets func(*Compare) bool) [][2]float64 {
+func intervals(points []*ratePoint, meets func(*ratePoint) bool) [][2]float64 {
 	var out [][2]float64
 	open := false
 	for _, p := range points {
-		ok := p.col != nil && meets(p.col)
+		ok := meets(p)
 		switch {
 		case ok && !open:
 			out = append(out, [2]float64{p.hz, p.hz})

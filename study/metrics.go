@@ -39,13 +39,12 @@ func metric(l *loop.Loop, c *Compare, name string) (Figure, string) {
 		f = c.Sampled.Transient.RiseTimeS
 		f.Value /= c.PeriodS
 	case name == "processor_load":
-		cost, _ := l.Timing.Compute.Float64()
-		f = Fig(100 * cost / c.PeriodS)
+		f = Fig(100 * seconds(costOf(l)) / c.PeriodS)
 	default:
 		return f, "compare does not evaluate this metric"
 	}
 	if name == "processor_load" && f.Value == 0 {
-		return Figure{}, "timing has no compute time"
+		return Figure{}, "timing has no compute time and processor no cost"
 	}
 	if !f.OK {
 		return f, "the loop has no such figure"

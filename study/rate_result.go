@@ -9,6 +9,8 @@ type Rate struct {
 	Loop   string `json:"loop"`
 	Map    string `json:"map"` // of the controller, as the file or --map has it
 
+	Verdict string `json:"verdict"` // which rates work, what to pick, what ends the window
+
 	SearchedHz [2]float64 `json:"searched_hz"` // the range of rates looked at
 	SearchNote string     `json:"search_note"` // where its ends come from
 
@@ -62,7 +64,7 @@ type Pick struct {
 	RateHz     float64        `json:"rate_hz"`
 	PeriodS    float64        `json:"period_s"`
 	Timer      *TimerSetting  `json:"timer"`       // null without a timer section
-	Settings   []TimerSetting `json:"settings"`    // other settings near the pick, by rate
+	Settings   []TimerSetting `json:"settings"`    // other settings around the pick, by rate
 	WantedHz   float64        `json:"wanted_hz"`   // the round rate that the timer comes nearest to
 	SlowestHz  Figure         `json:"slowest_hz"`  // slowest rate of the same interval of the window
 	FastestHz  Figure         `json:"fastest_hz"`  // fastest one
@@ -88,6 +90,7 @@ type TimerSetting struct {
 	Prescaler int64   `json:"prescaler"` // register value
 	Reload    int64   `json:"reload"`    // register value
 	RateHz    float64 `json:"rate_hz"`
+	WantedHz  float64 `json:"wanted_hz"` // the rate that was asked for
 	ErrorPPM  float64 `json:"error_ppm"` // of the rate against the wanted one
 }
 
@@ -98,7 +101,7 @@ type Candidate struct {
 	Metrics map[string]Figure `json:"metrics"` // by metric name, in base units
 	Meets   bool              `json:"meets"`
 	Fails   []string          `json:"fails"` // requirements that are not met
-	Why     string            `json:"why"`   // "chosen", "file", "slowest", "timer", "round": what the rate is
+	Why     string            `json:"why"`   // "chosen", "file", "slowest", "fastest", "timer", "round": what the rate is
 }
 
 // Conflict tells why no rate works.

@@ -12,14 +12,7 @@ import (
 // transients fills the step figures of both columns, at the size of the first step of
 // the file (1 without one) and with the actuator's limits.
 func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyzed) error {
-	in := loop.Input{Kind: "step", Size: 1}
-	for _, x := range l.Inputs {
-		if x.Kind == "step" && x.Size != 0 {
-			in = x
-			break
-		}
-	}
-	length := cut(l, stepLonger*horizon(l, in, cont, sampled), mostTicksStep)
+	in, length := stepRun(l, cont, sampled)
 	if cont != nil && cont.stable {
 		f, u, err := twinFigures(ctx, l, in, length, cont.stepSpec(l, in))
 		switch {
@@ -32,9 +25,27 @@ func transients(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *an
 			warnSaturation(c, l, "continuous", u)
 		}
 	}
+	return sampledTransient(ctx, l, c, cont, sampled)
+}
+
+// stepRun is the step that the step figures belong to, and how long it is run.
+func stepRun(l *loop.Loop, cont, sampled *analyzed) (in loop.Input, length float64) {
+	in = loop.Input{Kind: "step", Size: 1}
+	for _, x := range l.Inputs {
+		if x.Kind == "step" && x.Size != 0 {
+			in = x
+			break
+		}
+	}
+	return in, cut(l, stepLonger*horizon(l, in, cont, sampled), mostTicksStep)
+}
+
+// sampledTransient fills the step figures of the sampled column.
+func sampledTransient(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyzed) error {
 	if !sampled.stable {
 		return nil
 	}
+	in, length := stepRun(l, cont, sampled)
 	cfg, err := sampledConfig(l, sampled.block, in, length, false)
 	if err != nil {
 		return err

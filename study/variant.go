@@ -78,6 +78,9 @@ func rateText(period *big.Rat) string {
 	return hertzText(hz)
 }
 
+// RateText writes a rate in Hz with a unit that suits it, four digits.
+func RateText(hz float64) string { return hertzText(hz) }
+
 func hertzText(hz float64) string {
 	switch {
 	case hz >= 1e6:

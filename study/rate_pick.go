@@ -1,0 +1,284 @@
+package study
+
+import (
+	"fmt"
+	"math"
+	"math/big"
+	"slices"
+	"sort"
+)
+
+// reserve is how far above the slowest rate the recommended one lies where the window is wide: an octave gives back most of
+// what sampling costs, for the delay has halved; what is faster still costs processor time and gains little. Our own choice.
+const reserve = 2
+
+// choose picks the recommended rate from the widest interval of the window.
+func (j *rateJob) choose() error {
+	if len(j.window) == 0 {
+		j.r.PickNote = "no rate meets all requirements"
+		return nil
+	}
+	span := j.widestSpan()
+	lo, hi := math.Max(span.low, j.lo), math.Min(span.high, j.hi)
+	target, reason := math.Sqrt(lo*hi), "near the geometric middle of the window"
+	if reserve*lo < target {
+		target, reason = reserve*lo, "about twice the slowest rate, a reserve for the tolerances of the parts"
+	}
+	if span.low == 0 {
+		reason += ", counted from the slowest rate looked at"
+	}
+	wanted, moved := j.roundRate(target, lo, hi)
+	if moved != "" {
+		reason += ", moved so that " + moved + " does not fold into the bandwidth"
+	}
+	p := &Pick{WantedHz: hertz(wanted), Settings: []TimerSetting{}, Reason: reason, Below: []Break{}, Above: []Break{}}
+	period := new(big.Rat).Inv(wanted)
+	if t := j.l.Timer; t != nil {
+		at, ok := timerSetting(t, wanted, new(big.Rat).SetFloat64(lo), new(big.Rat).SetFloat64(hi))
+		if !ok {
+			j.r.PickNote = fmt.Sprintf("the timer makes no rate between %s and %s", hertzText(lo), hertzText(hi))
+			return nil
+		}
+		s := at.setting(wanted)
+		p.Timer = &s
+		period = at.period()
+	}
+	p.RateHz, p.PeriodS = hertz(new(big.Rat).Inv(period)), seconds(period)
+	p.SlowestHz, p.FastestHz = Figure{span.low, span.low > 0}, Figure{span.high, !math.IsInf(span.high, 1)}
+	j.breaks(p, span)
+	return j.confirm(p, period)
+}
+
+// widestSpan is the interval of the window with the greatest ratio of its ends, the slowest of equal ones.
+func (j *rateJob) widestSpan() rateSpan {
+	width := func(s rateSpan) float64 { return math.Min(s.high, j.hi) / math.Max(s.low, j.lo) }
+	best := j.window[0]
+	for _, s := range j.window[1:] {
+		if width(s) > width(best)*(1+1e-9) {
+			best = s
+		}
+	}
+	return best
+}
+
+// roundSteps are the rates of a decade that people choose.
+var roundSteps = []float64{1, 1.2, 1.25, 1.5, 1.6, 2, 2.4, 2.5, 3, 3.2, 4, 5, 6, 8}
+
+// roundRate is the round rate nearest to target in ratio, well inside lo and hi (a twentieth of their ratio from each), at which no declared
+// disturbance folds into the bandwidth, if there is such a rate; else one at which some does; the target to three digits, else as
+// it is, where no round rate is inside. moved names a disturbance that another round rate was left for.
+func (j *rateJob) roundRate(target, lo, hi float64) (rate *big.Rat, moved string) {
+	margin := math.Pow(hi/lo, 0.05)
+	inside := func(f float64) bool { return f >= lo*margin && f <= hi/margin }
+	nearest := func(allowed func(float64) bool) float64 {
+		best := 0.0
+		for e := math.Floor(math.Log10(lo)) - 1; e <= math.Log10(hi)+1; e++ {
+			for _, m := range roundSteps {
+				f := m * math.Pow(10, e)
+				if inside(f) && allowed(f) && (best == 0 || math.Abs(math.Log(f/target)) < math.Abs(math.Log(best/target))) {
+					best = f
+				}
+			}
+		}
+		return best
+	}
+	first := nearest(func(float64) bool { return true })
+	best := nearest(func(f float64) bool { return j.foldsInside(f) == "" })
+	switch {
+	case best == 0:
+		best = first
+	case best != first:
+		moved = j.foldsInside(first)
+	}
+	if best == 0 {
+		unit := math.Pow(10, math.Floor(math.Log10(target))-2)
+		if best = math.Round(target/unit) * unit; !inside(best) {
+			return new(big.Rat).SetFloat64(target), ""
+		}
+	}
+	// The decimal number that is meant, not the binary one beside it.
+	r, ok := new(big.Rat).SetString(fmt.Sprintf("%.3g", best))
+	if !ok || !inside(hertz(r)) {
+		return new(big.Rat).SetFloat64(best), moved
+	}
+	return r, moved
+}
+
+// foldsInside names a declared disturbance above half the rate that lands inside the bandwidth of the continuous loop, "" for none.
+func (j *rateJob) foldsInside(rate float64) string {
+	b := j.cont.bandwidth()
+	if !b.OK {
+		return ""
+	}
+	for _, d := range j.l.Disturbances {
+		if d.Frequency == nil {
+			continue
+		}
+		if f := hertz(d.Frequency) / (2 * math.Pi); f > rate/2 && 2*math.Pi*folded(f, rate) < foldGuard*b.Value {
+			return disturbanceName(d)
+		}
+	}
+	return ""
+}
+
+// foldGuard: a sampled loop has up to about twice the bandwidth of the continuous one before its margins are gone.
+const foldGuard = 2
+
+// sameBound: bounds nearer than this, relative, are one bound: what breaks there breaks together.
+const sameBound = 1e-9
+
+// breaks lists what breaks going down and up from the pick, nearest first, and what ends the interval.
+func (j *rateJob) breaks(p *Pick, span rateSpan) {
+	for i, c := range j.list {
+		if !j.judges(c) {
+			continue
+		}
+		for _, s := range j.spans[i] {
+			if !(p.RateHz >= s.low && p.RateHz <= s.high) {
+				continue
+			}
+			if s.low > 0 {
+				p.Below = append(p.Below, Break{c.text, s.low, s.low / p.RateHz})
+			}
+			if !math.IsInf(s.high, 1) {
+				p.Above = append(p.Above, Break{c.text, s.high, s.high / p.RateHz})
+			}
+		}
+	}
+	// Causes first among equals: what cannot run is not stable, what is not stable meets nothing.
+	rank := map[string]int{j.list[1].text: 0, j.list[0].text: 1}
+	order := func(list []Break, nearer func(a, b float64) bool) {
+		sort.SliceStable(list, func(a, b int) bool {
+			x, y := list[a], list[b]
+			if math.Abs(x.RateHz-y.RateHz) <= sameBound*x.RateHz {
+				return rankOf(rank, x) < rankOf(rank, y)
+			}
+			return nearer(x.RateHz, y.RateHz)
+		})
+	}
+	p.Below, p.Above = withoutEffects(p.Below, rank), withoutEffects(p.Above, rank)
+	order(p.Below, func(a, b float64) bool { return a > b })
+	order(p.Above, func(a, b float64) bool { return a < b })
+	if len(p.Below) > 0 {
+		p.BindsBelow = p.Below[0].Requirement
+	}
+	if len(p.Above) > 0 {
+		p.BindsAbove = p.Above[0].Requirement
+	}
+}
+
+// sameCause: what breaks within this of the end of stability, relative, breaks because of it.
+const sameCause = 1e-6
+
+// withoutEffects leaves out what breaks where the loop stops running or being stable, and stability where the loop stops running: one
+// line is enough for one cause.
+func withoutEffects(list []Break, rank map[string]int) []Break {
+	out := []Break{}
+	for _, b := range list {
+		caused := false
+		for _, c := range list {
+			if rankOf(rank, c) < min(rankOf(rank, b), len(rank)) && math.Abs(c.RateHz-b.RateHz) <= sameCause*b.RateHz {
+				caused = true
+			}
+		}
+		if !caused {
+			out = append(out, b)
+		}
+	}
+	return out
+}
+
+func rankOf(rank map[string]int, b Break) int {
+	if n, ok := rank[b.Requirement]; ok {
+		return n
+	}
+	return len(rank)
+}
+
+// confirm analyses the loop at the very period of the pick, as compare does, and takes its ledger and its warnings. A pick that
+// does not hold there is withdrawn.
+func (j *rateJob) confirm(p *Pick, period *big.Rat) error {
+	l, why := j.sweep.loopAt(j.l, period)
+	if why != "" {
+		j.r.PickNote = "the loop cannot run at the rate picked: " + why
+		return nil
+	}
+	c, err := RunCompare(j.ctx, l, Options{})
+	if err != nil {
+		return err
+	}
+	for _, q := range c.Requirements {
+		if q.Met != nil && !*q.Met {
+			j.r.PickNote = fmt.Sprintf("at %s, the rate picked, %s is not met after all: it lies too close to a bound", hertzText(p.RateHz), q.Name)
+			return nil
+		}
+	}
+	for _, w := range c.Warnings {
+		w.Text = "at the pick, " + hertzText(p.RateHz) + ": " + w.Text
+		if w.Code != "no_continuous_column" {
+			j.r.Warnings = append(j.r.Warnings, w)
+		}
+	}
+	if j.l.Timer != nil {
+		p.Settings = j.settingsAround(p, period)
+	}
+	j.r.DelayLedger = c.DelayLedger
+	j.r.Pick = p
+	return nil
+}
+
+const (
+	// around the pick are settings up to this ratio away.
+	around = 1.7
+	// toldApart: settings whose rates differ by less, relative, are one to the loop.
+	toldApart = 1e-3
+)
+
+// settingsAround lists timer settings of the window beside the pick: the next rates that the timer makes, where they can be told
+// apart, and those of round rates.
+func (j *rateJob) settingsAround(p *Pick, period *big.Rat) []TimerSetting {
+	out := []TimerSetting{}
+	add := func(s TimerSetting) {
+		apart := math.Abs(s.RateHz-p.RateHz) > toldApart*p.RateHz && inSpans(j.window, s.RateHz)
+		for _, x := range out {
+			apart = apart && math.Abs(x.RateHz-s.RateHz) > toldApart*s.RateHz
+		}
+		if apart {
+			out = append(out, s)
+		}
+	}
+	for _, at := range timerNear(j.l.Timer, period, 2) {
+		add(at.setting(at.rate()))
+	}
+	for e := math.Floor(math.Log10(p.RateHz / around)); e <= math.Log10(p.RateHz*around); e++ {
+		for _, m := range roundSteps {
+			wanted, ok := new(big.Rat).SetString(fmt.Sprintf("%ge%g", m, e))
+			if f := m * math.Pow(10, e); !ok || f < p.RateHz/around || f > p.RateHz*around {
+				continue
+			}
+			if at, ok := timerSetting(j.l.Timer, wanted, nil, nil); ok {
+				add(at.setting(wanted))
+			}
+		}
+	}
+	slices.SortFunc(out, func(a, b TimerSetting) int { return compareFloat(a.RateHz, b.RateHz) })
+	return out
+}
+
+func compareFloat(a, b float64) int {
+	switch {
+	case a < b:
+		return -1
+	case a > b:
+		return 1
+	}
+	return 0
+}
+
+// withRateOf is the loop at the rate of the pick, or of the file without one.
+func (j *rateJob) chosenHz() float64 {
+	if j.r.Pick != nil {
+		return j.r.Pick.RateHz
+	}
+	return j.r.FileRateHz
+}

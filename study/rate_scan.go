@@ -1,0 +1,147 @@
+package study
+
+import (
+	"context"
+	"math"
+	"math/big"
+	"sync"
+)
+
+// rateScan is the loop under one map over a range of rates: the points looked at, and those added where a bound is refined.
+type rateScan struct {
+	ctx    context.Context
+	s      *sweeper
+	m      mapped
+	list   []*constraint
+	points []*ratePoint // ascending, of the grid
+
+	lock  sync.Mutex
+	known map[float64]*ratePoint // by rate
+}
+
+// simulatedEvery: figures that need a simulation are looked at on every third rate of the grid, neighbours 12 % apart.
+const simulatedEvery = 3
+
+// scanRates analyses the loop under each map at each rate, in parallel over the rates. step is told how many are done.
+func (s *sweeper) scanRates(ctx context.Context, maps []mapped, grid []float64, list []*constraint, step func(done int)) ([]*rateScan, error) {
+	all := make([][]*ratePoint, len(grid))
+	var count counter
+	err := parallel(len(grid), func(i int) error {
+		if err := ctx.Err(); err != nil {
+			return err
+		}
+		all[i] = s.at(shortPeriodOf(grid[i]), maps)
+		step(count.next())
+		return nil
+	})
+	if err != nil {
+		return nil, err
+	}
+	out := make([]*rateScan, len(maps))
+	for k, m := range maps {
+		w := &rateScan{ctx: ctx, s: s, m: m, list: list, known: map[float64]*ratePoint{}}
+		for i := range grid {
+			w.points = append(w.points, all[i][k])
+			w.known[all[i][k].hz] = all[i][k]
+		}
+		out[k] = w
+	}
+	return out, nil
+}
+
+// counter counts from several goroutines.
+type counter struct {
+	lock sync.Mutex
+	n    int
+}
+
+func (c *counter) next() int {
+	c.lock.Lock()
+	defer c.lock.Unlock()
+	c.n++
+	return c.n
+}
+
+// wanted joins what the constraints need.
+func wanted(list []*constraint) (want simulated) {
+	for _, c := range list {
+		want.step = want.step || c.needs.step
+		want.tracking = want.tracking || c.needs.tracking
+	}
+	return want
+}
+
+// simulateGrid runs the simulations that the constraints need on every third point.
+func (w *rateScan) simulateGrid(step func(done int)) error {
+	want := wanted(w.list)
+	if !want.any() {
+		return nil
+	}
+	var chosen []*ratePoint
+	for i, p := range w.points {
+		if i%simulatedEvery == 0 || i == len(w.points)-1 {
+			chosen = append(chosen, p)
+		}
+	}
+	var count counter
+	return parallel(len(chosen), func(i int) error {
+		if err := w.ctx.Err(); err != nil {
+			return err
+		}
+		err := chosen[i].simulate(w.ctx, w.s.cont, want)
+		step(count.next())
+		return err
+	})
+}
+
+// at is the loop at a rate, with the figures that a constraint needs.
+func (w *rateScan) at(hz float64, want simulated) (*ratePoint, error) {
+	return w.atPeriod(hz, periodOf(hz), want)
+}
+
+func (w *rateScan) atPeriod(hz float64, period *big.Rat, want simulated) (*ratePoint, error) {
+	if err := w.ctx.Err(); err != nil {
+		return nil, err
+	}
+	w.lock.Lock()
+	p := w.known[hz]
+	w.lock.Unlock()
+	if p == nil {
+		p = w.s.at(period, []mapped{w.m})[0]
+		p.hz = hz
+	}
+	var err error
+	if want.any() {
+		p.lock.Lock()
+		err = p.simulate(w.ctx, w.s.cont, want)
+		p.lock.Unlock()
+	}
+	w.lock.Lock()
+	w.known[hz] = p
+	w.lock.Unlock()
+	return p, err
+}
+
+// sample is a constraint's slack at one rate.
+type sample struct{ hz, slack float64 }
+
+// samples are the slacks of a constraint at the points of the grid that have its figure.
+func (w *rateScan) samples(c *constraint) []sample {
+	var out []sample
+	for _, p := range w.points {
+		if c.needs.any() && p.stable() && (c.needs.step && !p.ran.step || c.needs.tracking && !p.ran.tracking) {
+			continue
+		}
+		out = append(out, sample{p.hz, c.slack(p)})
+	}
+	return out
+}
+
+// slackAt is the slack at a rate.
+func (w *rateScan) slackAt(c *constraint, hz float64) (float64, error) {
+	p, err := w.at(hz, c.needs)
+	if err != nil {
+		return math.NaN(), err
+	}
+	return c.slack(p), nil
+}
