@@ -143,7 +143,7 @@ func loopSuite(g *study.GateLoop) junitSuite {
 	}
 	var out, notes strings.Builder
 	t := &table{w: &out}
-	printGateLoop(t, g, columnWidths(requirementLines(g), 6, limitColumn))
+	printGateLoop(t, g, gateWidths(g))
 	for _, x := range g.Warnings {
 		printWrapped(&notes, "warning: ", x.Text)
 	}
