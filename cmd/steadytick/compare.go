@@ -2,7 +2,6 @@ package main
 
 import (
 	"context"
-	"encoding/json"
 	"fmt"
 	"io"
 
@@ -119,33 +118,14 @@ func writeCompare(stdout, stderr io.Writer, result *study.Compare, csv study.Sim
 	for _, w := range result.Warnings {
 		printWrapped(stderr, "warning: ", w.Text)
 	}
-	if req.json != "" {
-		err := writeTo(stdout, req.json, func(w io.Writer) error {
-			e := json.NewEncoder(w)
-			e.SetEscapeHTML(false)
-			e.SetIndent("", "  ")
-			return e.Encode(result)
-		})
-		if err != nil {
-			return err
-		}
+	if err := writeJSON(stdout, req.json, result); err != nil {
+		return err
 	}
 	if req.csv != "" {
 		if err := writeTo(stdout, req.csv, csv.Write); err != nil {
 			return err
 		}
 	}
-	if req.html == "" {
-		return nil
-	}
-	if err := writeTo(stdout, req.html, func(w io.Writer) error { return charts.Report(w, result) }); err != nil {
-		return err
-	}
-	if !charts.Embedded() {
-		printWrapped(stderr, "note: ", "this build holds no chart runtime, so the report loads it from the network when it is opened; `make runtime` and a new build make it self-contained")
-	}
-	if req.json != "-" && req.csv != "-" {
-		fmt.Fprintf(stdout, "\nReport: %s\n", req.html)
-	}
-	return nil
+	quiet := req.json == "-" || req.csv == "-"
+	return writeReport(stdout, stderr, req.html, quiet, func(w io.Writer) error { return charts.Report(w, result) })
 }

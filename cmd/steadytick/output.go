@@ -5,6 +5,8 @@ import (
 	"io"
 	"os"
 	"path/filepath"
+	"strings"
+	"time"
 
 	"steadytick/internal/wholefile"
 	"steadytick/loop"
@@ -74,16 +76,24 @@ func sameFile(a, b string) bool {
 	return errP == nil && errQ == nil && p == q
 }
 
-// progress prints how far a long piece of work has come on one line of a terminal;
-// elsewhere it is silent.
+// progress shows how far a long piece of work has come, as a bar on one line of a terminal; elsewhere it is silent, and on a
+// terminal for the first moments too.
 type progress struct {
 	w     io.Writer
 	live  bool
 	shown bool
+	start time.Time
+	last  time.Time
 }
 
+const (
+	quietFor  = 300 * time.Millisecond
+	drawEvery = 80 * time.Millisecond
+	barCells  = 30
+)
+
 func newProgress(w io.Writer) *progress {
-	p := &progress{w: w}
+	p := &progress{w: w, start: time.Now()}
 	if f, ok := w.(*os.File); ok {
 		info, err := f.Stat()
 		p.live = err == nil && info.Mode()&os.ModeCharDevice != 0
@@ -93,10 +103,18 @@ func newProgress(w io.Writer) *progress {
 
 // step shows what is being done, part of whole.
 func (p *progress) step(what string, done, all int) {
-	if p.live {
-		p.shown = true
-		fmt.Fprintf(p.w, "\r\x1b[K%s (%d of %d)", what, done, all)
+	now := time.Now()
+	if !p.live || now.Sub(p.start) < quietFor || now.Sub(p.last) < drawEvery && done < all {
+		return
 	}
+	p.shown, p.last = true, now
+	fmt.Fprintf(p.w, "\r\x1b[K%s", bar(what, done, all))
+}
+
+// bar is one line of at most 78 characters.
+func bar(what string, done, all int) string {
+	cells := barCells * done / max(all, 1)
+	return fmt.Sprintf("%s [%s%s] %d of %d", padRight(cut(what, 24), 12), strings.Repeat("#", cells), strings.Repeat(" ", barCells-cells), done, all)
 }
 
 // clear removes the line.
