@@ -12,13 +12,19 @@ import (
 type GateAgainst struct {
 	File             string         `json:"file"` // of the revision before
 	Loop             string         `json:"loop"`
-	PeriodS          float64        `json:"period_s"` // of the revision before
+	PeriodS          Figure         `json:"period_s"` // of the revision before
 	StableBefore     bool           `json:"stable_before"`
 	StableAfter      bool           `json:"stable_after"`
 	TolerancePercent float64        `json:"tolerance_percent"`
 	Changes          []MetricChange `json:"changes"`
-	Worse            []string       `json:"worse"` // "stable" and metrics that got worse by more than the tolerance
+	Worse            []string       `json:"worse"`    // "stable" and metrics that got worse by more than the tolerance
+	Problems         []string       `json:"problems"` // why the two could not be compared; then only File is filled
 	Warnings         []Warning      `json:"warnings"`
+}
+
+// GateAgainstProblem is the entry of a revision that could not be compared with.
+func GateAgainstProblem(file string, problems []string) *GateAgainst {
+	return &GateAgainst{File: file, Problems: problems, Changes: []MetricChange{}, Worse: []string{}, Warnings: []Warning{}}
 }
 
 // Verdicts on a metric.
@@ -61,9 +67,9 @@ func RunGateAgainst(ctx context.Context, now *GateLoop, before *loop.Loop, toler
 		return nil, err
 	}
 	g := &GateAgainst{
-		File: before.File, Loop: before.Name, PeriodS: was.PeriodS, TolerancePercent: tolerance.Percent,
+		File: before.File, Loop: before.Name, PeriodS: Fig(was.PeriodS), TolerancePercent: tolerance.Percent,
 		StableBefore: was.Sampled.Stable, StableAfter: now.compare.Sampled.Stable,
-		Changes: []MetricChange{}, Worse: []string{}, Warnings: was.Warnings,
+		Changes: []MetricChange{}, Worse: []string{}, Problems: []string{}, Warnings: was.Warnings,
 	}
 	if g.StableBefore && !g.StableAfter {
 		g.Worse = append(g.Worse, "stable")

@@ -52,7 +52,7 @@ func TestAgainstKnownMargins(t *testing.T) {
 	if r := changeOf(t, a, "ramp_error"); r.Verdict != ChangeSame || r.Before.Value != 1 || r.After.Value != 1 {
 		t.Errorf("%+v", r)
 	}
-	if len(a.Worse) == 0 || a.PeriodS != 0.5 || a.TolerancePercent != DefaultTolerance {
+	if len(a.Worse) == 0 || a.PeriodS.Value != 0.5 || a.TolerancePercent != DefaultTolerance {
 		t.Errorf("%+v", a)
 	}
 	if back := changeOf(t, against(t, at("1 s"), at("0.5 s")), "phase_margin"); back.Verdict != ChangeBetter {

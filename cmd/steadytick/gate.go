@@ -104,8 +104,8 @@ func gate(ctx context.Context, stdout, stderr io.Writer, req gateRequest) error 
 	return gateStatus(result)
 }
 
-// load reads every file and sees to it that no output goes over one of them.
-func (req gateRequest) load() (list []gateFile, before *loop.Loop, err error) {
+// load reads every file and sees to it that no output goes over one of them. before is nil without --against.
+func (req gateRequest) load() (list []gateFile, before *gateFile, err error) {
 	var sources []namedPath
 	for _, f := range req.files {
 		l, err := loadLoop(f, req.rate, "")
@@ -113,63 +113,73 @@ func (req gateRequest) load() (list []gateFile, before *loop.Loop, err error) {
 		sources = append(sources, loopSources(f, l)...)
 	}
 	if req.against != "" {
-		if before, err = loadLoop(req.against, "", ""); err != nil {
-			return nil, nil, err
-		}
-		for _, s := range loopSources(req.against, before) {
+		l, err := loadLoop(req.against, "", "")
+		before = &gateFile{req.against, l, err}
+		for _, s := range loopSources(req.against, l) {
 			sources = append(sources, namedPath{s.what + " of --against", s.path})
 		}
 	}
 	return list, before, checkOutputs([]namedPath{{"--junit", req.junit}, {"--json", req.json}}, sources)
 }
 
-// runGate checks the files one after the other. A file that cannot be checked is an entry of the result, not an error.
-func runGate(ctx context.Context, stderr io.Writer, list []gateFile, before *loop.Loop, req gateRequest) (*study.Gate, error) {
+// runGate checks the files one after the other. A file that cannot be checked is an entry of the result; the error is that of
+// an interrupted run.
+func runGate(ctx context.Context, stderr io.Writer, list []gateFile, before *gateFile, req gateRequest) (*study.Gate, error) {
 	p := newProgress(stderr)
 	defer p.clear()
 	result := &study.Gate{Schema: study.GateSchema, Met: true}
 	for i, f := range list {
 		p.step(f.path, i+1, len(list))
-		g, err := checkFile(ctx, f)
-		if err != nil {
-			return nil, err
-		}
+		g := f.check(ctx)
 		result.Loops = append(result.Loops, g)
 		result.Met = result.Met && g.Met
 	}
-	if before == nil || len(result.Loops[0].Problems) > 0 {
-		return result, ctx.Err()
+	if before != nil {
+		p.step(before.path, 1, 1)
+		result.Against = before.compare(ctx, result.Loops[0], req.tolerance)
+		result.Met = result.Met && len(result.Against.Worse)+len(result.Against.Problems) == 0
 	}
-	p.step(before.File, 1, 1)
-	var err error
-	if result.Against, err = study.RunGateAgainst(ctx, result.Loops[0], before, req.tolerance, study.GateOptions{}); err != nil {
-		return nil, err
-	}
-	result.Met = result.Met && len(result.Against.Worse) == 0
 	return result, ctx.Err()
 }
 
-// checkFile checks one file. The error is that of an interrupted run.
-func checkFile(ctx context.Context, f gateFile) (*study.GateLoop, error) {
+// check holds the file to its requirements.
+func (f gateFile) check(ctx context.Context) *study.GateLoop {
 	err := f.err
 	if err == nil {
 		var g *study.GateLoop
 		if g, err = study.RunGate(ctx, f.loop, study.GateOptions{}); err == nil {
-			return g, nil
+			return g
 		}
 	}
-	if ctx.Err() != nil {
-		return nil, ctx.Err()
+	return study.GateProblem(f.path, f.problems(err))
+}
+
+// compare holds a checked loop against the file, the revision before it.
+func (f gateFile) compare(ctx context.Context, now *study.GateLoop, tolerance study.Tolerance) *study.GateAgainst {
+	err := f.err
+	if err == nil && len(now.Problems) > 0 {
+		err = fmt.Errorf("there is nothing to compare with it: %s could not be checked", now.File)
 	}
+	if err == nil {
+		var a *study.GateAgainst
+		if a, err = study.RunGateAgainst(ctx, now, f.loop, tolerance, study.GateOptions{}); err == nil {
+			return a
+		}
+	}
+	return study.GateAgainstProblem(f.path, f.problems(err))
+}
+
+// problems are the texts of what is wrong with the file, each with its place.
+func (f gateFile) problems(err error) []string {
 	var problems loop.Problems
 	if !errors.As(err, &problems) {
-		return study.GateProblem(f.path, []string{fmt.Sprintf("%s: %v", f.path, err)}), nil
+		return []string{fmt.Sprintf("%s: %v", f.path, err)}
 	}
 	texts := make([]string, len(problems))
 	for i, p := range problems {
 		texts[i] = loop.Problems{p}.Error()
 	}
-	return study.GateProblem(f.path, texts), nil
+	return texts
 }
 
 // write writes the files asked for.
@@ -192,7 +202,7 @@ func (req gateRequest) write(stdout io.Writer, result *study.Gate) error {
 }
 
 // gateStatus is nil when all is met, errNotMet when something is not, a request error when a file could not be
-// checked.
+// checked or compared.
 func gateStatus(result *study.Gate) error {
 	broken := 0
 	for _, g := range result.Loops {
@@ -205,6 +215,8 @@ func gateStatus(result *study.Gate) error {
 		return requestf("%s could not be checked", result.Loops[0].File)
 	case broken > 0:
 		return requestf("%d of %d files could not be checked", broken, len(result.Loops))
+	case result.Against != nil && len(result.Against.Problems) > 0:
+		return requestf("%s could not be compared with %s", result.Loops[0].File, result.Against.File)
 	case !result.Met:
 		return errNotMet
 	}

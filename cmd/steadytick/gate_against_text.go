@@ -10,6 +10,10 @@ import (
 // printAgainst prints every metric before and after.
 func printAgainst(t *table, result *study.Gate) {
 	a := result.Against
+	if len(a.Problems) > 0 {
+		t.line("against %s: NOT COMPARED, %s (see stderr)", a.File, count(len(a.Problems), "problem"))
+		return
+	}
 	compared := 0
 	for _, c := range a.Changes {
 		if c.Verdict != study.ChangeApart && c.Verdict != study.ChangeNew {
@@ -21,7 +25,7 @@ func printAgainst(t *table, result *study.Gate) {
 	} else {
 		t.line("against %s: %d WORSE", a.File, len(a.Worse))
 	}
-	t.line("  %s, a tick of %s; tolerance %.6g %% of the value before", a.Loop, seconds(a.PeriodS), a.TolerancePercent)
+	t.line("  %s, a tick of %s; tolerance %.6g %% of the value before", a.Loop, seconds(a.PeriodS.Value), a.TolerancePercent)
 	switch {
 	case !a.StableBefore:
 		t.line("  the loop before is unstable, so its figures are no measure")

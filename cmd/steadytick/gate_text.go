@@ -147,9 +147,13 @@ func gateSummary(result *study.Gate) string {
 	default:
 		text += fmt.Sprintf("%d of %s not met", missed, count(len(result.Loops[0].Requirements), "requirement"))
 	}
-	if a := result.Against; a != nil && len(a.Worse) == 0 {
+	switch a := result.Against; {
+	case a == nil:
+	case len(a.Problems) > 0:
+		text += map[bool]string{true: ", but ", false: ", and "}[missed == 0 && broken == 0] + "nothing was compared"
+	case len(a.Worse) == 0:
 		text += ", nothing got worse"
-	} else if a != nil {
+	default:
 		text += map[bool]string{true: ", but ", false: ", and "}[missed == 0] + count(len(a.Worse), "figure") + " got worse"
 	}
 	return text + "."
@@ -170,17 +174,22 @@ const shownProblems = 20
 // printGateNotes prints problems and warnings, each with its file.
 func printGateNotes(stderr io.Writer, result *study.Gate) {
 	for _, g := range result.Loops {
-		for i, p := range g.Problems {
-			if i == shownProblems {
-				fmt.Fprintf(stderr, "%s: and %d more\n", g.File, len(g.Problems)-shownProblems)
-				break
-			}
-			fmt.Fprintln(stderr, p)
-		}
+		printGateProblems(stderr, g.File, g.Problems)
 		printGateWarnings(stderr, g.File, g.Warnings)
 	}
-	if result.Against != nil {
-		printGateWarnings(stderr, result.Against.File, result.Against.Warnings)
+	if a := result.Against; a != nil {
+		printGateProblems(stderr, a.File, a.Problems)
+		printGateWarnings(stderr, a.File, a.Warnings)
+	}
+}
+
+func printGateProblems(stderr io.Writer, file string, list []string) {
+	for i, p := range list {
+		if i == shownProblems {
+			fmt.Fprintf(stderr, "%s: and %d more\n", file, len(list)-shownProblems)
+			return
+		}
+		fmt.Fprintln(stderr, p)
 	}
 }
 

@@ -133,8 +133,7 @@ func (s *junitSuite) finish(id int) {
 func loopSuite(g *study.GateLoop) junitSuite {
 	s := junitSuite{Name: g.File, Properties: []junitProperty{{"file", g.File}}}
 	if len(g.Problems) > 0 {
-		s.Cases = []junitCase{{Name: "loop file", Error: &junitMessage{
-			"loop file", count(len(g.Problems), "problem") + " in the loop file", strings.Join(g.Problems, "\n")}}}
+		s.Cases = []junitCase{problemCase("loop file", "the loop file could not be checked", g.Problems)}
 		return s
 	}
 	s.Properties = append(s.Properties, junitProperty{"loop", g.Loop}, junitProperty{"period_s", fmt.Sprint(g.PeriodS.Value)})
@@ -149,6 +148,11 @@ func loopSuite(g *study.GateLoop) junitSuite {
 	}
 	s.Out.Text, s.Err.Text = out.String(), notes.String()
 	return s
+}
+
+// problemCase is what stands in place of the cases of a file that could not be read.
+func problemCase(name, message string, problems []string) junitCase {
+	return junitCase{Name: name, Error: &junitMessage{name, message, strings.Join(problems, "\n")}}
 }
 
 func requirementCase(r study.GateRequirement) junitCase {
@@ -186,6 +190,10 @@ func againstSuite(result *study.Gate) junitSuite {
 	a := result.Against
 	s := junitSuite{Name: result.Loops[0].File + " against " + a.File, Properties: []junitProperty{
 		{"file", result.Loops[0].File}, {"against", a.File}, {"tolerance_percent", fmt.Sprint(a.TolerancePercent)}}}
+	if len(a.Problems) > 0 {
+		s.Cases = []junitCase{problemCase("comparison", "the revisions could not be compared", a.Problems)}
+		return s
+	}
 	stable := junitCase{Name: "stable"}
 	if a.StableBefore && !a.StableAfter {
 		stable.Failure = &junitMessage{"worse", "stable before, unstable now", "stable before, unstable now"}
