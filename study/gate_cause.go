@@ -90,8 +90,17 @@ func designCause(c *Compare, r GateRequirement) *GateCause {
 
 // marginCause is for what lag takes from: margins, crossover and bandwidth.
 func marginCause(c *Compare, r GateRequirement) *GateCause {
+	lag := lagOf(c)
+	if w := gainMarginRadS(c.Sampled); r.Name == "gain_margin" && w > 0 {
+		lag = lagAt(c, w, "where the gain margin is taken")
+	}
 	if designMisses(c, r) {
-		return designCause(c, r)
+		g := designCause(c, r)
+		if short := math.Abs(r.Continuous.Value - r.Limit.Value); lag.worst.Item != "" && math.Abs(r.Value.Value-r.Continuous.Value) > short {
+			g.Text += ": " + lag.text()
+			g.blame(lag.worst)
+		}
+		return g
 	}
 	text := ""
 	if r.Continuous.OK {
@@ -100,23 +109,44 @@ func marginCause(c *Compare, r GateRequirement) *GateCause {
 	if r.Name == "crossover" {
 		text += "the hold and the controller map move it, a pure delay does not; "
 	}
-	return lagCause(c, text)
+	return lagCause(c, lag, text)
+}
+
+// gainMarginRadS is the phase crossing that gives the gain margin, 0 when there is none.
+func gainMarginRadS(c *Column) float64 {
+	for _, p := range c.PhaseCrossings {
+		if p.MarginDB == c.GainMarginDB {
+			return p.RadS
+		}
+	}
+	return 0
+}
+
+// text is the lag in a sentence.
+func (a addedLag) text() string {
+	return fmt.Sprintf("sampling adds %s° of lag at %s, the largest part by the %s (%s, %s°)",
+		number(a.total), a.at, a.worst.Item, timeText(a.worst.Seconds), number(a.worst.Degrees.Value))
+}
+
+// blame names an entry of the ledger.
+func (g *GateCause) blame(i LedgerItem) {
+	g.Item, g.Seconds, g.Degrees = i.Item, Fig(i.Seconds), i.Degrees
 }
 
 // lagCause is the largest entry of the delay ledger that sampling brought in, after an introduction.
-func lagCause(c *Compare, before string) *GateCause {
-	lag := lagOf(c)
-	if lag.worst.Item == "" {
-		if longest := longestDelay(c); longest.Seconds > 0 && !c.Sampled.CrossoverRadS.OK {
-			return &GateCause{Kind: "sampling", Item: longest.Item, Seconds: Fig(longest.Seconds),
-				Text: before + fmt.Sprintf("the longest delay that sampling brought in is the %s (%s); there is no crossover to count its degrees at", longest.Item, timeText(longest.Seconds))}
-		}
+func lagCause(c *Compare, lag addedLag, before string) *GateCause {
+	if lag.worst.Item != "" {
+		g := causef("sampling", "%s", before+lag.text())
+		g.blame(lag.worst)
+		return g
+	}
+	longest := longestDelay(c)
+	if longest.Seconds <= 0 || c.Sampled.CrossoverRadS.OK {
 		return causef("sampling", "%s", before+"hold and controller map change the loop's response, though they add no lag at crossover")
 	}
-	w := lag.worst
-	return &GateCause{Kind: "sampling", Item: w.Item, Seconds: Fig(w.Seconds), Degrees: w.Degrees,
-		Text: before + fmt.Sprintf("sampling adds %s° of lag at %s, the largest part by the %s (%s, %s°)",
-			number(lag.total), lag.at, w.Item, timeText(w.Seconds), number(w.Degrees.Value))}
+	g := causef("sampling", "%sthe longest delay that sampling brought in is the %s (%s); there is no crossover to count its degrees at", before, longest.Item, timeText(longest.Seconds))
+	g.blame(longest)
+	return g
 }
 
 // longestDelay is the longest entry of the ledger that sampling brought in.
@@ -159,5 +189,5 @@ func stableCause(c *Compare) *GateCause {
 	if cont != nil && cont.PhaseMarginDeg.OK {
 		text = fmt.Sprintf("the continuous loop is stable with %s° of phase margin; ", number(cont.PhaseMarginDeg.Value))
 	}
-	return lagCause(c, text)
+	return lagCause(c, lagOf(c), text)
 }

@@ -35,7 +35,7 @@ func otherwise(c *Compare, r GateRequirement) *GateCause {
 		return designCause(c, r)
 	}
 	if !r.Continuous.OK {
-		return lagCause(c, "")
+		return lagCause(c, lagOf(c), "")
 	}
 	return causef("sampling", "sampling moves it from %s to %s", r.withUnit(r.Continuous), r.withUnit(r.Value))
 }

@@ -17,7 +17,7 @@ func stepCause(l *loop.Loop, c *Compare, r GateRequirement) *GateCause {
 	if designMisses(c, r) {
 		return designCause(c, r)
 	}
-	return lagCause(c, fromContinuous(c, r))
+	return lagCause(c, lagOf(c), fromContinuous(c, r))
 }
 
 // fromContinuous introduces a figure that the continuous loop meets.
@@ -67,7 +67,7 @@ func followCause(l *loop.Loop, c *Compare, r GateRequirement) *GateCause {
 	if designMisses(c, r) {
 		return designCause(c, r)
 	}
-	return lagCause(c, fromContinuous(c, r))
+	return lagCause(c, lagOf(c), fromContinuous(c, r))
 }
 
 // runLimited tells whether the sampled run of input i takes the effort to a limit. The curves keep the extremes.

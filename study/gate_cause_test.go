@@ -106,6 +106,33 @@ func TestOvershootQuotedInCauses(t *testing.T) {
 	}
 }
 
+// A gain margin is lost where the phase crosses −180°, not at crossover. 1/(s(s+1)) behind a hold of T = 1 s, gain K, has
+// the closed loop z² + (0.367879441171442 K − 1.36787944117144) z + 0.367879441171442 + 0.264241117657115 K (textbook plant,
+// recomputed). At the largest stable gain the last term is 1, so its poles stand at e^(±jw) with
+//
+//	cos w = (1.36787944117144 − 0.367879441171442 K)/2
+//
+// and half a tick there is w/2.
+func TestGateCauseOfAGainMargin(t *testing.T) {
+	g := gated(t, loopFile(held1+"requirements: [gain_margin >= 8 dB]"))
+	c := g.Requirements[1].Cause
+	if c == nil || c.Item != "hold, half a tick" || !strings.Contains(c.Text, "where the gain margin is taken, the largest part by") {
+		t.Fatalf("%+v", c)
+	}
+	const a, b = 0.367879441171442, 0.264241117657115
+	w := math.Acos((1 + a - a*(1-a)/b) / 2)
+	within(t, "degrees", c.Degrees, w/2*180/math.Pi, 2e-14*38) // a and b have 15 digits, 2e-15 of them; division and arc cosine make at most ten times that, of 38°
+}
+
+// A design that misses by little and a sampling that takes much more are both named.
+func TestGateCauseNamesBoth(t *testing.T) {
+	// 51.83° continuous, 18.34° sampled (recomputed): 1.17° short by design, 33.49° taken
+	g := gated(t, oneLoop("1/(s*(s + 1))", "{model: 1}", "period: 0.5 s, compute: 0 s, update: next_tick")+"requirements: [phase_margin >= 53 deg]")
+	if c := g.Requirements[1].Cause; c.Kind != "design" || c.Item != "waiting for the update" || !strings.Contains(c.Text, "sampling takes another 33.49 deg: sampling adds") {
+		t.Errorf("%+v", c)
+	}
+}
+
 // Where a resonance above crossover has the smallest margin, lag is counted there: a pure delay in proportion to
 // frequency, and not the map, whose phase is no delay.
 func TestLagIsCountedWhereTheMarginIsSmallest(t *testing.T) {
@@ -117,6 +144,9 @@ func TestLagIsCountedWhereTheMarginIsSmallest(t *testing.T) {
 	lag := lagOf(c)
 	if lag.worst.Item != "hold, half a tick" || lag.worst.Degrees.Value != 5 || lag.total != 7.5 || !strings.Contains(lag.at, "25 rad/s") {
 		t.Errorf("%+v", lag)
+	}
+	if text := lag.text(); !strings.Contains(text, "7.5° of lag at 25 rad/s, where the margin is smallest, the largest part by the hold, half a tick (1 ms, 5°)") {
+		t.Errorf("%q", text)
 	}
 	if c.DelayLedger[0].Degrees.Value != 2 {
 		t.Error("the ledger was changed")

@@ -58,12 +58,18 @@ type addedLag struct {
 	at    string     // where, in words
 }
 
-// lagOf adds up the entries of the ledger that sampling brought in.
+// lagOf adds up the entries of the ledger that sampling brought in, where the phase margin is smallest.
 func lagOf(c *Compare) addedLag {
+	return lagAt(c, criticalRadS(c.Sampled), "where the margin is smallest")
+}
+
+// lagAt adds them up at w rad/s, or at crossover for 0; why says in words what is there. Away from crossover pure
+// delays grow with frequency, and the map, whose phase is no delay, is left out.
+func lagAt(c *Compare, w float64, why string) addedLag {
 	a := addedLag{at: "crossover"}
 	scale := 1.0
-	if w := criticalRadS(c.Sampled); w > 0 && c.Sampled.CrossoverRadS.Value != w {
-		a.at, scale = fmt.Sprintf("%s rad/s, where the margin is smallest,", number(w)), w/c.Sampled.CrossoverRadS.Value
+	if w > 0 && c.Sampled.CrossoverRadS.Value != w {
+		a.at, scale = fmt.Sprintf("%s rad/s, %s", number(w), why), w/c.Sampled.CrossoverRadS.Value
 	}
 	for _, i := range c.DelayLedger {
 		if i.Item == itemDeadTime || i.Item == itemSensor || !i.Degrees.OK || scale != 1 && i.Item == itemMap {
