@@ -91,8 +91,11 @@ func designCause(c *Compare, r GateRequirement) *GateCause {
 // marginCause is for what lag takes from: margins, crossover and bandwidth.
 func marginCause(c *Compare, r GateRequirement) *GateCause {
 	lag := lagOf(c)
-	if w := gainMarginRadS(c.Sampled); r.Name == "gain_margin" && w > 0 {
-		lag = lagAt(c, w, "where the gain margin is taken")
+	switch r.Name {
+	case "gain_margin":
+		lag = lagAt(c, gainMarginRadS(c.Sampled), "where the gain margin is taken")
+	case "modulus_margin":
+		lag = lagAt(c, nearestRadS(c.Sampled), "the crossing nearest to −1")
 	}
 	if designMisses(c, r) {
 		g := designCause(c, r)
@@ -120,6 +123,24 @@ func gainMarginRadS(c *Column) float64 {
 		}
 	}
 	return 0
+}
+
+// nearestRadS is the crossing of either kind at which L comes nearest to −1, 0 when there is none:
+//
+//	abs(1 + L) = 2·sin(margin/2)  where abs(L) = 1,   abs(1 − gain)  where the phase is −180°
+func nearestRadS(c *Column) float64 {
+	at, least := 0.0, math.Inf(1)
+	for _, g := range c.GainCrossings {
+		if d := 2 * math.Abs(math.Sin(g.MarginDeg.Value*degree/2)); d < least {
+			at, least = g.RadS, d
+		}
+	}
+	for _, p := range c.PhaseCrossings {
+		if d := math.Abs(1 - p.Gain); d < least {
+			at, least = p.RadS, d
+		}
+	}
+	return at
 }
 
 // text is the lag in a sentence.

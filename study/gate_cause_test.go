@@ -124,6 +124,22 @@ func TestGateCauseOfAGainMargin(t *testing.T) {
 	within(t, "degrees", c.Degrees, w/2*180/math.Pi, 2e-14*38) // a and b have 15 digits, 2e-15 of them; division and arc cosine make at most ten times that, of 38°
 }
 
+// The modulus margin is blamed on the lag at the crossing nearest to −1: a gain of 0.9 where the phase is −180° is 0.1 away, a
+// phase margin of 60° is 1, of 3° 2·sin 1.5° = 0.052.
+func TestNearestCrossing(t *testing.T) {
+	c := &Column{GainCrossings: []Crossing{{RadS: 10, MarginDeg: Fig(60)}}, PhaseCrossings: []Crossing{{RadS: 30, Gain: 0.5}, {RadS: 40, Gain: 0.9}}}
+	if w := nearestRadS(c); w != 40 {
+		t.Errorf("nearest at %g", w)
+	}
+	c.GainCrossings = append(c.GainCrossings, Crossing{RadS: 20, MarginDeg: Fig(-3)})
+	if w := nearestRadS(c); w != 20 {
+		t.Errorf("nearest at %g", w)
+	}
+	if w := nearestRadS(&Column{}); w != 0 {
+		t.Errorf("no crossing, nearest at %g", w)
+	}
+}
+
 // A design that misses by little and a sampling that takes much more are both named.
 func TestGateCauseNamesBoth(t *testing.T) {
 	// 51.83° continuous, 18.34° sampled (recomputed): 1.17° short by design, 33.49° taken

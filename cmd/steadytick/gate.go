@@ -2,7 +2,6 @@ package main
 
 import (
 	"context"
-	"encoding/json"
 	"errors"
 	"fmt"
 	"io"
@@ -184,16 +183,8 @@ func (f gateFile) problems(err error) []string {
 
 // write writes the files asked for.
 func (req gateRequest) write(stdout io.Writer, result *study.Gate) error {
-	if req.json != "" {
-		err := writeTo(stdout, req.json, func(w io.Writer) error {
-			e := json.NewEncoder(w)
-			e.SetEscapeHTML(false)
-			e.SetIndent("", "  ")
-			return e.Encode(result)
-		})
-		if err != nil {
-			return err
-		}
+	if err := writeJSON(stdout, req.json, result); err != nil {
+		return err
 	}
 	if req.junit == "" {
 		return nil
