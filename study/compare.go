@@ -40,13 +40,9 @@ func RunCompare(ctx context.Context, l *loop.Loop, o Options) (*Compare, error) 
 		return nil, err
 	}
 	if cont != nil {
-		if c.Continuous, err = cont.column(l); err != nil {
-			return nil, err
-		}
+		c.Continuous = cont.column(l)
 	}
-	if c.Sampled, err = sampled.column(l); err != nil {
-		return nil, err
-	}
+	c.Sampled = sampled.column(l)
 	if err := simulateAll(ctx, l, c, cont, sampled, o); err != nil {
 		return nil, err
 	}
@@ -90,7 +86,25 @@ func bothColumns(l *loop.Loop, c *Compare) (cont, sampled *analyzed, err error) 
 }
 
 // column turns an analysis into a result column, without what needs simulation.
-func (a *analyzed) column(l *loop.Loop) (*Column, error) {
+func (a *analyzed) column(l *loop.Loop) *Column {
+	col := a.figures(l)
+	for i, x := range a.poles.X {
+		if a.block.period == nil {
+			p := x.Complex128()
+			col.Poles = append(col.Poles, [2]float64{real(p), imag(p)})
+			continue
+		}
+		T := a.block.open.Period
+		z := [2]float64{1 + T.Mul(x.Re).Float64(), T.Mul(x.Im).Float64()}
+		col.Poles = append(col.Poles, z)
+		e := a.poles.Equivalent[i]
+		col.EquivalentPoles = append(col.EquivalentPoles, [2]float64{real(e), imag(e)})
+	}
+	return col
+}
+
+// figures is column without the lists of poles.
+func (a *analyzed) figures(l *loop.Loop) *Column {
 	k := lti.ErrorConstants(lti.Leading(a.block.open))
 	col := &Column{
 		Stable: a.stable, Type: k.Type,
@@ -104,19 +118,7 @@ func (a *analyzed) column(l *loop.Loop) (*Column, error) {
 		}
 	}
 	a.fillMargins(col)
-	for i, x := range a.poles.X {
-		if a.block.period == nil {
-			p := x.Complex128()
-			col.Poles = append(col.Poles, [2]float64{real(p), imag(p)})
-			continue
-		}
-		T := a.block.open.Period
-		z := [2]float64{1 + T.Mul(x.Re).Float64(), T.Mul(x.Im).Float64()}
-		col.Poles = append(col.Poles, z)
-		e := a.poles.Equivalent[i]
-		col.EquivalentPoles = append(col.EquivalentPoles, [2]float64{real(e), imag(e)})
-	}
-	return col, nil
+	return col
 }
 
 // fillMargins copies margins and crossings in the units of the results.

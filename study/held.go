@@ -214,17 +214,22 @@ func (a *heldAt) smoothParts() []*part {
 			continue
 		}
 		width, _ := new(big.Rat).Sub(bounds[i], bounds[i-1]).Float64()
-		p := newPart(bounds[i-1], bounds[i], pointsFor(a.fastest, width))
+		p := newPart(bounds[i-1], bounds[i], pointsFor(a.fastest, a.shortest, width))
 		a.look(p)
 		a.cut = append(a.cut, p)
 	}
 	return a.cut
 }
 
-// pointsFor is the number of Chebyshev points for modes up to fastest rad/s over
-// width seconds: 12 for a smooth arc and two per radian on top, at most 200.
-func pointsFor(fastest, width float64) int {
-	return int(math.Min(200, 12+2*fastest*width))
+// pointsFor is the number of Chebyshev points for modes up to fastest rad/s, the shortest of time constant shortest (0: none), over
+// width seconds: for a smooth arc as many as bring the last coefficients of e^(−x), x up to width/shortest, below 1e-11 of
+// its range (a_k = 2·(x/4)^k/k!), and two per radian on top, at most 200.
+func pointsFor(fastest, shortest, width float64) int {
+	smooth := 12.0
+	if shortest > 0 && width < shortest/8 {
+		smooth = 9
+	}
+	return int(math.Min(200, smooth+2*fastest*width))
 }
 
 // remainder is total mod T, exact.

@@ -24,18 +24,18 @@ func (a *analyzed) jitterMargin() Figure {
 	if a.block.period != nil {
 		half = math.Pi / a.seconds()
 	}
-	var grid []float64
-	for _, w := range frequencyGrid([]*analyzed{a}, 200) {
-		if w < half {
-			grid = append(grid, w)
-		}
+	grid := frequencyGrid([]*analyzed{a}, 200)
+	for len(grid) > 0 && grid[len(grid)-1] >= half {
+		grid = grid[:len(grid)-1]
 	}
 	if !math.IsInf(half, 0) {
 		grid = append(grid, half)
 	}
+	// From above: |T| = |1 − 1/(1+L)| <= 1 + 1/min|1+L|, so that below some ω nothing can exceed the best.
+	most := 1 + 1/a.margins.Modulus
 	best, at := 0.0, 0
-	for i, w := range grid {
-		if v := f(w); v > best {
+	for i := len(grid) - 1; i >= 0 && !(grid[i]*most < best); i-- {
+		if v := f(grid[i]); v > best {
 			best, at = v, i
 		}
 	}

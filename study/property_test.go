@@ -28,13 +28,7 @@ func columns(t interface{ Fatal(...any) }, l *loop.Loop) (cont, sampled *Column)
 	if err != nil {
 		t.Fatal(err)
 	}
-	if cont, err = a.column(l); err != nil {
-		t.Fatal(err)
-	}
-	if sampled, err = b.column(l); err != nil {
-		t.Fatal(err)
-	}
-	return cont, sampled
+	return a.column(l), b.column(l)
 }
 
 // servo is a family of loops of type 1: a drive with an electrical lag, a lead, a sensor lag.

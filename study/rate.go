@@ -133,7 +133,7 @@ func (j *rateJob) search() error {
 		if asked || !first.stable() || j.lo <= slowestRate {
 			break
 		}
-		if err := first.simulate(j.ctx, j.cont, wanted(j.list)); err != nil {
+		if err := j.sweep.simulate(j.ctx, first, wanted(j.list)); err != nil {
 			return err
 		}
 		if len(j.failing(first)) > 0 {

@@ -95,7 +95,11 @@ func (j *rateJob) candidate(scan *rateScan, hz float64) (Candidate, error) {
 		}
 	}
 	p, err := scan.at(hz, simulated{})
-	if err == nil && p.settlesSoon(scan.s.cont) {
+	if err != nil {
+		return row, err
+	}
+	soon, err := scan.s.settlesSoon(p)
+	if err == nil && soon {
 		p, err = scan.at(hz, every)
 	}
 	if err != nil {
@@ -119,16 +123,6 @@ func (j *rateJob) candidate(scan *rateScan, hz float64) (Candidate, error) {
 		}
 	}
 	return row, nil
-}
-
-// settlesSoon tells whether the step figures of a point take a run of ordinary length. Beside the end of stability they do not, and
-// say nothing there.
-func (p *ratePoint) settlesSoon(cont *analyzed) bool {
-	if !p.stable() {
-		return false
-	}
-	_, length := stepRun(p.loop, cont, p.a)
-	return length <= mostTicksRun*p.c.PeriodS
 }
 
 func hasInput(l *loop.Loop, kinds []string) bool {

@@ -206,7 +206,7 @@ func (j *rateJob) together(k *Conflict) error {
 	if at == nil {
 		return nil
 	}
-	if err := at.simulate(j.ctx, j.cont, wanted(j.list)); err != nil {
+	if err := j.sweep.simulate(j.ctx, at, wanted(j.list)); err != nil {
 		return err
 	}
 	var parts []string

@@ -31,13 +31,15 @@ func newSweeper(l *loop.Loop, cont *analyzed) (*sweeper, error) {
 
 // ratePoint is the loop at one rate under one map.
 type ratePoint struct {
-	hz   float64
-	why  string // why it cannot run, "" where it does
-	loop *loop.Loop
-	a    *analyzed
-	c    *Compare // Sampled is filled, without what needs a simulation unless asked for
-	ran  simulated
-	lock sync.Mutex // of ran and what belongs to it
+	hz     float64
+	period *big.Rat
+	why    string // why it cannot run, "" where it does
+	loop   *loop.Loop
+	right  complex128 // the rightmost equivalent pole
+	poles  int
+	c      *Compare // Sampled is filled, without its lists of poles and crossings, and without what needs a simulation unless asked for
+	ran    simulated
+	lock   sync.Mutex // of ran and what belongs to it
 }
 
 // simulated says which figures of a run are wanted.
@@ -72,7 +74,7 @@ func (s *sweeper) at(period *big.Rat, maps []mapped) []*ratePoint {
 	hz, _ := new(big.Rat).Inv(period).Float64()
 	var shared *heldAt
 	for i, m := range maps {
-		p := &ratePoint{hz: hz}
+		p := &ratePoint{hz: hz, period: period}
 		out[i] = p
 		if p.loop, p.why = s.loopAt(m.loop, period); p.why != "" {
 			continue
@@ -97,13 +99,27 @@ func (p *ratePoint) analyse(shared *heldAt) error {
 	if err != nil {
 		return err
 	}
-	if p.a, err = analyze(b); err != nil {
+	a, err := analyze(b)
+	if err != nil {
 		return err
+	}
+	if p.poles = len(a.poles.Equivalent); p.poles > 0 {
+		p.right = a.poles.Equivalent[0]
 	}
 	T, _ := p.loop.Timing.Period.Float64()
 	p.c = &Compare{PeriodS: T, Units: Units{p.loop.Output, p.loop.Effort}}
-	p.c.Sampled, err = p.a.column(p.loop)
-	return err
+	p.c.Sampled = a.figures(p.loop)
+	p.c.Sampled.GainCrossings, p.c.Sampled.PhaseCrossings = nil, nil
+	return nil
+}
+
+// again analyses the point once more: of the thousands of points of a sweep only the figures are kept.
+func (p *ratePoint) again(h held) (*analyzed, error) {
+	b, err := assembleSampled(p.loop, h, p.period, p.loop.Timing.LoopDelay())
+	if err != nil {
+		return nil, err
+	}
+	return analyze(b)
 }
 
 // runs tells whether the loop can run at this rate at all.
@@ -115,10 +131,10 @@ func (p *ratePoint) stable() bool { return p.runs() && p.c.Sampled.Stable }
 // decay is how fast the slowest mode falls, 1/s: negative where it grows. Its sign is that of the verdict.
 func (p *ratePoint) decay() float64 {
 	d, _ := p.rawDecay()
-	switch {
-	case p.a.stable && !(d > 0):
+	switch stable := p.c.Sampled.Stable; {
+	case stable && !(d > 0):
 		return math.SmallestNonzeroFloat64
-	case !p.a.stable && !(d < 0):
+	case !stable && !(d < 0):
 		return -math.SmallestNonzeroFloat64
 	}
 	return d
@@ -126,26 +142,32 @@ func (p *ratePoint) decay() float64 {
 
 // rawDecay is the same by the rightmost pole alone, and whether that pole is clearly off the boundary: by more than 1e-9 of its modulus.
 func (p *ratePoint) rawDecay() (d float64, clear bool) {
-	if len(p.a.poles.Equivalent) == 0 {
+	if p.poles == 0 {
 		return math.Inf(1), true
 	}
-	s := p.a.poles.Equivalent[0]
-	return -real(s), math.Abs(real(s)) > 1e-9*cmplx.Abs(s)
+	return -real(p.right), math.Abs(real(p.right)) > 1e-9*cmplx.Abs(p.right)
 }
 
 // simulate adds the figures that need a run; nothing for a loop that is not stable. Runs are as long as those of compare.
-func (p *ratePoint) simulate(ctx context.Context, cont *analyzed, want simulated) error {
-	if !p.stable() {
+func (s *sweeper) simulate(ctx context.Context, p *ratePoint, want simulated) error {
+	p.lock.Lock()
+	defer p.lock.Unlock()
+	want.step, want.tracking = want.step && !p.ran.step, want.tracking && !p.ran.tracking
+	if !p.stable() || !want.any() {
 		return nil
 	}
-	if want.step && !p.ran.step {
-		if err := sampledTransient(ctx, p.loop, p.c, cont, p.a); err != nil {
+	a, err := p.again(s.held)
+	if err != nil {
+		return err
+	}
+	if want.step {
+		if err := sampledTransient(ctx, p.loop, p.c, s.cont, a); err != nil {
 			return err
 		}
-		p.ran.step = true
+		p.c.Warnings, p.ran.step = nil, true
 	}
-	if want.tracking && !p.ran.tracking {
-		if err := p.track(ctx, cont); err != nil {
+	if want.tracking {
+		if err := p.track(ctx, a); err != nil {
 			return err
 		}
 		p.ran.tracking = true
@@ -154,13 +176,13 @@ func (p *ratePoint) simulate(ctx context.Context, cont *analyzed, want simulated
 }
 
 // track fills peak and rms tracking error of moves and files.
-func (p *ratePoint) track(ctx context.Context, cont *analyzed) error {
+func (p *ratePoint) track(ctx context.Context, a *analyzed) error {
 	for i, in := range p.loop.Inputs {
 		length, ok := endLength(p.loop, in)
 		if !ok {
 			continue
 		}
-		r, err := variant{loop: p.loop, run: p.a}.simulate(ctx, in, length)
+		r, err := variant{loop: p.loop, run: a}.simulate(ctx, in, length)
 		if err != nil {
 			return err
 		}
@@ -170,4 +192,18 @@ func (p *ratePoint) track(ctx context.Context, cont *analyzed) error {
 		}
 	}
 	return nil
+}
+
+// settlesSoon tells whether the step figures of a point take a run of ordinary length. Beside the end of stability they do not, and
+// say nothing there.
+func (s *sweeper) settlesSoon(p *ratePoint) (bool, error) {
+	if !p.stable() {
+		return false, nil
+	}
+	a, err := p.again(s.held)
+	if err != nil {
+		return false, err
+	}
+	_, length := stepRun(p.loop, s.cont, a)
+	return length <= mostTicksRun*p.c.PeriodS, nil
 }

@@ -88,7 +88,7 @@ func (w *rateScan) simulateGrid(step func(done int)) error {
 		if err := w.ctx.Err(); err != nil {
 			return err
 		}
-		err := chosen[i].simulate(w.ctx, w.s.cont, want)
+		err := w.s.simulate(w.ctx, chosen[i], want)
 		step(count.next())
 		return err
 	})
@@ -112,9 +112,7 @@ func (w *rateScan) atPeriod(hz float64, period *big.Rat, want simulated) (*rateP
 	}
 	var err error
 	if want.any() {
-		p.lock.Lock()
-		err = p.simulate(w.ctx, w.s.cont, want)
-		p.lock.Unlock()
+		err = w.s.simulate(w.ctx, p, want)
 	}
 	w.lock.Lock()
 	w.known[hz] = p

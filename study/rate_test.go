@@ -152,7 +152,7 @@ func bruteForce(t *testing.T, l *loop.Loop, r *Rate) {
 	want := wanted(list)
 	at := func(hz float64) *ratePoint {
 		p := s.at(periodOf(hz), []mapped{{"own", l}})[0]
-		if err := p.simulate(context.Background(), cont, want); err != nil {
+		if err := s.simulate(context.Background(), p, want); err != nil {
 			t.Fatal(err)
 		}
 		return p

@@ -23,7 +23,7 @@ func rateCommand() *cli.Command {
 			&cli.StringFlag{Name: "to", Usage: "fastest `RATE` to look at"},
 			&cli.StringFlag{Name: "map", Usage: "use `MAP` for the controller in place of the file's"},
 			&cli.StringFlag{Name: "maps", Usage: "`all`: every controller map side by side"},
-			&cli.StringFlag{Name: "points", Usage: "look at `NUMBER` rates to begin with, 10 to 100000 (60 a decade if not given)"},
+			&cli.StringFlag{Name: "points", Usage: "look at `NUMBER` rates to begin with, 10 to 20000 (60 a decade if not given)"},
 			&cli.StringFlag{Name: "json", Usage: "write the result to `FILE` (- for stdout, in place of the tables)"},
 			&cli.StringFlag{Name: "html", Usage: "write the report to `FILE`"},
 		},
@@ -61,8 +61,8 @@ func rateAction(c *cli.Context) error {
 	req.options.AllMaps = c.String("maps") == "all"
 	if text := c.String("points"); text != "" {
 		n, err := strconv.Atoi(text)
-		if err != nil || n < 10 || n > 100_000 {
-			return requestf("--points wants a whole number from 10 to 100000; got %q", text)
+		if err != nil || n < 10 || n > 20_000 {
+			return requestf("--points wants a whole number from 10 to 20000; got %q", text)
 		}
 		req.options.Points = n
 	}

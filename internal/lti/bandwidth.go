@@ -20,20 +20,21 @@ func Bandwidth(t func(w float64) complex128, dc float64, marks []complex128, lim
 // firstBelow is where f first falls below 0 on an ascending grid, dips between its points
 // included; +Inf when it does not.
 func firstBelow(f func(w float64) float64, grid []float64) float64 {
-	values := make([]float64, len(grid))
+	before, last := 0.0, 0.0 // the two values before this one
 	for i, w := range grid {
-		values[i] = f(w)
-		if values[i] < 0 {
+		v := f(w)
+		if v < 0 {
 			if i == 0 {
 				return fall(f, 0, w)
 			}
 			return fall(f, grid[i-1], w)
 		}
-		if i >= 2 && values[i-1] <= values[i-2] && values[i-1] <= values[i] {
+		if i >= 2 && last <= before && last <= v {
 			if bottom, ok := dip(f, grid[i-2], grid[i]); ok {
 				return fall(f, grid[i-2], bottom)
 			}
 		}
+		before, last = last, v
 	}
 	return math.Inf(1)
 }
@@ -57,8 +58,8 @@ func responseGrid(marks []complex128, limit float64) []float64 {
 		}
 	}
 	low, high = math.Min(low, limit)/100, math.Min(high*1000, limit)
-	var grid []float64
 	points := math.Min(gridPerOctave*math.Log2(high/low), 4000)
+	grid := make([]float64, 0, int(points)+1+11*len(marks))
 	for i := 0.0; i <= points; i++ {
 		grid = append(grid, low*math.Pow(high/low, i/points))
 	}
