@@ -196,8 +196,11 @@ func (w *rateScan) judges(c *constraint) bool {
 	if !stable {
 		return true
 	}
-	for _, s := range w.samples(c) {
-		if !math.IsNaN(s.slack) && !math.IsInf(s.slack, -1) {
+	for _, p := range w.points {
+		if !p.stable() {
+			continue
+		}
+		if f, why := c.figure(p); f.OK && why == "" {
 			return true
 		}
 	}

@@ -29,7 +29,7 @@ func (j *rateJob) explain() error {
 		k.Text = append(k.Text, j.exclusionText(set))
 	}
 	for i, c := range j.list {
-		if c.name == "stable" || c.name == "tick" || !j.judges(c) {
+		if c.name == "stable" || c.name == "runs" || !j.judges(c) {
 			continue
 		}
 		q, err := j.relax(i)

@@ -10,7 +10,7 @@ import (
 // constraint is one thing that a rate must satisfy.
 type constraint struct {
 	text    string // for the reader
-	name    string // "stable", "tick" or a metric
+	name    string // "stable", "runs" or a metric
 	op      string
 	limit   float64
 	unit    string
@@ -23,7 +23,7 @@ type constraint struct {
 // met, below zero where it is not. A loop that cannot run or is unstable meets nothing, −Inf. NaN: there is no figure to judge by.
 func (c *constraint) slack(p *ratePoint) float64 {
 	switch {
-	case c.name == "tick":
+	case c.name == "runs":
 		return map[bool]float64{true: 1, false: -1}[p.runs()]
 	case !p.runs():
 		return math.Inf(-1)
@@ -73,12 +73,12 @@ func needsOf(name string) simulated {
 	return simulated{}
 }
 
-// constraints are "stable", what fits in the tick, the processor's budget and the requirements of the file, in this order. The
+// constraints are "stable", that the loop can run, the processor's budget and the requirements of the file, in this order. The
 // requirements that no analysis judges are given apart.
 func constraints(l *loop.Loop) (list []*constraint, unjudged []loop.Requirement) {
 	list = []*constraint{
 		{text: "stable", name: "stable", implied: true, unit: "1/s"},
-		{text: "work fits the tick", name: "tick", implied: true},
+		{text: "can run", name: "runs", implied: true},
 	}
 	if p := l.Processor; p != nil && p.Budget != nil {
 		budget, _ := p.Budget.Float64()

@@ -70,7 +70,7 @@ func (j *rateJob) lowerEffect(e *ComputeEffect, p *Pick) error {
 			c = x
 		}
 	}
-	if c == nil || c.name == "tick" {
+	if c == nil || c.name == "runs" {
 		return nil
 	}
 	at := p.SlowestHz.Value

@@ -68,7 +68,7 @@ func (j *rateJob) rateWindow(c *constraint, spans []rateSpan) (RateWindow, error
 		w.Note = j.reasonMissing(c)
 		return w, nil
 	}
-	if c.name == "tick" {
+	if c.name == "runs" {
 		w.Note = j.reasonNotRunning()
 		return w, nil
 	}
@@ -76,6 +76,8 @@ func (j *rateJob) rateWindow(c *constraint, spans []rateSpan) (RateWindow, error
 	switch {
 	case w.Unchanged && len(spans) > 0:
 		w.Note = fmt.Sprintf("no rate changes it: %s at every rate at which the loop is stable", withUnit(w.Value, c.unit))
+	case w.Unchanged && math.IsInf(w.Value.Value, 0) && c.op[0] == '<':
+		w.Note = "no rate changes it: infinite at every rate at which the loop is stable; the loop needs another integrator"
 	case w.Unchanged:
 		w.Note = fmt.Sprintf("no rate changes it: %s at every rate at which the loop is stable; change the controller or the requirement", withUnit(w.Value, c.unit))
 	case len(spans) == 0 && c.name == "stable":

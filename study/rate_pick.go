@@ -20,14 +20,21 @@ func (j *rateJob) choose() error {
 	}
 	span := j.widestSpan()
 	lo, hi := math.Max(span.low, j.lo), math.Min(span.high, j.hi)
-	target, reason := math.Sqrt(lo*hi), "near the geometric middle of the window"
-	if reserve*lo < target {
-		target, reason = reserve*lo, "about twice the slowest rate, a reserve for the tolerances of the parts"
-	}
+	from, name := lo, "the slowest rate"
 	if span.low == 0 {
-		reason += ", counted from the slowest rate looked at"
+		name = "the slowest rate looked at"
 	}
-	wanted, moved := j.roundRate(target, lo, hi)
+	if mode := j.fastestMode(); 2*mode > from && 2*mode < hi {
+		from, name = 2*mode, fmt.Sprintf("%s, below which samples fold the plant's mode at %s", hertzText(2*mode), hertzText(mode))
+	}
+	target, reason := math.Sqrt(from*hi), "near the geometric middle of the window"
+	if from > lo {
+		reason += " above " + name
+	}
+	if reserve*from < target {
+		target, reason = reserve*from, "about twice "+name+", a reserve for the tolerances of the parts"
+	}
+	wanted, moved := j.roundRate(target, from, hi)
 	if moved != "" {
 		reason += ", moved so that " + moved + " does not fold into the bandwidth"
 	}
@@ -47,6 +54,26 @@ func (j *rateJob) choose() error {
 	p.SlowestHz, p.FastestHz = Figure{span.low, span.low > 0}, Figure{span.high, !math.IsInf(span.high, 1)}
 	j.breaks(p, span)
 	return j.confirm(p, period)
+}
+
+// fastestMode is the highest frequency of the plant's lightly damped modes, Hz; 0 for none.
+func (j *rateJob) fastestMode() float64 {
+	most := 0.0
+	for _, w := range j.sweep.swinging() {
+		most = math.Max(most, w/(2*math.Pi))
+	}
+	return most
+}
+
+// warnFoldedMode tells when the pick lies below twice a lightly damped mode of the plant: the loop then works because the mode folds to where it does
+// no harm, and a small change of it can end that.
+func (j *rateJob) warnFoldedMode() {
+	for _, w := range j.sweep.swinging() {
+		if f := w / (2 * math.Pi); f > j.r.Pick.RateHz/2 {
+			j.r.warn("folded_mode", "at the pick, %s, the samples see the plant's mode at %s folded to %s: the window there rests on where it folds to, and a small change of the mode can end it; a rate above %s would see it as it is",
+				hertzText(j.r.Pick.RateHz), hertzText(f), hertzText(folded(f, j.r.Pick.RateHz)), hertzText(2*f))
+		}
+	}
 }
 
 // widestSpan is the interval of the window with the greatest ratio of its ends, the slowest of equal ones.
@@ -224,6 +251,7 @@ func (j *rateJob) confirm(p *Pick, period *big.Rat) error {
 	}
 	j.r.DelayLedger = c.DelayLedger
 	j.r.Pick = p
+	j.warnFoldedMode()
 	return nil
 }
 

@@ -47,14 +47,14 @@ func (v Interval) MarshalJSON() ([]byte, error) { return json.Marshal([2]Figure{
 // RateWindow is one requirement and the rates that meet it.
 type RateWindow struct {
 	Requirement string     `json:"requirement"` // "stable", "processor_load <= 40 %", or as the file has it
-	Name        string     `json:"name"`        // of the metric; "stable", "tick" for what must fit in the tick
+	Name        string     `json:"name"`        // of the metric; "stable", "runs" for rates at which the loop can run
 	Intervals   []Interval `json:"intervals_hz"`
 	Judged      bool       `json:"judged"`     // false: no figure to judge by, see note; it is then left out of the window
 	Unchanged   bool       `json:"unchanged"`  // no rate changes the figure
 	Value       Figure     `json:"value"`      // the figure where no rate changes it
 	Best        Figure     `json:"best"`       // the best figure of any rate, where no rate meets the requirement
 	BestHz      Figure     `json:"best_at_hz"` // and where that is
-	Implied     bool       `json:"implied"`    // not written as a requirement: stable, tick, processor budget
+	Implied     bool       `json:"implied"`    // not written as a requirement: stable, runs, processor budget
 	Note        string     `json:"note"`       // a sentence for the reader, "" for none
 	Unit        string     `json:"unit"`       // of the figures
 }
