@@ -14,19 +14,57 @@ import (
 //go:embed page/report.html
 var pageText string
 
+//go:embed page/shared.html
+var sharedText string
+
 //go:embed page/report.css
 var pageStyle string
 
 //go:embed page/report.js
 var pageScript string
 
-var page = template.Must(template.New("report").Funcs(template.FuncMap{
-	"swatch": func(s style, dots bool) template.HTML { return s.swatch(dots) },
-	"inc":    func(i int) int { return i + 1 },
-}).Parse(pageText))
+var page = parsePage("report", pageText)
+
+// parsePage parses the template of one report with the pieces that all reports share.
+func parsePage(name, text string) *template.Template {
+	t := template.New(name).Funcs(template.FuncMap{
+		"swatch": func(s style, dots bool) template.HTML { return s.swatch(dots) },
+		"inc":    func(i int) int { return i + 1 },
+	})
+	return template.Must(template.Must(t.Parse(sharedText)).Parse(text))
+}
+
+// frame is what every page needs around its content.
+type frame struct {
+	Style          template.CSS
+	Drawings       template.JS
+	Runtime        template.JS
+	RuntimeAddress string
+	Script         template.JS
+	PointLimit     int
+	DotLimit       int
+}
+
+// newFrame carries the drawings, with the chart runtime or the address that it is loaded from.
+func newFrame(drawings []drawing) (frame, error) {
+	f := frame{Style: template.CSS(pageStyle), Script: template.JS(pageScript), PointLimit: maxPoints, DotLimit: maxDots}
+	text, err := encode(drawings)
+	if err != nil {
+		return f, err
+	}
+	f.Drawings = template.JS(text)
+	if f.Runtime = template.JS(runtimeScript()); f.Runtime == "" {
+		f.RuntimeAddress = RuntimeAddress()
+	}
+	return f, nil
+}
+
+// size is about how large a page becomes: megabytes, and growing step by step costs more than filling them.
+func (f frame) size() int { return len(f.Runtime) + len(f.Drawings) + 1<<19 }
 
 // view is what the page template is given.
 type view struct {
+	frame
 	C               *study.Compare
 	Rate            figure
 	Period, Delay   figure
@@ -44,14 +82,6 @@ type view struct {
 	Poles           section
 	PoleTables      []poleTable
 	Rates           []section
-	PointLimit      int
-	DotLimit        int
-
-	Style          template.CSS
-	Drawings       template.JS
-	Runtime        template.JS
-	RuntimeAddress string
-	Script         template.JS
 }
 
 // inputView is one input: how its tracking degrades, in a table and in charts.
@@ -71,7 +101,7 @@ func Report(w io.Writer, c *study.Compare) error {
 		return fmt.Errorf("report: %w", err)
 	}
 	var b bytes.Buffer
-	b.Grow(len(v.Runtime) + len(v.Drawings) + 1<<19) // megabytes: growing step by step costs more than filling them
+	b.Grow(v.size())
 	if err := page.Execute(&b, v); err != nil {
 		return fmt.Errorf("report: %w", err)
 	}
@@ -83,8 +113,7 @@ func newView(c *study.Compare) (*view, error) {
 	t := tables{c: c, notes: c.Warnings}
 	v := &view{C: c, Trouble: c.Sampled != nil && !c.Sampled.Stable,
 		Compare: t.compare(), Series: t.series(), Steady: t.steady(), Requirements: t.requirements(),
-		Crossings: t.crossings(), PoleTables: t.poles(), PointLimit: maxPoints, DotLimit: maxDots,
-		Style: template.CSS(pageStyle), Script: template.JS(pageScript)}
+		Crossings: t.crossings(), PoleTables: t.poles()}
 	v.Ledger, v.LedgerUnit = t.ledger()
 	v.setFacts()
 	cv := &canvas{drawings: []drawing{}}
@@ -94,15 +123,9 @@ func newView(c *study.Compare) (*view, error) {
 		}
 	}
 	v.Inputs = joinInputs(v.Inputs, t.degrade(&cv.styles))
-	text, err := encode(cv.drawings)
-	if err != nil {
-		return nil, err
-	}
-	v.Drawings = template.JS(text)
-	if v.Runtime = template.JS(runtimeScript()); v.Runtime == "" {
-		v.RuntimeAddress = RuntimeAddress()
-	}
-	return v, nil
+	var err error
+	v.frame, err = newFrame(cv.drawings)
+	return v, err
 }
 
 // setFacts words the line under the verdict.
