@@ -37,6 +37,7 @@ func (r *reader) controller(l *Loop, n *node, timed bool) {
 	default:
 		s.missing("controller has neither model nor pid", "one of model and pid", "model", "pid")
 	}
+	l.prewarp = r.prewarp // before prefilter and feedforward, which have their own
 	l.Controller.Feedforward = r.sidePart(s.get("feedforward"), "feedforward")
 	l.Controller.Prefilter = r.sidePart(s.get("prefilter"), "prefilter")
 	r.antiWindup(l, s.get("anti_windup"))
@@ -131,10 +132,16 @@ func (r *reader) part(s *section, what, override string) (*Part, bool) {
 
 // mapping reads map and at of s.
 func (r *reader) mapping(s *section, what, override string) (Map, bool) {
-	at := r.prewarpFrequency(s)
 	if override != "" {
-		return r.overridden(override, at, s)
+		var own *big.Rat // it serves only a map that asks for it
+		if n := s.get("at"); n != nil {
+			own, _ = r.angular(n, "at")
+		}
+		m, ok := r.overridden(override, own, s, s.keyAt("at"))
+		r.prewarp = prewarp{own, m.At}
+		return m, ok
 	}
+	at := r.prewarpFrequency(s)
 	n := s.need("map", fmt.Sprintf("map: how %s becomes digital, one of %s", what, list(methods)))
 	word, ok := r.choice(n, "map", methods...)
 	if !ok {
@@ -163,6 +170,7 @@ func (r *reader) prewarpFrequency(s *section) *big.Rat {
 	if !ok || !r.belowNyquist(w, n.at) {
 		return nil
 	}
+	r.prewarp = prewarp{w, w}
 	return w
 }
 
@@ -179,8 +187,8 @@ func (r *reader) belowNyquist(w *big.Rat, at place) bool {
 	return false
 }
 
-// overridden reads Options.Map. at is the file's own prewarp frequency, nil for none.
-func (r *reader) overridden(text string, at *big.Rat, s *section) (Map, bool) {
+// overridden reads Options.Map. at is the file's own prewarp frequency, which stands at ownAt, nil for none.
+func (r *reader) overridden(text string, at *big.Rat, s *section, ownAt place) (Map, bool) {
 	word, rest, split := strings.Cut(strings.TrimSpace(text), " at ")
 	fail := func(message, expected, near string) (Map, bool) {
 		r.reportNear(s.at, message, expected, near)
@@ -199,7 +207,7 @@ func (r *reader) overridden(text string, at *big.Rat, s *section) (Map, bool) {
 		if at == nil {
 			return fail("--map prewarped without a frequency", `"prewarped at 40 Hz", or at: in the file`, "")
 		}
-		return Map{word, at}, true
+		return Map{word, at}, r.belowNyquist(at, ownAt)
 	}
 	q, e := parseQuantity(rest)
 	var f *big.Rat

@@ -258,8 +258,11 @@ limits in either.
 
 # Overrides
 
-Options, WithRate and WithMap read the same file for another rate or another map of the
-controller (not of prefilter and feedforward), with every check again. A model in z takes
-no other rate. Numbers stored with_period stay as stored, so that Ki and Kd change.
+Options, WithRate and WithMap give the loop of the same file at another rate or with another
+map of the controller (not of prefilter and feedforward), with every check again. The prewarp
+frequency of the file counts only under a map that asks for it. A model in z takes no other
+rate. Numbers stored with_period stay as stored, so that Ki and Kd change.
+
+Loops made from each other share their numbers: nobody changes a number or a slice of a Loop.
 */
 package loop

@@ -110,4 +110,9 @@ func checkWhole(t *testing.T, l *Loop) {
 	if len(problems) > 0 || again.Timing.Period.Cmp(tm.Period) != 0 {
 		t.Fatalf("its own rate is refused: %v", problems)
 	}
+	period := new(big.Rat).Mul(tm.Period, big.NewRat(3, 2))
+	other, problems := l.WithRate(period)
+	agree(t, "3/2 of the period", l, Options{Period: period}, other, problems)
+	other, problems = l.WithMap("hold")
+	agree(t, "another map", l, Options{Map: "hold"}, other, problems)
 }

@@ -30,6 +30,7 @@ type Loop struct {
 
 	open     func(path string) ([]byte, error) // as given to Parse, for WithRate and WithMap
 	options  Options
+	prewarp  prewarp
 	periodic bool // more than Timing.Period depends on the period
 }
 

@@ -96,14 +96,6 @@ func ParseWith(file string, src []byte, open func(path string) ([]byte, error), 
 	return l, nil
 }
 
-// WithMap reads the same file again with another map for the controller, written as
-// Options.Map.
-func (l *Loop) WithMap(method string) (*Loop, Problems) {
-	o := l.options
-	o.Map = method
-	return ParseWith(l.File, l.Source, l.open, o)
-}
-
 // loop reads the whole file. Sections that others need come first.
 func (r *reader) loop(root *node) *Loop {
 	s, broken := r.section(root, "the loop file", "loop", "output", "effort", "symbols", "plant", "controller",

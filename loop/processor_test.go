@@ -2,7 +2,6 @@ package loop
 
 import (
 	"math/big"
-	"path/filepath"
 	"reflect"
 	"testing"
 )
@@ -58,70 +57,5 @@ func TestSearchAndDisturbances(t *testing.T) {
 	}
 	if d := l.Disturbances[1]; d.At != "output" || d.SizeExact != nil {
 		t.Errorf("%+v", d)
-	}
-}
-
-// A loop at another rate that shares what it can equals the file read again, for every good file; where it cannot run the
-// messages are those of reading it.
-func TestWithRateSharing(t *testing.T) {
-	paths, _ := filepath.Glob("testdata/good/*.yaml")
-	starters, _ := filepath.Glob("../cmd/steadytick/starters/*.yaml")
-	shared := 0
-	for _, path := range append(paths, starters...) {
-		l, problems := Load(path)
-		if len(problems) > 0 {
-			t.Fatal(problems)
-		}
-		for _, factor := range []*big.Rat{big.NewRat(1, 1), big.NewRat(13, 10), big.NewRat(1, 7), big.NewRat(1, 1000), big.NewRat(50, 1)} {
-			period := new(big.Rat).Mul(l.Timing.Period, factor)
-			o := l.options
-			o.Period = new(big.Rat).Set(period)
-			want, refused := ParseWith(l.File, l.Source, l.open, o)
-			got, problems := l.WithRate(period)
-			if (len(refused) > 0) != (len(problems) > 0) {
-				t.Errorf("%s × %s: %v, read again: %v", path, factor, problems, refused)
-				continue
-			}
-			if len(refused) > 0 {
-				if l.sharing(period) != nil || problems.Error() != refused.Error() {
-					t.Errorf("%s × %s: %v, read again: %v", path, factor, problems, refused)
-				}
-				continue
-			}
-			if l.sharing(period) != nil {
-				shared++
-			}
-			same(t, path, got, want)
-			// The map afterwards keeps the period.
-			if m, problems := got.WithMap("backward"); len(problems) == 0 && m.Timing.Period.Cmp(period) != 0 {
-				t.Errorf("%s: with another map the period is %s", path, m.Timing.Period)
-			}
-		}
-	}
-	if shared < 20 {
-		t.Errorf("only %d loops were shared", shared)
-	}
-}
-
-// same compares two loops but for what only reading needs.
-func same(t *testing.T, path string, a, b *Loop) {
-	t.Helper()
-	x, y := *a, *b
-	x.open, y.open = nil, nil
-	if !reflect.DeepEqual(x, y) {
-		t.Errorf("%s at %s s: the shared loop differs from the file read again", path, a.Timing.Period.FloatString(9))
-	}
-}
-
-func BenchmarkWithRate(b *testing.B) {
-	l, problems := Load("../cmd/steadytick/starters/rotary.yaml")
-	if len(problems) > 0 {
-		b.Fatal(problems)
-	}
-	period := big.NewRat(1, 777)
-	for b.Loop() {
-		if _, problems := l.WithRate(period); len(problems) > 0 {
-			b.Fatal(problems)
-		}
 	}
 }

@@ -24,6 +24,7 @@ type reader struct {
 	timingAt   place    // where the rate stands
 	filePeriod *big.Rat // seconds as the file says, nil when that is wrong
 	periodic   bool     // a number of the controller was made with the period
+	prewarp    prewarp  // of the map that was read last
 	period     *big.Rat // seconds in force: the option's or the file's, nil when wrong
 }
 
