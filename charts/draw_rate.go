@@ -1,10 +1,6 @@
 package charts
 
-import (
-	"math"
-
-	"steadytick/study"
-)
+import "steadytick/study"
 
 // rates draws margins and errors over the sample rate and the rate window: three sections, for their
 // curves have nothing in common. They are no variants, so each section starts with the first styles.
@@ -45,11 +41,7 @@ func (cv *canvas) marginOverRate(c *study.Compare, x axis, marks []mark) (sectio
 func (cv *canvas) errorOverRate(c *study.Compare, x axis, marks []mark) (section, error) {
 	s := section{ID: "error-rate"}
 	y := axis{quantity: "steady tracking error", unit: plain(c.Units.Output)}
-	// Over more than a factor of 100 only a logarithmic axis shows both ends.
-	if low, high, ok := span(c.Curves.ErrorOverRate, ys, all); ok && low > 0 && high > 100*low {
-		low, high = math.Pow(10, math.Floor(math.Log10(low))), math.Pow(10, math.Ceil(math.Log10(high)))
-		y.log, y.min, y.max = true, &low, &high
-	}
+	y.wide(c.Curves.ErrorOverRate)
 	ch := chart{id: "error-over-rate", x: x, y: y, series: (&canvas{}).styled(c.Curves.ErrorOverRate), marks: marks}
 	err := cv.add(&s, ch, "Steady tracking error over the sample rate", "", 320)
 	return s, err

@@ -132,7 +132,7 @@ func (a axis) kind() string {
 
 // options are the series' settings that go-echarts has names for; details adds the rest.
 func (s series) options() []echarts.SeriesOpts {
-	data := points{curve: thin(s.curve, s.limit()), mark: s.style.Symbol, offset: s.index, gaps: s.gaps}
+	data := points{curve: thin(s.curve, s.limit()), mark: s.style.Symbol, offset: s.index, gaps: s.gaps, thin: s.style.Width < 2}
 	return []echarts.SeriesOpts{func(o *echarts.SingleSeries) {
 		o.Data = data
 		o.Symbol = "none"
@@ -172,6 +172,7 @@ type points struct {
 	mark   string // symbol, "" for none
 	offset int
 	gaps   bool // points 0 and 1, 2 and 3, … are joined, with a gap after each pair
+	thin   bool // pairs of one place are strokes rather than blocks
 }
 
 // MarshalJSON keeps nine digits of x and seven of y: more than the screen shows, half the length.
@@ -194,7 +195,11 @@ func (p points) MarshalJSON() ([]byte, error) {
 		case symbol:
 			out = append(out, `{"symbol":"`+p.mark+`","symbolSize":7,"value":`...)
 		case alone:
-			out = append(out, `{"symbol":"rect","symbolSize":[4,11],"value":`...)
+			size := "[4,11]"
+			if p.thin {
+				size = "[1.2,12]"
+			}
+			out = append(out, `{"symbol":"rect","symbolSize":`+size+`,"value":`...)
 		}
 		out = append(out, '[')
 		out = strconv.AppendFloat(out, p.curve.X[i], 'g', 9, 64)

@@ -39,7 +39,7 @@ func figuresIn(page string) map[string]shown {
 }
 
 // leaves lists the numbers, truth values, nulls and infinities of the JSON result by path.
-func leaves(t *testing.T, c *study.Compare) map[string]any {
+func leaves(t *testing.T, c any) map[string]any {
 	t.Helper()
 	text, err := json.Marshal(c)
 	if err != nil {

@@ -14,15 +14,17 @@ type ledgerRow struct {
 }
 
 // ledger is the delay ledger; the unit is common to its rows.
-func (t tables) ledger() (rows []ledgerRow, unitName string) {
+func (t tables) ledger() (rows []ledgerRow, unitName string) { return ledgerRows(t.c.DelayLedger) }
+
+func ledgerRows(list []study.LedgerItem) (rows []ledgerRow, unitName string) {
 	longest := 0.0
 	var all []float64
-	for _, l := range t.c.DelayLedger {
+	for _, l := range list {
 		longest = max(longest, l.Seconds)
 		all = append(all, l.Seconds)
 	}
 	u := seconds(all...)
-	for i, l := range t.c.DelayLedger {
+	for i, l := range list {
 		r := ledgerRow{Item: l.Item, Seconds: showFloat(fmt.Sprintf("delay_ledger.%d.seconds", i), l.Seconds, u),
 			Degrees: show(fmt.Sprintf("delay_ledger.%d.degrees", i), l.Degrees, one)}
 		if longest > 0 && l.Seconds > 0 {

@@ -99,6 +99,9 @@ func steadyMetric(s *Column, name string) (f Figure, why string, ok bool) {
 	return worst, why, true
 }
 
+// MetricUnit is the base unit of a metric by its name in requirements, "" for a plain number.
+func MetricUnit(name string, u Units) string { return requirementUnit(name, u) }
+
 // requirementUnit is the base unit in which a metric is compared and printed.
 func requirementUnit(name string, u Units) string {
 	switch name {

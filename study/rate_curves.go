@@ -12,7 +12,7 @@ var drawnMetrics = []string{
 }
 
 // mostTimerRates bounds the realizable rates drawn as ticks.
-const mostTimerRates = 300
+const mostTimerRates = 100
 
 // draw fills the curves of the report.
 func (j *rateJob) draw() error {

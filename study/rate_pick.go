@@ -27,18 +27,13 @@ func (j *rateJob) choose() error {
 	if mode := j.fastestMode(); 2*mode > from && 2*mode < hi {
 		from, name = 2*mode, fmt.Sprintf("%s, below which samples fold the plant's mode at %s", hertzText(2*mode), hertzText(mode))
 	}
-	target, reason := math.Sqrt(from*hi), "near the geometric middle of the window"
-	if from > lo {
-		reason += " above " + name
-	}
+	target, middle := math.Sqrt(from*hi), true
 	if reserve*from < target {
-		target, reason = reserve*from, "about twice "+name+", a reserve for the tolerances of the parts"
+		target, middle = reserve*from, false
 	}
 	wanted, moved := j.roundRate(target, from, hi)
-	if moved != "" {
-		reason += ", moved so that " + moved + " does not fold into the bandwidth"
-	}
-	p := &Pick{WantedHz: hertz(wanted), Settings: []TimerSetting{}, Reason: reason, Below: []Break{}, Above: []Break{}}
+	p := &Pick{WantedHz: hertz(wanted), Settings: []TimerSetting{}, Below: []Break{}, Above: []Break{}}
+	p.Reason = pickReason(p.WantedHz, from, lo, name, moved, middle)
 	period := new(big.Rat).Inv(wanted)
 	if t := j.l.Timer; t != nil {
 		at, ok := timerSetting(t, wanted, new(big.Rat).SetFloat64(lo), new(big.Rat).SetFloat64(hi))
@@ -54,6 +49,25 @@ func (j *rateJob) choose() error {
 	p.SlowestHz, p.FastestHz = Figure{span.low, span.low > 0}, Figure{span.high, !math.IsInf(span.high, 1)}
 	j.breaks(p, span)
 	return j.confirm(p, period)
+}
+
+// pickReason says why a rate was picked: how it lies to the rate from that it must not go below, and what it was moved for.
+func pickReason(rate, from, slowest float64, name, moved string, middle bool) string {
+	reason := "about twice " + name
+	if ratio := rate / from; ratio < 1.6 || ratio > 2.5 {
+		reason = fmt.Sprintf("%.2g times %s", ratio, name)
+	}
+	reason += ", a reserve for the tolerances of the parts"
+	if middle {
+		reason = "near the geometric middle of the window"
+		if from > slowest {
+			reason += " above " + name
+		}
+	}
+	if moved != "" {
+		reason += ", moved so that " + moved + " does not fold into the bandwidth"
+	}
+	return reason
 }
 
 // fastestMode is the highest frequency of the plant's lightly damped modes, Hz; 0 for none.
@@ -110,7 +124,13 @@ func (j *rateJob) roundRate(target, lo, hi float64) (rate *big.Rat, moved string
 		return best
 	}
 	first := nearest(func(float64) bool { return true })
-	best := nearest(func(f float64) bool { return j.foldsInside(f) == "" })
+	free := func(f float64) bool { return j.foldsInside(f) == "" }
+	best := nearest(free)
+	if first > 0 && (best == 0 || math.Abs(math.Log(best/target)) > farMove) {
+		if f := nearbyRate(target, func(f float64) bool { return inside(f) && free(f) }); f > 0 {
+			best = f
+		}
+	}
 	switch {
 	case best == 0:
 		best = first
@@ -129,6 +149,23 @@ func (j *rateJob) roundRate(target, lo, hi float64) (rate *big.Rat, moved string
 		return new(big.Rat).SetFloat64(best), moved
 	}
 	return r, moved
+}
+
+// farMove: rather than move further than this from the target, in logarithm, a rate of two digits is taken.
+const farMove = 0.25
+
+// nearbyRate is the allowed rate of two digits nearest to the target, faster ones first, within a factor of 1.6; 0 for none.
+func nearbyRate(target float64, allowed func(float64) bool) float64 {
+	for k := 0.0; k < 0.47; k += 0.01 {
+		for _, side := range [2]float64{1, -1} {
+			x := target * math.Exp(side*k)
+			unit := math.Pow(10, math.Floor(math.Log10(x))-1)
+			if f := math.Round(x/unit) * unit; allowed(f) {
+				return f
+			}
+		}
+	}
+	return 0
 }
 
 // foldsInside names a declared disturbance above half the rate that lands inside the bandwidth of the continuous loop, "" for none.

@@ -9,6 +9,7 @@ import (
 
 	"github.com/urfave/cli/v2"
 
+	"steadytick/charts"
 	"steadytick/loop"
 	"steadytick/study"
 )
@@ -115,5 +116,5 @@ func rate(ctx context.Context, stdout, stderr io.Writer, l *loop.Loop, req rateR
 	if err := writeJSON(stdout, req.json, result); err != nil {
 		return err
 	}
-	return writeReport(stdout, stderr, req.html, req.json == "-", func(w io.Writer) error { return errors.New("no report yet") })
+	return writeReport(stdout, stderr, req.html, req.json == "-", func(w io.Writer) error { return charts.RateReport(w, result) })
 }

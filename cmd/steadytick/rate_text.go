@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"io"
 	"math"
+	"slices"
 	"strings"
 
 	"steadytick/study"
@@ -277,7 +278,13 @@ func printCandidates(t *table, r *study.Rate) {
 			continue
 		}
 		state := "meets all"
-		if !c.Meets {
+		switch {
+		case slices.Contains(c.Fails, "can run"):
+			state = "cannot run"
+		case slices.Contains(c.Fails, "stable"):
+			state = "unstable"
+			c.Metrics = map[string]study.Figure{"processor_load": c.Metrics["processor_load"]} // margins of an unstable loop mislead here
+		case !c.Meets:
 			state = fmt.Sprintf("fails %d", len(c.Fails))
 		}
 		if c.Why == "chosen" || c.Why == "file" {
