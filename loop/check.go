@@ -13,6 +13,7 @@ const maxTicks = 1_000_000
 // check looks at what several sections say together. Every section by itself is fine.
 func (r *reader) check(l *Loop, top *section) {
 	r.checkTiming(l, top)
+	r.checkProcessor(l, top)
 	r.checkWindup(l, top)
 	r.checkReference(l, top)
 	r.checkDelay(l, top)

@@ -29,6 +29,10 @@ put in quotes. Limits of nesting: 50 lists, mappings or brackets, 200 columns of
 	inputs        list of inputs
 	requirements  list of "name op number unit"
 	settling_band percentage of the final value                  2 %
+	timer         the hardware timer
+	processor     what a tick costs
+	rate          range of rates to search
+	disturbances  list of known vibrations
 
 # Numbers and units
 
@@ -210,19 +214,31 @@ in seconds.
 
 	timer: {clock: 72 MHz, prescaler_bits: 16, reload_bits: 16, counting: up, postscale: 1}
 
-The hardware timer that makes the ticks. Its rates are clock/((prescaler + 1)·(reload + 1)·postscale), and with
-counting: center, up and down again, clock/(2·(prescaler + 1)·reload·postscale). clock and reload_bits (1 to 32) must be
-there; prescaler_bits (0 to 32) is 0, counting up and postscale (1 to 65536) 1 when left out.
+The hardware timer that makes the ticks. Its rates are
+
+	counting: up       clock/((prescaler + 1)·(reload + 1)·postscale)
+	counting: center   clock/(2·(prescaler + 1)·reload·postscale), up and down again, reload >= 1
+
+with any prescaler and reload that their registers hold (as in the reference manuals of
+common microcontrollers; from memory). clock and reload_bits (1 to 32) must be there;
+prescaler_bits (0 to 32) is 0, counting up and postscale (1 to 65536), the periods of the
+counter in a tick, 1 when left out. A clock is in Hz, kHz or MHz, 1e-6 Hz to 1e12 Hz;
+rad/s and rpm are refused, for a clock counts pulses.
 
 	processor: {cost: 55 us, budget: 40 %}
 	processor: {cost_cycles: 3960, clock: 72 MHz, budget: 40 %}
 
-cost is the processor time that a tick takes, interrupt entry and all; without one timing.compute stands for it. budget
-is the part of the tick that the loop may use, 100 % when left out.
+cost is the processor time that a tick takes, interrupt entry, waiting for the converter
+and all: it may be more than timing.compute, or less where a converter or a second core
+does part of the work, and nothing compares the two. It is written as a time, or as
+cost_cycles (above 0, up to 1e15) of a clock, not both. Without either timing.compute
+stands for it, which must then be above zero. budget is the part of the tick that the loop
+may use, above 0 % and up to 100 %, which is also what is taken when it is left out.
 
 	rate: {from: 50 Hz, to: 50 kHz}
 
-The range of rates to search; each end is found by the program when it is left out. The loop's own rate is in timing.
+The range of rates to search, from below to, both in the range of sample rates; each end is
+found by the program when it is left out. The loop's own rate is in timing.
 
 # Disturbances
 
@@ -230,8 +246,9 @@ At most 20, each a mapping of one key:
 
   - sine: {name: gear mesh, at: sensor, size: 0.002, frequency: 310 Hz}
 
-A vibration or ripple of known frequency. at is input (of the plant), output (when left out) or sensor; name and size may be
-left out. It tells where the frequency lands among the samples; runs do not contain it.
+A vibration or ripple of known frequency. at is input (of the plant), output (when left
+out) or sensor; name and size, not 0, may be left out. It tells where the frequency lands
+among the samples; runs do not contain it.
 
 # Requirements
 

@@ -1,8 +1,10 @@
 package loop
 
 import (
+	"math"
 	"math/big"
 	"reflect"
+	"strings"
 	"testing"
 )
 
@@ -57,5 +59,43 @@ func TestSearchAndDisturbances(t *testing.T) {
 	}
 	if d := l.Disturbances[1]; d.At != "output" || d.SizeExact != nil {
 		t.Errorf("%+v", d)
+	}
+}
+
+// The ends of every range of numbers are inside it; units are converted exactly.
+func TestHardwareLimits(t *testing.T) {
+	for _, text := range []string{
+		"timer: {clock: 1e12 Hz, prescaler_bits: 0, reload_bits: 1, postscale: 1}",
+		"timer: {clock: 0.000001 Hz, prescaler_bits: 32, reload_bits: 32, postscale: 65536}",
+		"timer: {clock: 1e6 MHz, reload_bits: 2^5}",
+		"processor: {cost_cycles: 1e15, clock: 1 MHz, budget: 100 %}",
+		"processor: {cost: 1e9 s}", // above compute, below it, above the tick: it is a cost all the same
+		"processor: {cost: 1e-15 s}",
+		"rate: {from: 1e-6 Hz, to: 1e9 Hz}",
+		"rate: {}",
+		"rate: {from: 1 Hz, to: 60.000001 rpm}",
+		"disturbances: []",
+		"disturbances: [" + strings.Repeat("{sine: {frequency: 1 Hz}}, ", 20) + "]",
+	} {
+		good(t, plain+text+"\n")
+	}
+	if got := good(t, plain+"timer: {clock: 48 kHz, reload_bits: 8}\n").Timer.Clock; got.Cmp(big.NewRat(48_000, 1)) != 0 {
+		t.Errorf("48 kHz is %s Hz", got)
+	}
+	if got := good(t, plain+"rate: {from: 90 rpm}\n").Search.From; got.Cmp(big.NewRat(3, 2)) != 0 {
+		t.Errorf("90 rpm is %s Hz", got)
+	}
+	// 310 Hz in rad/s: 620π = 1947.787445225672…, 16 digits of 50-digit arithmetic.
+	d := good(t, plain+"disturbances: [{sine: {frequency: 310 Hz}}]\n").Disturbances[0]
+	if f, _ := d.Frequency.Float64(); !(math.Abs(f-1947.787445225672) <= 1e-12) { // the last digit given, and half a unit of a float64 there, 1.1e-13
+		t.Errorf("310 Hz is %.17g rad/s", f)
+	}
+	s := good(t, plain+"disturbances: [{sine: {frequency: 1 kHz, at: input, size: -2}}, {sine: {frequency: 2 Hz, name: b, at: output}}]\n").Disturbances
+	if len(s) != 2 || s[0].At != "input" || s[0].Size != -2 || s[1].Name != "b" || s[1].At != "output" {
+		t.Errorf("%+v", s)
+	}
+	none := good(t, plain)
+	if none.Timer != nil || none.Processor != nil || none.Search != nil || none.Disturbances != nil {
+		t.Errorf("sections out of nothing: %+v", none)
 	}
 }
