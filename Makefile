@@ -14,7 +14,7 @@ SUMMARY     := bin/test-summary
 
 .DEFAULT_GOAL := build
 .NOTPARALLEL:
-.PHONY: demo check tools runtime build test race fuzz bench bench-once lint fmt-check modules reference clean
+.PHONY: demo check tools runtime build test race fuzz bench bench-once speed lint fmt-check modules reference clean
 
 demo: runtime build
 	bin/steadytick compare testdata/loops/winch-drum.yaml --html report.html
@@ -58,6 +58,10 @@ fuzz:
 
 bench:
 	$(GO) test -run '^$$' -bench . -benchmem ./...
+
+# The sweep of rate against the same work in NumPy and SciPy.
+speed: tools
+	GO="$(GO)" PYTHON="$(PYTHON)" scripts/speed.sh
 
 # Benchmarks compile and run.
 bench-once:

@@ -3,6 +3,7 @@ package study
 import (
 	"math"
 	"math/cmplx"
+	"slices"
 	"sort"
 )
 
@@ -55,7 +56,8 @@ func frequencyGrid(list []*analyzed, points int) []float64 {
 		}
 	}
 	sort.Float64s(grid)
-	return grid
+	// A pole and its conjugate give the same marks: points that are one to the eye, but no bracket about a maximum.
+	return slices.CompactFunc(grid, func(a, b float64) bool { return math.Abs(a-b) <= 1e-9*a })
 }
 
 const (
