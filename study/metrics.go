@@ -3,6 +3,7 @@ package study
 import (
 	"fmt"
 	"math"
+	"math/big"
 
 	"steadytick/loop"
 )
@@ -39,7 +40,7 @@ func metric(l *loop.Loop, c *Compare, name string) (Figure, string) {
 		f = c.Sampled.Transient.RiseTimeS
 		f.Value /= c.PeriodS
 	case name == "processor_load":
-		f = Fig(100 * seconds(costOf(l)) / c.PeriodS)
+		f = Fig(loadPercent(l))
 	default:
 		return f, "compare does not evaluate this metric"
 	}
@@ -50,6 +51,13 @@ func metric(l *loop.Loop, c *Compare, name string) (Figure, string) {
 		return f, "the loop has no such figure"
 	}
 	return f, ""
+}
+
+// loadPercent is the part of the tick that the processor spends on it, rounded once: a load that is a limit to the last digit meets it.
+func loadPercent(l *loop.Loop) float64 {
+	load := new(big.Rat).Quo(costOf(l), l.Timing.Period)
+	p, _ := load.Mul(load, big.NewRat(100, 1)).Float64()
+	return p
 }
 
 // judged tells whether compare evaluates the metric at all.

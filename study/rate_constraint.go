@@ -3,6 +3,7 @@ package study
 import (
 	"fmt"
 	"math"
+	"math/big"
 
 	"steadytick/loop"
 )
@@ -73,6 +74,15 @@ func needsOf(name string) simulated {
 	return simulated{}
 }
 
+// betweenTicks tells the metrics that need what lives between the ticks.
+func betweenTicks(name string) bool {
+	switch name {
+	case "step_error", "ramp_error", "parabola_error", "load_error", "ripple":
+		return true
+	}
+	return false
+}
+
 // constraints are "stable", that the loop can run, the processor's budget and the requirements of the file, in this order. The
 // requirements that no analysis judges are given apart.
 func constraints(l *loop.Loop) (list []*constraint, unjudged []loop.Requirement) {
@@ -81,9 +91,9 @@ func constraints(l *loop.Loop) (list []*constraint, unjudged []loop.Requirement)
 		{text: "can run", name: "runs", implied: true},
 	}
 	if p := l.Processor; p != nil && p.Budget != nil {
-		budget, _ := p.Budget.Float64()
+		percent, _ := new(big.Rat).Mul(p.Budget, big.NewRat(100, 1)).Float64() // rounded once, like the load
 		list = append(list, &constraint{
-			text: fmt.Sprintf("processor_load <= %s %%", number(100*budget)), name: "processor_load", op: "<=", limit: 100 * budget,
+			text: fmt.Sprintf("processor_load <= %s %%", number(percent)), name: "processor_load", op: "<=", limit: percent,
 			unit: "%", implied: true, figure: metricOf("processor_load"),
 		})
 	}
