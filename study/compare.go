@@ -87,7 +87,7 @@ func bothColumns(l *loop.Loop, c *Compare) (cont, sampled *analyzed, err error) 
 
 // column turns an analysis into a result column, without what needs simulation.
 func (a *analyzed) column(l *loop.Loop) *Column {
-	col := a.figures(l)
+	col := a.figures(l, true)
 	for i, x := range a.poles.X {
 		if a.block.period == nil {
 			p := x.Complex128()
@@ -103,14 +103,15 @@ func (a *analyzed) column(l *loop.Loop) *Column {
 	return col
 }
 
-// figures is column without the lists of poles.
-func (a *analyzed) figures(l *loop.Loop) *Column {
+// figures is column without the lists of poles, and without what lives between the ticks (ripple and worst error of each input)
+// unless that is asked for: it is the costliest part where a plant mode turns many times within a tick.
+func (a *analyzed) figures(l *loop.Loop, between bool) *Column {
 	k := lti.ErrorConstants(lti.Leading(a.block.open))
 	col := &Column{
 		Stable: a.stable, Type: k.Type,
 		PositionConstant: Fig(k.Position.Float64()), VelocityConstant: Fig(k.Velocity.Float64()), AccelerationConstant: Fig(k.Acceleration.Float64()),
 		StabilityByPoles: a.byPoles, StabilityByNyquist: a.byNyquist,
-		Steady: a.steady(l),
+		Steady: a.steady(l, between),
 	}
 	if a.stable {
 		for i := range steadyTerms {

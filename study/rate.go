@@ -83,6 +83,10 @@ func newRateJob(ctx context.Context, l *loop.Loop, r *Rate, o RateOptions) (*rat
 		return nil, err
 	}
 	j.list, j.unjudged = constraints(l)
+	j.sweep.quick = !o.Curves
+	for _, c := range j.list {
+		j.sweep.quick = j.sweep.quick && !betweenTicks(c.name)
+	}
 	if !cont.stable {
 		r.warn("continuous_unstable", "the continuous loop is unstable: a rate at which the sampled loop is stable is a coincidence to be looked at with care; mend the design first")
 	}

@@ -53,6 +53,9 @@ func (w *rateScan) bound(c *constraint, a, b sample) (float64, error) {
 		good, bad = b, a
 	}
 	tol := boundTo
+	if math.IsNaN(bad.slack) { // beyond it there is no figure, for want of length of the run as a rule: that has no exact end
+		return good.hz, nil
+	}
 	if c.needs.any() {
 		tol = boundSimulated
 		if hz, ok, err := w.stableEdge(c, good, bad); ok || err != nil {

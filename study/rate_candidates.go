@@ -94,14 +94,7 @@ func (j *rateJob) candidate(scan *rateScan, hz float64) (Candidate, error) {
 			every.tracking = true
 		}
 	}
-	p, err := scan.at(hz, simulated{})
-	if err != nil {
-		return row, err
-	}
-	soon, err := scan.s.settlesSoon(p)
-	if err == nil && soon {
-		p, err = scan.at(hz, every)
-	}
+	p, err := scan.whole(hz, every)
 	if err != nil {
 		return row, err
 	}
@@ -123,6 +116,21 @@ func (j *rateJob) candidate(scan *rateScan, hz float64) (Candidate, error) {
 		}
 	}
 	return row, nil
+}
+
+// whole is the loop at a rate with every figure; those of runs only where they are of ordinary length.
+func (w *rateScan) whole(hz float64, every simulated) (*ratePoint, error) {
+	if err := w.ctx.Err(); err != nil {
+		return nil, err
+	}
+	full := *w.s
+	full.quick = false
+	p := full.at(periodOf(hz), []mapped{w.m})[0]
+	soon, err := full.settlesSoon(p)
+	if err == nil && soon {
+		err = full.simulate(w.ctx, p, every)
+	}
+	return p, err
 }
 
 func hasInput(l *loop.Loop, kinds []string) bool {

@@ -3,6 +3,7 @@ package study
 import (
 	"fmt"
 	"math"
+	"strings"
 )
 
 // windows finds the intervals of every constraint and what they have in common.
@@ -95,7 +96,29 @@ func (j *rateJob) rateWindow(c *constraint, spans []rateSpan) (RateWindow, error
 	case len(spans) > 1:
 		w.Note = fmt.Sprintf("%d separate intervals", len(spans))
 	}
+	if gap := j.without(c); gap != "" {
+		w.Note = strings.TrimPrefix(w.Note+"; "+gap, "; ")
+	}
 	return w, nil
+}
+
+// without says where a constraint that has a figure at some rates has none at others though the loop is stable there; such a rate counts
+// as one that does not meet it.
+func (j *rateJob) without(c *constraint) string {
+	low, high, n := math.Inf(1), math.Inf(-1), 0
+	for _, s := range j.scan.samples(c) {
+		if math.IsNaN(s.slack) {
+			low, high = math.Min(low, s.hz), math.Max(high, s.hz)
+			n++
+		}
+	}
+	switch {
+	case n == 0:
+		return ""
+	case c.needs.step:
+		return fmt.Sprintf("no figure between %s and %s, where the step response does not settle in the longest run: counted as not met", hertzText(low), hertzText(high))
+	}
+	return fmt.Sprintf("no figure at %d of the rates between %s and %s: counted as not met", n, hertzText(low), hertzText(high))
 }
 
 // withUnit writes a figure with its unit.

@@ -22,6 +22,7 @@ type sweeper struct {
 	held  held
 	cont  *analyzed // the continuous loop; nil for a controller in z
 	extra *big.Rat  // seconds added to the compute time, nil for none
+	quick bool      // leave out what lives between the ticks
 }
 
 func newSweeper(l *loop.Loop, cont *analyzed) (*sweeper, error) {
@@ -84,7 +85,7 @@ func (s *sweeper) at(period *big.Rat, maps []mapped) []*ratePoint {
 			shared, err = s.held.at(period, p.loop.Timing.LoopDelay())
 		}
 		if err == nil {
-			err = p.analyse(shared)
+			err = p.analyse(shared, !s.quick)
 		}
 		if err != nil {
 			p.why = err.Error()
@@ -94,7 +95,7 @@ func (s *sweeper) at(period *big.Rat, maps []mapped) []*ratePoint {
 }
 
 // analyse fills the point from what is behind the hold.
-func (p *ratePoint) analyse(shared *heldAt) error {
+func (p *ratePoint) analyse(shared *heldAt, between bool) error {
 	b, err := shared.assemble(p.loop)
 	if err != nil {
 		return err
@@ -108,7 +109,7 @@ func (p *ratePoint) analyse(shared *heldAt) error {
 	}
 	T, _ := p.loop.Timing.Period.Float64()
 	p.c = &Compare{PeriodS: T, Units: Units{p.loop.Output, p.loop.Effort}}
-	p.c.Sampled = a.figures(p.loop)
+	p.c.Sampled = a.figures(p.loop, between)
 	p.c.Sampled.GainCrossings, p.c.Sampled.PhaseCrossings = nil, nil
 	return nil
 }

@@ -77,12 +77,7 @@ func (w *rateScan) simulateGrid(step func(done int)) error {
 	if !want.any() {
 		return nil
 	}
-	var chosen []*ratePoint
-	for i, p := range w.points {
-		if i%simulatedEvery == 0 || i == len(w.points)-1 {
-			chosen = append(chosen, p)
-		}
-	}
+	chosen := w.worthRunning()
 	var count counter
 	return parallel(len(chosen), func(i int) error {
 		if err := w.ctx.Err(); err != nil {
@@ -92,6 +87,24 @@ func (w *rateScan) simulateGrid(step func(done int)) error {
 		step(count.next())
 		return err
 	})
+}
+
+// sparseRatio: where a run takes more ticks than an ordinary one, every figure is that of T → 0 but for its last digits, and rates this ratio
+// apart are enough.
+const sparseRatio = 3
+
+// worthRunning are the points that are simulated: every third, fewer where runs are long, and the last.
+func (w *rateScan) worthRunning() []*ratePoint {
+	_, length := stepRun(w.m.loop, w.s.cont, nil)
+	var out []*ratePoint
+	last := 0.0
+	for i, p := range w.points {
+		long := p.hz*length > mostTicksRun && p.hz < sparseRatio*last
+		if i%simulatedEvery == 0 && !long || i == len(w.points)-1 {
+			out, last = append(out, p), p.hz
+		}
+	}
+	return out
 }
 
 // at is the loop at a rate, with the figures that a constraint needs.

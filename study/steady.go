@@ -44,15 +44,15 @@ func reached(g [3]float64) Figure {
 
 // steady fills the steady errors of a stable column. Of an unstable one only
 // the inputs are named.
-func (a *analyzed) steady(l *loop.Loop) []Steady {
+func (a *analyzed) steady(l *loop.Loop, between bool) []Steady {
 	var out []Steady
 	for _, in := range l.Inputs {
 		s := blankSteady(in)
 		switch in.Kind {
 		case "step", "ramp", "parabola":
-			a.steadyPolynomial(in, &s)
+			a.steadyPolynomial(in, &s, between)
 		case "sine":
-			a.steadySine(in, &s)
+			a.steadySine(in, &s, between)
 		case "load_step":
 			a.steadyLoad(l, in, &s)
 		}
@@ -61,7 +61,7 @@ func (a *analyzed) steady(l *loop.Loop) []Steady {
 	return out
 }
 
-func (a *analyzed) steadyPolynomial(in loop.Input, s *Steady) {
+func (a *analyzed) steadyPolynomial(in loop.Input, s *Steady, between bool) {
 	if !a.stable {
 		return
 	}
@@ -72,6 +72,9 @@ func (a *analyzed) steadyPolynomial(in loop.Input, s *Steady) {
 	s.Asymptote = &[3]Figure{Fig(g[0]), Fig(g[1]), Fig(g[2])}
 	if a.block.period == nil {
 		s.WorstError = absFigure(s.TrackingError)
+		return
+	}
+	if !between {
 		return
 	}
 	r := a.ripplePolynomial(in)
@@ -86,7 +89,7 @@ func absFigure(f Figure) Figure { return Figure{math.Abs(f.Value), f.OK} }
 
 // steadySine gives amplitude and phase of the error E = 1 − T(jω) for a sine of
 // the reference, at the ticks.
-func (a *analyzed) steadySine(in loop.Input, s *Steady) {
+func (a *analyzed) steadySine(in loop.Input, s *Steady, between bool) {
 	w, _ := in.Frequency.Float64()
 	if !a.stable {
 		return
@@ -95,6 +98,9 @@ func (a *analyzed) steadySine(in loop.Input, s *Steady) {
 	s.TrackingError = Fig(cmplx.Abs(e) * math.Abs(in.Size))
 	s.PhaseDeg = Fig(cmplx.Phase(e) * 180 / math.Pi)
 	s.LoopError = Fig(cmplx.Abs(1-a.block.toMeasurement(w)) * math.Abs(in.Size))
+	if !between {
+		return
+	}
 	s.WorstError = s.TrackingError
 	if a.block.period != nil {
 		r := a.rippleSine(in, w)
