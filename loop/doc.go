@@ -233,7 +233,8 @@ and all: it may be more than timing.compute, or less where a converter or a seco
 does part of the work, and nothing compares the two. It is written as a time, or as
 cost_cycles (above 0, up to 1e15) of a clock, not both. Without either timing.compute
 stands for it, which must then be above zero. budget is the part of the tick that the loop
-may use, above 0 % and up to 100 %, which is also what is taken when it is left out.
+may use, above 0 % and up to 100 %, which is also what is taken when it is left out. A budget that is written is
+a requirement, processor_load <= budget, for every command.
 
 	rate: {from: 50 Hz, to: 50 kHz}
 

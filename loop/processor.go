@@ -1,6 +1,9 @@
 package loop
 
-import "math/big"
+import (
+	"fmt"
+	"math/big"
+)
 
 // processor reads what a tick costs and how much of it the loop may use.
 func (r *reader) processor(l *Loop, n *node) {
@@ -17,6 +20,7 @@ func (r *reader) processor(l *Loop, n *node) {
 			if b.Sign() <= 0 || b.Cmp(big.NewRat(100, 1)) > 0 {
 				r.report(v.at, "budget is out of range", "above 0 %, up to 100 %")
 			} else {
+				l.Requirements = append(l.Requirements, budgetRequirement(b, v.at.line))
 				p.Budget = b.Quo(b, big.NewRat(100, 1))
 			}
 		}
@@ -37,6 +41,12 @@ func (r *reader) processor(l *Loop, n *node) {
 		}
 	}
 	l.Processor = p
+}
+
+// budgetRequirement is what a budget asks for, in per cent: a gate holds the loop to it as to any other.
+func budgetRequirement(percent *big.Rat, line int) Requirement {
+	limit, _ := percent.Float64()
+	return Requirement{Name: "processor_load", Op: "<=", Limit: limit, Text: fmt.Sprintf("processor_load <= %.6g %%", limit), Line: line}
 }
 
 // checkProcessor: something must say what a tick costs.

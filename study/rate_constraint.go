@@ -1,9 +1,8 @@
 package study
 
 import (
-	"fmt"
 	"math"
-	"math/big"
+	"slices"
 
 	"steadytick/loop"
 )
@@ -83,17 +82,16 @@ func betweenTicks(name string) bool {
 	return false
 }
 
-// constraints are "stable", that the loop can run, the processor's budget and the requirements of the file, in this order. The
+// constraints are "stable", that the loop can run, that the processor keeps up, and the requirements of the file (its budget among them), in this order. The
 // requirements that no analysis judges are given apart.
 func constraints(l *loop.Loop) (list []*constraint, unjudged []loop.Requirement) {
 	list = []*constraint{
 		{text: "stable", name: "stable", implied: true, unit: "1/s"},
 		{text: "can run", name: "runs", implied: true},
 	}
-	if p := l.Processor; p != nil && p.Budget != nil {
-		percent, _ := new(big.Rat).Mul(p.Budget, big.NewRat(100, 1)).Float64() // rounded once, like the load
-		list = append(list, &constraint{
-			text: fmt.Sprintf("processor_load <= %s %%", number(percent)), name: "processor_load", op: "<=", limit: percent,
+	if l.Processor != nil && !slices.ContainsFunc(l.Requirements, func(r loop.Requirement) bool { return r.Name == "processor_load" }) {
+		list = append(list, &constraint{ // a budget is a requirement already; without one the cost must still fit
+			text: "processor_load <= 100 %", name: "processor_load", op: "<=", limit: 100,
 			unit: "%", implied: true, figure: metricOf("processor_load"),
 		})
 	}

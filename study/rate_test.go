@@ -219,7 +219,7 @@ func TestContradictionIsExplained(t *testing.T) {
 		t.Fatalf("window %v, pick %v", r.WindowHz, r.Pick)
 	}
 	k := r.Conflict
-	if len(k.Sets) != 1 || strings.Join(k.Sets[0], " | ") != "processor_load <= 20 % | phase_margin >= 55 deg" {
+	if len(k.Sets) != 1 || strings.Join(k.Sets[0], " | ") != "phase_margin >= 55 deg | processor_load <= 20 %" {
 		t.Errorf("sets %q", k.Sets)
 	}
 	if len(k.Text) == 0 || !strings.Contains(k.Text[0], "processor_load") || !strings.Contains(r.Verdict, "No sample rate") {
