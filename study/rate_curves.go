@@ -77,8 +77,7 @@ func (j *rateJob) overRate(name string, scans []*rateScan) OverRate {
 	for _, w := range scans {
 		c := Curve{Name: w.m.name}
 		for _, p := range w.points {
-			need := needsOf(name)
-			if !p.stable() || need.step && !p.ran.step || need.tracking && !p.ran.tracking {
+			if !p.stable() || !p.has(needsOf(name)) {
 				continue
 			}
 			f, _ := metric(p.loop, p.c, name)

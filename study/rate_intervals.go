@@ -238,7 +238,7 @@ func (j *rateJob) climb(c *constraint, a, b, d sample, within []rateSpan) (sampl
 // reasonMissing says why a constraint has no figure at any rate.
 func (j *rateJob) reasonMissing(c *constraint) string {
 	for _, p := range j.scan.points {
-		if !p.stable() || c.needs.step && !p.ran.step || c.needs.tracking && !p.ran.tracking {
+		if !p.stable() || !p.has(c.needs) {
 			continue
 		}
 		if f, why := c.figure(p); !f.OK || why != "" {

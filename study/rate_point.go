@@ -195,6 +195,13 @@ func (p *ratePoint) track(ctx context.Context, a *analyzed) error {
 	return nil
 }
 
+// has tells whether the figures of the runs that are needed are there.
+func (p *ratePoint) has(need simulated) bool {
+	p.lock.Lock()
+	defer p.lock.Unlock()
+	return (p.ran.step || !need.step) && (p.ran.tracking || !need.tracking)
+}
+
 // settlesSoon tells whether the step figures of a point take a run of ordinary length. Beside the end of stability they do not, and
 // say nothing there.
 func (s *sweeper) settlesSoon(p *ratePoint) (bool, error) {

@@ -140,7 +140,7 @@ type sample struct{ hz, slack float64 }
 func (w *rateScan) samples(c *constraint) []sample {
 	var out []sample
 	for _, p := range w.points {
-		if c.needs.any() && p.stable() && (c.needs.step && !p.ran.step || c.needs.tracking && !p.ran.tracking) {
+		if p.stable() && !p.has(c.needs) {
 			continue
 		}
 		out = append(out, sample{p.hz, c.slack(p)})

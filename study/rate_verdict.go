@@ -1,6 +1,11 @@
 package study
 
-import "fmt"
+import (
+	"fmt"
+	"math"
+	"strconv"
+	"strings"
+)
 
 // answer is one or two sentences that say which rates work, what to pick, and what ends the window.
 func (j *rateJob) answer() error {
@@ -18,6 +23,7 @@ func (j *rateJob) verdict() string {
 		return text
 	}
 	text := "The loop works " + spansText(j.window) + "."
+	text += j.fileRate()
 	p := r.Pick
 	if p == nil {
 		return text + " No pick: " + r.PickNote + "."
@@ -30,6 +36,29 @@ func (j *rateJob) verdict() string {
 		text += " Above, " + breakText(p.Above) + "."
 	}
 	return text
+}
+
+// fileRate says how the rate of the file stands to the window.
+func (j *rateJob) fileRate() string {
+	for _, c := range j.r.Candidates {
+		if c.Map != j.r.Map || math.Abs(c.RateHz-j.r.FileRateHz) > toldApart*c.RateHz {
+			continue
+		}
+		rate := hertzText(j.r.FileRateHz)
+		if c.Meets {
+			return " The file's rate, " + rate + ", is one of them."
+		}
+		return " The file's rate, " + rate + ", is not: " + strings.Join(quoted(c.Fails), ", ") + "."
+	}
+	return ""
+}
+
+func quoted(list []string) []string {
+	out := make([]string, len(list))
+	for i, s := range list {
+		out[i] = strconv.Quote(s)
+	}
+	return out
 }
 
 // breakText says what breaks first and what next.
