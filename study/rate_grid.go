@@ -38,8 +38,8 @@ func (s *sweeper) rateGrid(lo, hi float64, n int, always ...float64) []float64 {
 	for _, w := range s.swinging() {
 		for k := 1; k <= mostFolds; k++ {
 			f := w / (math.Pi * float64(k))
-			for j := 3.0; j <= 13; j += 2 {
-				if d := math.Exp2(-j); k <= 8 || j == 7 {
+			for j := 3.0; j <= 13; j++ {
+				if d := math.Exp2(-j); k <= 8 || j == 5 || j == 7 || j == 9 {
 					grid = append(grid, f*(1-d), f*(1+d))
 				}
 			}

@@ -14,6 +14,9 @@ func (j *rateJob) windows() error {
 	if j.spans[0], err = j.scan.spans(j.list[0]); err != nil {
 		return err
 	}
+	if err := j.scan.lookInside(j.spans[0]); err != nil {
+		return err
+	}
 	step := j.progress("bounds", len(j.list))
 	var count counter
 	err = parallel(len(j.list)-1, func(i int) error {

@@ -4,6 +4,7 @@ import (
 	"context"
 	"math"
 	"math/big"
+	"slices"
 	"sync"
 )
 
@@ -131,6 +132,39 @@ func (w *rateScan) atPeriod(hz float64, period *big.Rat, want simulated) (*rateP
 	w.known[hz] = p
 	w.lock.Unlock()
 	return p, err
+}
+
+// fewInside: a stable interval with fewer rates of the grid in it gets this many more, so that the other figures, which an unstable
+// loop does not have, are seen inside of a narrow island.
+const fewInside = 9
+
+// lookInside adds points to the grid inside of narrow intervals.
+func (w *rateScan) lookInside(spans []rateSpan) error {
+	first, last := w.points[0].hz, w.points[len(w.points)-1].hz
+	want := wanted(w.list)
+	for _, s := range spans {
+		low, high := math.Max(s.low, first), math.Min(s.high, last)
+		n := 0
+		for _, p := range w.points {
+			if p.hz >= low && p.hz <= high {
+				n++
+			}
+		}
+		if n >= fewInside || !(low < high) {
+			continue
+		}
+		for i := range fewInside {
+			p, err := w.at(low*math.Pow(high/low, (float64(i)+0.5)/fewInside), want)
+			if err != nil {
+				return err
+			}
+			if !slices.Contains(w.points, p) {
+				w.points = append(w.points, p)
+			}
+		}
+	}
+	slices.SortFunc(w.points, func(a, b *ratePoint) int { return compareFloat(a.hz, b.hz) })
+	return nil
 }
 
 // sample is a constraint's slack at one rate.
