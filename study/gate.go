@@ -139,7 +139,7 @@ func slack(r Requirement) (Figure, Figure) {
 		return Figure{}, Figure{}
 	}
 	s := r.Value.Value - r.Limit
-	if r.Op == "<=" || r.Op == "<" {
+	if (r.Op == "<=" || r.Op == "<") && s != 0 { // and not −0
 		s = -s
 	}
 	if r.Limit == 0 {

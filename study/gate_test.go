@@ -163,3 +163,13 @@ func TestGateShowsTheFiguresOfCompare(t *testing.T) {
 		t.Errorf("only %d figures", figures)
 	}
 }
+
+// A value at its limit has a slack of 0, and not of −0, which would print with a sign.
+func TestSlackAtTheLimit(t *testing.T) {
+	for _, op := range []string{"<=", ">="} {
+		s, percent := slack(Requirement{Op: op, Limit: 4, Value: Fig(4)})
+		if s.Value != 0 || math.Signbit(s.Value) || percent.Value != 0 || math.Signbit(percent.Value) {
+			t.Errorf("%s: slack %v, %v %%", op, s.Value, percent.Value)
+		}
+	}
+}

@@ -12,13 +12,24 @@ import (
 // what sampling costs, for the delay has halved; what is faster still costs processor time and gains little. Our own choice.
 const reserve = 2
 
-// choose picks the recommended rate from the widest interval of the window.
+// choose picks the recommended rate from the widest interval of the window in which the timer makes one.
 func (j *rateJob) choose() error {
 	if len(j.window) == 0 {
 		j.r.PickNote = "no rate meets all requirements"
 		return nil
 	}
-	span := j.widestSpan()
+	j.warnFileTimer()
+	for _, span := range j.byWidth() {
+		if p, period := j.pickFrom(span); p != nil {
+			return j.confirm(p, period)
+		}
+	}
+	j.r.PickNote = "the timer makes no rate of the window"
+	return nil
+}
+
+// pickFrom picks a rate from one interval of the window, nil where the timer makes none of it.
+func (j *rateJob) pickFrom(span rateSpan) (*Pick, *big.Rat) {
 	lo, hi := math.Max(span.low, j.lo), math.Min(span.high, j.hi)
 	from, name := lo, "the slowest rate"
 	if span.low == 0 {
@@ -38,17 +49,38 @@ func (j *rateJob) choose() error {
 	if t := j.l.Timer; t != nil {
 		at, ok := timerSetting(t, wanted, new(big.Rat).SetFloat64(lo), new(big.Rat).SetFloat64(hi))
 		if !ok {
-			j.r.PickNote = fmt.Sprintf("the timer makes no rate between %s and %s", hertzText(lo), hertzText(hi))
-			return nil
+			return nil, nil
 		}
 		s := at.setting(wanted)
+		if math.Abs(s.ErrorPPM) > farSetting {
+			p.Reason = fmt.Sprintf("the timer's rate of the window nearest to %s, which is %s", hertzText(p.WantedHz), p.Reason)
+		}
 		p.Timer = &s
 		period = at.period()
 	}
 	p.RateHz, p.PeriodS = hertz(new(big.Rat).Inv(period)), seconds(period)
 	p.SlowestHz, p.FastestHz = Figure{span.low, span.low > 0}, Figure{span.high, !math.IsInf(span.high, 1)}
 	j.breaks(p, span)
-	return j.confirm(p, period)
+	return p, period
+}
+
+// farSetting: a setting further than 1 % from the rate wanted, in ppm, is said to be another rate.
+const farSetting = 1e4
+
+// warnFileTimer tells when the timer of the file cannot make the rate of the file.
+func (j *rateJob) warnFileTimer() {
+	if j.l.Timer == nil {
+		return
+	}
+	own := new(big.Rat).Inv(j.l.Timing.Period)
+	at, ok := timerSetting(j.l.Timer, own, nil, nil)
+	if !ok {
+		return
+	}
+	if s := at.setting(own); s.ErrorPPM != 0 {
+		j.r.warn("timer_misses_file_rate", "the timer does not make the file's rate of %s exactly: the nearest is %.9g Hz (prescaler %d, reload %d), %s ppm off",
+			hertzText(hertz(own)), s.RateHz, s.Prescaler, s.Reload, number(s.ErrorPPM))
+	}
 }
 
 // pickReason says why a rate was picked: how it lies to the rate from that it must not go below, and what it was moved for.
@@ -90,16 +122,12 @@ func (j *rateJob) warnFoldedMode() {
 	}
 }
 
-// widestSpan is the interval of the window with the greatest ratio of its ends, the slowest of equal ones.
-func (j *rateJob) widestSpan() rateSpan {
+// byWidth are the intervals of the window by the ratio of their ends, the widest first, the slowest first of equal ones.
+func (j *rateJob) byWidth() []rateSpan {
 	width := func(s rateSpan) float64 { return math.Min(s.high, j.hi) / math.Max(s.low, j.lo) }
-	best := j.window[0]
-	for _, s := range j.window[1:] {
-		if width(s) > width(best)*(1+1e-9) {
-			best = s
-		}
-	}
-	return best
+	out := slices.Clone(j.window)
+	slices.SortStableFunc(out, func(a, b rateSpan) int { return compareFloat(width(b), width(a)) })
+	return out
 }
 
 // roundSteps are the rates of a decade that people choose.

@@ -401,3 +401,36 @@ func TestRateStops(t *testing.T) {
 		t.Errorf("error %v", err)
 	}
 }
+
+// A timer whose rates lie far from the one wanted, or in a narrower interval of the window only, is told by the reason; one that misses the
+// file's rate by a warning; and the pick is a rate that it makes, by whole numbers.
+func TestPickKeepsToTheTimer(t *testing.T) {
+	base := strings.Replace(contradicting, "processor: {cost: 9 ms, budget: 20 %}\n", "rate: {from: 5 Hz, to: 200 Hz}\n", 1)
+	free := rateOf(t, base, RateOptions{})
+	if free.Pick == nil || free.Pick.Timer != nil {
+		t.Fatalf("%+v", free.Pick)
+	}
+	// 1000/(n) Hz with n up to 8: 125, 142.9, 166.7, 200 Hz within the window.
+	r := rateOf(t, base+"timer: {clock: 1 kHz, reload_bits: 3}\n", RateOptions{})
+	p := r.Pick
+	if p == nil || p.Timer == nil || p.Timer.Reload != 7 || p.RateHz != 125 || !strings.Contains(p.Reason, "the timer's rate of the window nearest to") {
+		t.Fatalf("%+v", p)
+	}
+	for _, w := range r.Warnings {
+		if w.Code == "timer_misses_file_rate" && !strings.Contains(w.Text, "125 Hz") {
+			t.Error(w.Text)
+		}
+	}
+	if r := rateOf(t, base+"timer: {clock: 1 kHz, reload_bits: 1}\n", RateOptions{}); r.Pick != nil || !strings.Contains(r.Verdict, "the timer makes no rate of the window") {
+		t.Errorf("%+v, %s", r.Pick, r.Verdict)
+	}
+	// The two intervals of the gantry: the timer makes rates of the slower, narrower one only.
+	src, err := os.ReadFile("../testdata/loops/gantry-carriage.yaml")
+	if err != nil {
+		t.Fatal(err)
+	}
+	r = rateOf(t, string(src)+"\ntimer: {clock: 10 kHz, prescaler_bits: 8, reload_bits: 1, postscale: 60}\n", RateOptions{})
+	if len(r.WindowHz) != 2 || r.Pick == nil || !(r.Pick.RateHz > r.WindowHz[0].Low.Value && r.Pick.RateHz < r.WindowHz[0].High.Value) {
+		t.Errorf("window %v, pick %+v", r.WindowHz, r.Pick)
+	}
+}
