@@ -53,6 +53,10 @@ func (r *reader) pid(l *Loop, n *node, timed bool) []Term {
 	if r.faults == faults && !s.damaged() {
 		r.pidFilter(f, s)
 		r.pidMaps(f, s)
+	} else if r.faults == faults { // a key without a value that nothing has asked for yet
+		for _, key := range []string{"filter", "filter_ratio", "map", "at"} {
+			s.get(key)
+		}
 	}
 	if r.faults > faults || s.damaged() {
 		return nil

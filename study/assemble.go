@@ -199,6 +199,9 @@ func mapTerm(t loop.Term, period *big.Rat) (out zdomain.Model, err error) {
 
 // joinTerms adds the mapped terms: Cm, and Cr with weights, prefilter and feedforward.
 func joinTerms(b *block, one bool) (cm, cr zdomain.Model, err error) {
+	if len(b.terms) == 0 {
+		return cm, cr, errors.New("the controller has no terms")
+	}
 	for i, t := range b.terms {
 		w := t.model
 		if !one {
