@@ -244,7 +244,7 @@ func (r *reader) antiWindup(l *Loop, n *node) {
 			return
 		}
 		if t, ok := r.positiveSeconds(s.need("tracking_time", "tracking_time: 50 ms"), "tracking_time"); ok {
-			l.Controller.AntiWindup = AntiWindup{"tracking", t}
+			l.Controller.AntiWindup = AntiWindup{Kind: "tracking", TrackingTime: t}
 		}
 	default:
 		r.report(n.at, fmt.Sprintf("anti_windup is %s here", n.kind), forms)

@@ -16,6 +16,8 @@ type Loop struct {
 	Output, Effort string // unit names of the signals
 	Symbols        []Symbol
 	Plant          sdomain.Model // dead_time included in Delay
+	Friction       *Friction     // of the plant, nil: none
+	Backlash       *Backlash     // of the plant, nil: none
 	Sensor         Sensor
 	Controller     Controller
 	Actuator       Actuator
@@ -45,7 +47,13 @@ type Symbol struct {
 type Sensor struct {
 	Model sdomain.Model // 1 when the file has no sensor
 	Bits  int           // 0: no quantization
-	Range [2]float64    // of the converter, in output units; valid when Bits > 0
+	Range [2]float64    // of the converter, in output units (of the curve's, with a Curve); valid when Bits > 0
+
+	Step    float64  // size of a code, in place of Bits and Range: a converter without ends; 0: none
+	Noise   float64  // rms of white noise on every sample, in the units of the converter
+	Offset  float64  // added before the conversion, in the units of the converter
+	Encoder *Encoder // nil: none; then neither Bits nor Step
+	Curve   *Curve   // nil: straight
 }
 
 // Controller computes
@@ -86,8 +94,12 @@ type Map struct {
 
 // AntiWindup is what the integrator does while the effort is limited.
 type AntiWindup struct {
-	Kind         string   // "none", "clamp" (stop integrating), "tracking" (back-calculation)
-	TrackingTime *big.Rat // seconds, for "tracking"
+	// Kind is "none"; "clamp": the integrator is held within Clamp; "stop": no integration while the effort is
+	// limited; "stop_outward": none while it is limited and what is integrated drives it further out;
+	// "tracking": back-calculation.
+	Kind         string
+	TrackingTime *big.Rat   // seconds, for "tracking"
+	Clamp        [2]float64 // for "clamp", effort units: the actuator's limits when not given
 }
 
 // Actuator is what limits the effort. Nil Limits: none.
@@ -95,6 +107,9 @@ type Actuator struct {
 	Limits *[2]float64
 	Bits   int     // 0: no quantization; needs Limits
 	Slew   float64 // effort units per second, 0: unlimited
+
+	Step     float64 // size of a code in place of Bits, 0: none
+	Deadband float64 // half width: the plant feels nothing within ±Deadband, and u less ±Deadband outside
 }
 
 // UpdateRule tells when a new effort reaches the actuator.
@@ -116,6 +131,13 @@ type Timing struct {
 	Update              UpdateRule
 	UpdateAfter         *big.Rat // for After
 	Jitter              *big.Rat // peak, of the sampling instant
+
+	Latency        *big.Rat  // interrupt entry, from the value in memory to the start of the computation; 0 when not given
+	UpdateJitter   *big.Rat  // peak, of the update instant; 0 when not given
+	Measured       *Measured // nil: none; then no Jitter
+	Missed         Chance    // ticks that do not run: no sample, the effort stays
+	Stale          Chance    // ticks that get the measurement of the tick before
+	MeasuredPeriod bool      // the firmware computes with the measured time between two ticks, not with the nominal period
 }
 
 // LoopDelay is the time from the sample to the update, exact seconds.
@@ -126,7 +148,11 @@ func (t Timing) LoopDelay() *big.Rat {
 	case After:
 		return new(big.Rat).Set(t.UpdateAfter)
 	}
-	return new(big.Rat).Add(t.Conversion, t.Compute)
+	d := new(big.Rat).Add(t.Conversion, t.Compute)
+	if t.Latency != nil {
+		d.Add(d, t.Latency)
+	}
+	return d
 }
 
 // Counting is how a timer counts.
@@ -160,12 +186,17 @@ type RateRange struct{ From, To *big.Rat }
 
 // Disturbance is one entry of disturbances.
 type Disturbance struct {
-	Kind      string   // "sine"
+	Kind      string   // "sine", "step", "noise" or "file"
 	Name      string   // "" when not given
 	At        string   // where it enters: "input" (plant input), "output" or "sensor"
-	Size      float64  // amplitude; 0 when not given: only its frequency is known
+	Size      float64  // sine: amplitude, 0 when not given: only its frequency is known; step: height; noise: rms
 	SizeExact *big.Rat // nil when not given
-	Frequency *big.Rat // rad/s
+	Frequency *big.Rat // sine: rad/s
+	Time      *big.Rat // step: seconds from the start
+	Band      *big.Rat // noise: −3 dB corner of its first-order spectrum in rad/s; nil: white, a new value every tick
+	File      string   // file: as written
+	Times     []float64
+	Values    []float64
 }
 
 // Input is one entry of inputs.
