@@ -77,7 +77,11 @@ func (a *agenda) updateAt(i int, k int64, sample dd.Float) dd.Float {
 	if a.e.tasks[i].UpdateOnGrid {
 		sample = a.periods[i].Mul(dd.New(float64(k))).Add(a.clocks[i].offset)
 	}
-	return sample.Add(a.clocks[i].delay)
+	at := sample.Add(a.clocks[i].delay)
+	if shift := a.e.tasks[i].UpdateShift; shift != nil {
+		at = at.Add(dd.New(shift(k)))
+	}
+	return at
 }
 
 // same tells whether b is the instant a.
@@ -136,6 +140,7 @@ func (a *agenda) next() (*instant, error) {
 	*in = instant{t: now.Float64(), samples: in.samples[:0], updates: in.updates[:0], arrive: in.arrive[:0]}
 	if same(a.periods[0].Mul(dd.New(float64(a.tick))), now) {
 		a.tick++
+		in.tick = true
 	}
 	if err := a.sampling(in, now); err != nil {
 		return nil, err
@@ -167,7 +172,10 @@ func (a *agenda) sampling(in *instant, now dd.Float) error {
 		}
 		in.samples = append(in.samples, i)
 		due := a.updateAt(i, c.next, c.at)
-		if due.Cmp(c.at) < 0 || len(c.due) > 0 && due.Cmp(c.due[len(c.due)-1]) <= 0 {
+		if a.e.tasks[i].UpdateShift != nil {
+			due = a.inOrder(i, due)
+		}
+		if !due.IsFinite() || due.Cmp(c.at) < 0 || len(c.due) > 0 && due.Cmp(c.due[len(c.due)-1]) <= 0 {
 			return a.disorder(i, c.next)
 		}
 		c.due = append(c.due, due)
@@ -179,6 +187,21 @@ func (a *agenda) sampling(in *instant, now dd.Float) error {
 		}
 	}
 	return nil
+}
+
+// inOrder moves a shifted update behind its sample and behind the update ahead of it.
+func (a *agenda) inOrder(i int, due dd.Float) dd.Float {
+	const apart = 1e-6 // of a period
+	c := &a.clocks[i]
+	if due.Cmp(c.at) < 0 {
+		due = c.at
+	}
+	if n := len(c.due); n > 0 {
+		if least := c.due[n-1].Add(dd.New(apart * a.periods[i].Float64())); due.Cmp(least) < 0 {
+			due = least
+		}
+	}
+	return due
 }
 
 func (a *agenda) disorder(i int, k int64) error {

@@ -7,7 +7,6 @@ import (
 	"sync"
 
 	"steadytick/internal/dd"
-	"steadytick/sdomain"
 )
 
 // Continuous is a linear continuous system with several inputs and outputs and a dead
@@ -34,14 +33,6 @@ type Channel struct {
 	B     []float64 // into the states, n numbers
 	D     []float64 // straight to the outputs, one number for each
 }
-
-// Inputs and outputs of a system made by NewPlant.
-const (
-	InputEffort      = 0
-	InputDisturbance = 1
-	OutputY          = 0
-	OutputM          = 1
-)
 
 // NewContinuous makes a system of A (n×n) and C (outputs×n) and its channels; inputs are
 // numbered 0 to inputs−1. Errors: shapes that do not fit, numbers that are not
@@ -88,84 +79,11 @@ func finite(list []float64) bool {
 	return true
 }
 
-// NewPlant joins a plant and a sensor,
-//
-//	y = plant·(u + d),  m = sensor·y
-//
-// with inputs InputEffort (u) and InputDisturbance (d) and outputs OutputY and OutputM. A
-// dead time of the sensor is carried by a second copy of the plant that runs behind by
-// it. Errors: ErrImproper, ErrRange, those of the models.
-func NewPlant(plant, sensor sdomain.Model) (*Continuous, error) {
-	p, err := realizeModel(plant)
-	if err != nil {
-		return nil, err
-	}
-	h, err := realizeModel(sensor)
-	if err != nil {
-		return nil, err
-	}
-	tp, th := deadTime(plant), deadTime(sensor)
-	both := p.after(h)
-	if th.Sign() == 0 {
-		s := newBlocks(both.n, both.a)
-		s.c = append(append(s.c, padded(p.c, 0, both.n)...), both.c...)
-		s.feed(both.b, []float64{p.d, both.d}, tp)
-		return s, s.limit()
-	}
-	n := p.n + both.n
-	a := make([]float64, n*n)
-	for i := range p.n {
-		copy(a[i*n:], p.a[i*p.n:(i+1)*p.n])
-	}
-	for i := range both.n {
-		copy(a[(p.n+i)*n+p.n:], both.a[i*both.n:(i+1)*both.n])
-	}
-	s := newBlocks(n, a)
-	s.c = append(append(s.c, padded(p.c, 0, n)...), padded(both.c, p.n, n)...)
-	s.feed(padded(p.b, 0, n), []float64{p.d, 0}, tp)
-	s.feed(padded(both.b, p.n, n), []float64{0, both.d}, new(big.Rat).Add(tp, th))
-	return s, s.limit()
-}
-
-func newBlocks(n int, a []float64) *Continuous {
-	return &Continuous{n: n, inputs: 2, outputs: 2, a: a, steps: map[string]*advance{}}
-}
-
-// feed adds one way into the system for u and the same for d.
-func (s *Continuous) feed(b, d []float64, delay *big.Rat) {
-	for input := range 2 {
-		s.channels = append(s.channels, Channel{Input: input, Delay: delay, B: b, D: d})
-	}
-}
-
-func (s *Continuous) limit() error {
-	if s.n > maxOrder {
-		return ErrRange
-	}
-	return nil
-}
-
 // padded puts v at position at among n zeros.
 func padded(v []float64, at, n int) []float64 {
 	out := make([]float64, n)
 	copy(out[at:], v)
 	return out
-}
-
-func realizeModel(m sdomain.Model) (*chain, error) {
-	tf, err := m.TF()
-	if err != nil {
-		return nil, err
-	}
-	return realizeExact(tf, m.Ratio)
-}
-
-// deadTime is the delay of m, 0 when it has none.
-func deadTime(m sdomain.Model) *big.Rat {
-	if m.Delay == nil {
-		return new(big.Rat)
-	}
-	return m.Delay
 }
 
 // step returns the prepared step of h seconds of a flow built on this system with the layout

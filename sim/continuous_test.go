@@ -45,7 +45,7 @@ func (c *continuousCase) config(t testing.TB) TwinConfig {
 	if c.PI != nil {
 		kp, ki := rat(jsonNumber(c.PI[0])), rat(jsonNumber(c.PI[1]))
 		cfg.Terms = append(cfg.Terms, TwinTerm{model(t, append(rats(kp.RatString()), ki), rats("1", "0"), "0"), 1})
-		cfg.AntiWindup = map[string]AntiWindup{"none": NoAntiWindup, "clamp": Clamp, "tracking": Tracking}[c.PI[2].(string)]
+		cfg.AntiWindup = map[string]AntiWindup{"none": NoAntiWindup, "clamp": StopOutward, "tracking": Tracking}[c.PI[2].(string)]
 		cfg.TrackingTime = c.PI[3].(float64)
 	}
 	if c.Prefilter != nil {

@@ -8,17 +8,25 @@ import (
 	"steadytick/zdomain"
 )
 
-// AntiWindup is what the integrators of a controller do while its effort is limited.
+// AntiWindup is what the integrators of a controller do while its effort is limited. Textbook rules, for an
+// integrator I with the input ρ·e and v the computed effort, u the one held after limits and slew:
+//
+//	I ← I + T·ρ·((1−α)·e before + α·e)     α = 0 forward, ½ tustin, 1 backward
+//
+// With α = 0 the effort is computed first and I after it; else I first, for this tick's effort.
 type AntiWindup int
 
 const (
 	// NoAntiWindup lets them run.
 	NoAntiWindup AntiWindup = iota
-	// Clamp stops them while the effort is limited and what they would integrate drives
-	// it further out.
+	// StopOutward undoes the increment of a tick whose effort is limited and driven further out by it.
+	StopOutward
+	// Stop undoes the increment of every tick whose effort is limited.
+	Stop
+	// Clamp keeps each integrator within bounds of its own, before its value is used.
 	Clamp
-	// Tracking adds (u − v)/TrackingTime to what the last one integrates, u the held effort
-	// and v the computed one (back-calculation). Further integrators in front of it are clamped.
+	// Tracking adds (u − v)/TrackingTime to what the last one integrates (back-calculation), after the effort.
+	// Further integrators in front of it follow StopOutward.
 	Tracking
 )
 
@@ -26,11 +34,13 @@ const (
 //
 //	Model · (Weight·F·r − measurement)
 //
-// with F the prefilter and the measurement the output number Read of those that the task reads.
+// with F the prefilter and the measurement the output number Read of those that the task reads. Ahead is
+// the α of its map (see AntiWindup), 0 where there is none.
 type Term struct {
 	Model  zdomain.Model
 	Weight float64
 	Read   int
+	Ahead  float64
 }
 
 // ControllerConfig describes a sampled controller,
@@ -45,6 +55,10 @@ type ControllerConfig struct {
 	Feedforward  *zdomain.Model
 	AntiWindup   AntiWindup
 	TrackingTime float64 // seconds, for Tracking, positive
+	Low, High    float64 // bounds of each integrator, for Clamp
+	// Timed, when set, is the same controller as parts that can be computed with the measured time
+	// between two ticks (see Task.MeasuredPeriod).
+	Timed *TimedConfig
 }
 
 // Controller is a difference equation in δ, ready to run; immutable, each run starts its own
@@ -57,13 +71,16 @@ type Controller struct {
 	reads                  []int
 	prefilter, feedforward *block
 	antiWindup             AntiWindup
-	trackGain              float64 // T/(TrackingTime·number of integrating terms)
+	trackGain              float64          // T/(TrackingTime·number of integrating terms)
+	low, high              float64          // for Clamp
+	timed                  *timedController // for Task.MeasuredPeriod; nil: the period is taken as it should be
 }
 
 // block is one model of a controller: a chain, integrators taken out of it, a delay.
 type block struct {
 	chain *chain
 	rho   []float64 // integrators: Σ rho[j]/δ^(j+1)
+	ahead float64   // what the integrator gains by this tick's input before it is used: α·T·ρ[0]
 	ticks int
 }
 
@@ -76,19 +93,26 @@ func NewController(cfg ControllerConfig) (*Controller, error) {
 	if cfg.AntiWindup == Tracking && !(cfg.TrackingTime > 0) {
 		return nil, errors.New("tracking needs a positive tracking time")
 	}
+	if cfg.AntiWindup == Clamp && !(cfg.Low < cfg.High && finite([]float64{cfg.Low, cfg.High})) {
+		return nil, errors.New("a clamped integrator needs bounds, the lower first")
+	}
 	period, _ := cfg.Period.Float64()
-	c := &Controller{period: period, exactPeriod: new(big.Rat).Set(cfg.Period), antiWindup: cfg.AntiWindup}
+	c := &Controller{
+		period: period, exactPeriod: new(big.Rat).Set(cfg.Period), antiWindup: cfg.AntiWindup,
+		low: cfg.Low, high: cfg.High,
+	}
 	integrating := 0
 	for _, t := range cfg.Terms {
 		b, err := c.block(t.Model, cfg.AntiWindup != NoAntiWindup)
 		if err != nil {
 			return nil, err
 		}
-		if !finite([]float64{t.Weight}) || t.Read < 0 {
-			return nil, errors.New("a term needs a finite weight and a measurement")
+		if !finite([]float64{t.Weight}) || t.Read < 0 || !(t.Ahead >= 0 && t.Ahead <= 1) {
+			return nil, errors.New("a term needs a finite weight, a measurement, and a share ahead from 0 to 1")
 		}
 		if len(b.rho) > 0 {
 			integrating++
+			b.ahead = t.Ahead * period * b.rho[0]
 		}
 		c.terms = append(c.terms, *b)
 		c.weights = append(c.weights, t.Weight)
@@ -110,7 +134,11 @@ func NewController(cfg ControllerConfig) (*Controller, error) {
 		}
 		*p.to = b
 	}
-	return c, nil
+	var err error
+	if cfg.Timed != nil {
+		c.timed, err = newTimed(cfg.Timed, &cfg)
+	}
+	return c, err
 }
 
 func (c *Controller) block(m zdomain.Model, split bool) (*block, error) {

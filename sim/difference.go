@@ -9,6 +9,8 @@ type blockState struct {
 	queue []float64 // inputs on their way, when the block has a delay
 	head  int
 	in    float64 // input of this tick, after the delay
+	// Of a single integrator: its value as used at this tick and at the one before.
+	used, before float64
 }
 
 func (b *block) start() blockState {
@@ -69,21 +71,55 @@ func (s *blockState) slope() float64 {
 //
 //	i[j] ← i[j] + T·(ρ[j]·in + i[j+1])
 //
-// extra is added to the last one; with hold, the increments stay away (those of the
-// last one only when all is true).
-func (s *blockState) integrate(period, extra float64, hold, all bool) {
+// extra is added to the last one; with hold, the increments of the integrators in front of it stay away.
+func (s *blockState) integrate(period, extra float64, hold bool) {
 	for j := range s.i {
 		up := 0.0
 		if j+1 < len(s.i) {
 			up = s.i[j+1]
 		}
-		if !hold || j == 0 && !all {
+		if !hold || j == 0 {
 			accumulate(s.i[j:j+1], s.ic[j:], []float64{period * (s.rho[j]*s.in + up)})
 		}
 	}
-	if len(s.i) > 0 {
+	if len(s.i) > 0 && extra != 0 {
 		accumulate(s.i[:1], s.ic, []float64{extra})
 	}
+}
+
+// undo is integrate at a tick whose increment does not count. A single integrator goes back to its value
+// at the tick before, and takes from this tick's input only what the next tick would use of it.
+func (s *blockState) undo(period float64) {
+	if len(s.i) != 1 || s.ahead == 0 {
+		return // nothing of this tick's input is in it yet
+	}
+	s.used = s.before
+	s.i[0], s.ic[0] = s.before+(period*s.rho[0]-s.ahead)*s.in, 0
+}
+
+// clamp keeps each integrator, as used at this tick, within low and high, and returns what that changes in the output.
+func (s *blockState) clamp(low, high float64) float64 {
+	change := 0.0
+	for j := range s.i {
+		ahead := 0.0
+		if j == 0 {
+			ahead = s.ahead * s.in
+		}
+		used := s.i[j] + ahead
+		kept := used
+		if kept < low {
+			kept = low
+		} else if kept > high {
+			kept = high
+		}
+		if kept != used {
+			s.i[j], s.ic[j] = kept-ahead, 0
+			if j == 0 {
+				change = kept - used
+			}
+		}
+	}
+	return change
 }
 
 // controllerState is a controller while it runs.
@@ -93,7 +129,15 @@ type controllerState struct {
 	prefilter, feedforward *blockState
 }
 
-func (c *Controller) start() *controllerState {
+// start is the controller at rest; measured asks for the one that takes the measured period.
+func (c *Controller) start(measured bool) stepper {
+	if measured && c.timed != nil {
+		return c.timed.start(c)
+	}
+	return c.fixed()
+}
+
+func (c *Controller) fixed() *controllerState {
 	s := &controllerState{Controller: c, terms: make([]blockState, len(c.terms))}
 	for i := range c.terms {
 		s.terms[i] = c.terms[i].start()
@@ -109,8 +153,15 @@ func (c *Controller) start() *controllerState {
 	return s
 }
 
-// effort returns the computed effort v of this tick, before any limit.
-func (s *controllerState) effort(r float64, m []float64) float64 {
+// stepper is a controller while it runs: at each tick effort and then advance.
+type stepper interface {
+	// effort returns the computed effort v of this tick, before any limit; period is the time since the tick before.
+	effort(r float64, m []float64, period float64) float64
+	// advance goes on to the next tick, knowing the computed effort v and the held one u.
+	advance(v, u float64)
+}
+
+func (s *controllerState) effort(r float64, m []float64, _ float64) float64 {
 	v := 0.0
 	if s.feedforward != nil {
 		v = s.feedforward.output(r)
@@ -122,31 +173,41 @@ func (s *controllerState) effort(r float64, m []float64) float64 {
 		s.prefilter.next(s.period)
 	}
 	for k := range s.terms {
-		v += s.terms[k].output(s.weights[k]*r - m[s.reads[k]])
+		t := &s.terms[k]
+		v += t.output(s.weights[k]*r - m[s.reads[k]])
+		if s.antiWindup == Clamp {
+			v += t.clamp(s.low, s.high)
+		}
 	}
 	return v
 }
 
-// advance goes on to the next tick, knowing the computed effort v and the held one u.
 func (s *controllerState) advance(v, u float64) {
-	if s.antiWindup == NoAntiWindup {
-		for k := range s.terms {
-			s.terms[k].next(s.period)
-		}
-		return
-	}
 	slope := 0.0
-	for k := range s.terms {
-		slope += s.terms[k].slope()
+	if s.antiWindup == StopOutward || s.antiWindup == Tracking {
+		for k := range s.terms {
+			slope += s.terms[k].slope()
+		}
 	}
 	outward := v > u && slope > 0 || v < u && slope < 0
 	for k := range s.terms {
 		t := &s.terms[k]
 		t.next(s.period)
-		if s.antiWindup == Clamp {
-			t.integrate(s.period, 0, outward, true)
-		} else {
-			t.integrate(s.period, s.trackGain*(u-v), outward, false)
+		if len(t.i) == 1 {
+			t.used = t.i[0] + t.ahead*t.in
 		}
+		switch s.antiWindup {
+		case StopOutward, Stop:
+			if outward || s.antiWindup == Stop && v != u {
+				t.undo(s.period)
+			} else {
+				t.integrate(s.period, 0, false)
+			}
+		case Tracking:
+			t.integrate(s.period, s.trackGain*(u-v), outward)
+		case Clamp:
+			t.integrate(s.period, 0, false)
+		}
+		t.before = t.used
 	}
 }

@@ -9,7 +9,8 @@ import (
 // held is an input column of the plant that follows the effort of a task through a channel.
 type held struct {
 	task, channel, column int
-	next                  int64 // number of the sample whose effort arrives next; negative: none yet
+	next                  int64   // number of the sample whose effort arrives next; negative: none yet
+	stands                float64 // behind the play of the task
 }
 
 // driven is a group of input columns that follow a signal through a channel: the value and
@@ -23,16 +24,36 @@ type driven struct {
 	change        float64 // instant of the next piece
 }
 
+// shaken is an input column of the plant that follows random noise, a new value at every period of the first
+// task; behind is the dead time of its channel in whole periods, rounded up.
+type shaken struct {
+	noise           coloured
+	channel, column int
+	behind          []float64 // values on their way, a ring
+	at              int
+}
+
 // layout is the list of the input columns of a run.
 type layout struct {
 	held    []held
 	driven  []driven
+	shaken  []shaken
 	columns int
+
+	friction, play int // columns of the dry friction force and of what play adds to y; −1: none
+	frictionFrom   int // channels of these
+	playFrom       int
+	single         bool // no input has two channels: the sensor has no dead time
 }
 
 // newLayout gives every (task, channel) and every (disturbance, channel) its columns.
 func newLayout(cfg *Config) *layout {
-	l := &layout{}
+	l := &layout{friction: -1, play: -1, single: true}
+	ways := make([]int, cfg.System.inputs)
+	for _, c := range cfg.System.channels {
+		ways[c.Input]++
+		l.single = l.single && ways[c.Input] == 1
+	}
 	for i := range cfg.Tasks {
 		for ch, c := range cfg.System.channels {
 			for _, in := range cfg.Tasks[i].Drives {
@@ -64,17 +85,79 @@ func newLayout(cfg *Config) *layout {
 			l.columns += width
 		}
 	}
+	l.noise(cfg)
+	for ch, c := range cfg.System.channels {
+		if cfg.Friction != nil && c.Input == InputFriction {
+			l.friction, l.frictionFrom = l.columns, ch
+			l.columns++
+		}
+		if cfg.Play != nil && c.Input == InputOutput {
+			l.play, l.playFrom = l.columns, ch
+			l.columns++
+		}
+	}
 	return l
 }
 
-// flow builds the propagation of the system with these columns, and its name.
-func (l *layout) flow(s *Continuous) (*flow, string) {
+// noise gives every (random disturbance, channel) its column.
+func (l *layout) noise(cfg *Config) {
+	period, _ := cfg.Tasks[0].Period.Float64()
+	for i, d := range cfg.Random {
+		for ch, c := range cfg.System.channels {
+			if c.Input != d.Input {
+				continue
+			}
+			delay, _ := c.Delay.Float64()
+			l.shaken = append(l.shaken, shaken{
+				noise:   newColoured(newDice(cfg.Seed, streamDisturbance+uint64(i)), d.RMS, d.Band, period),
+				channel: ch, column: l.columns, behind: make([]float64, int(math.Ceil(delay/period*(1-1e-12)))),
+			})
+			l.columns++
+		}
+	}
+}
+
+// step is the value of the noise for the period that begins.
+func (s *shaken) step() float64 {
+	v := s.noise.next()
+	if len(s.behind) == 0 {
+		return v
+	}
+	v, s.behind[s.at] = s.behind[s.at], v
+	s.at = (s.at + 1) % len(s.behind)
+	return v
+}
+
+// added tells whether a column is a disturbance that adds to y as it is.
+func (l *layout) added(s *Continuous, column int) bool {
+	for _, d := range l.driven {
+		if column >= d.column && column < d.column+d.width {
+			return s.channels[d.channel].Input == InputOutput
+		}
+	}
+	for _, d := range l.shaken {
+		if column == d.column {
+			return s.channels[d.channel].Input == InputOutput
+		}
+	}
+	return false
+}
+
+// matrices are those of the system with these columns.
+func (l *layout) matrices(s *Continuous) matrices {
 	m := l.columns
 	b, w := make([]float64, s.n*m), make([]float64, m*m)
-	var key strings.Builder
 	for _, h := range l.held {
 		fill(b, s.channels[h.channel].B, m, h.column)
-		fmt.Fprintf(&key, "h%d ", h.channel)
+	}
+	for _, d := range l.shaken {
+		fill(b, s.channels[d.channel].B, m, d.column)
+	}
+	if l.friction >= 0 {
+		fill(b, s.channels[l.frictionFrom].B, m, l.friction)
+	}
+	if l.play >= 0 {
+		fill(b, s.channels[l.playFrom].B, m, l.play)
 	}
 	for _, d := range l.driven {
 		fill(b, s.channels[d.channel].B, m, d.column)
@@ -85,9 +168,24 @@ func (l *layout) flow(s *Continuous) (*flow, string) {
 			w[d.column*m+d.column+1] = d.signal.w
 			w[(d.column+1)*m+d.column] = -d.signal.w
 		}
+	}
+	return matrices{s.n, m, s.a, b, w}
+}
+
+// key names the columns of a flow built on a system.
+func (l *layout) key() string {
+	var key strings.Builder
+	for _, h := range l.held {
+		fmt.Fprintf(&key, "h%d ", h.channel)
+	}
+	for _, d := range l.driven {
 		fmt.Fprintf(&key, "d%d,%d,%x ", d.channel, d.width, math.Float64bits(d.signal.w))
 	}
-	return newFlow(s.n, m, s.a, b, w), key.String()
+	for _, d := range l.shaken {
+		fmt.Fprintf(&key, "n%d ", d.channel)
+	}
+	fmt.Fprintf(&key, "f%d p%d", l.friction, l.play)
+	return key.String()
 }
 
 func fill(b, col []float64, m, j int) {
@@ -104,6 +202,15 @@ func (l *layout) through(s *Continuous, k int) []float64 {
 	}
 	for _, d := range l.driven {
 		out[d.column] = s.channels[d.channel].D[k]
+	}
+	for _, d := range l.shaken {
+		out[d.column] = s.channels[d.channel].D[k]
+	}
+	if l.friction >= 0 {
+		out[l.friction] = s.channels[l.frictionFrom].D[k]
+	}
+	if l.play >= 0 {
+		out[l.play] = s.channels[l.playFrom].D[k]
 	}
 	return out
 }

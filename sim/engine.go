@@ -37,11 +37,16 @@ func (p *probe) value(z []float64) float64 {
 // taskState is a task while it runs.
 type taskState struct {
 	*Task
-	state     *controllerState
+	state     stepper
 	act       actuator
 	reads     []*probe
+	sensors   []sensorState // none: all outputs are read as they are
+	positions []*probe      // of the encoders, nil for other sensors
 	m         []float64
-	skip      int64 // instants of the cycle before the first sample
+	count     int64   // samples so far, missed ones too
+	sampled   float64 // instant of the last sample that was taken
+	effort    float64 // last computed, as held
+	skip      int64   // instants of the cycle before the first sample
 	efforts   efforts
 	applied   int64 // number of the sample whose effort is applied next
 	held      float64
@@ -85,6 +90,11 @@ type engine struct {
 	tasks   []taskState
 	line    timeline
 	r       cursor
+	current *instant
+	parts   *mechanism // nil: none
+	marks   []marks    // of encoders that time their marks
+
+	followed bool // inputs that move are wanted at the end of every stretch
 
 	points *decimator
 	ticks  *decimator
@@ -99,7 +109,8 @@ func newEngine(cfg *Config) (*engine, error) {
 	}
 	s := cfg.System
 	e := &engine{cfg: cfg, layout: newLayout(cfg), tasks: make([]taskState, len(cfg.Tasks))}
-	e.flow, e.key = e.layout.flow(s)
+	base := e.layout.matrices(s)
+	e.flow, e.key = newFlow(base.n, base.m, base.a, base.b, base.s), e.layout.key()
 	e.z, e.dx = make([]float64, s.n+e.layout.columns), e.flow.scratch()
 	e.w, e.carry = e.z[s.n:], make([]float64, s.n)
 	for k := range s.outputs {
@@ -108,7 +119,7 @@ func newEngine(cfg *Config) (*engine, error) {
 	e.y, e.m = &e.outputs[0], &e.outputs[cfg.Tasks[0].Reads[0]]
 	e.r = cursor{signal: &cfg.Reference}
 	for i := range e.tasks {
-		e.tasks[i] = e.newTask(&cfg.Tasks[i])
+		e.tasks[i] = e.newTask(i, &cfg.Tasks[i])
 	}
 	line, err := newCycle(e)
 	if err != nil {
@@ -135,12 +146,17 @@ func newEngine(cfg *Config) (*engine, error) {
 	if cfg.Step != nil && cfg.Step.applies() {
 		e.watch = newStepWatch(e, cfg.Step)
 	}
+	e.timeMarks()
+	if e.parts, err = newMechanism(e); err != nil {
+		return nil, err
+	}
+	e.followed = e.watch != nil || e.parts != nil || len(e.marks) > 0
 	return e, nil
 }
 
-func (e *engine) newTask(t *Task) taskState {
+func (e *engine) newTask(i int, t *Task) taskState {
 	s := taskState{
-		Task: t, state: t.Controller.start(), m: make([]float64, len(t.Reads)),
+		Task: t, state: t.Controller.start(t.MeasuredPeriod), m: make([]float64, len(t.Reads)),
 		act:       actuator{limits: t.Limits, converter: t.effortConverter(), rise: math.Inf(1)},
 		reference: cursor{signal: &e.cfg.Reference},
 	}
@@ -148,8 +164,27 @@ func (e *engine) newTask(t *Task) taskState {
 		s.act.rise = t.Slew * t.Controller.period
 	}
 	s.act.last = t.Limits.clip(0)
+	s.effort = s.act.converter.Value(s.act.last)
 	for _, k := range t.Reads {
 		s.reads = append(s.reads, &e.outputs[k])
+	}
+	ideal := true
+	for k := range t.Sensors {
+		ideal = ideal && t.Sensors[k].plain()
+	}
+	if ideal {
+		return s
+	}
+	s.positions = make([]*probe, len(t.Reads))
+	for k := range t.Reads {
+		sensor := &Sensor{}
+		if k < len(t.Sensors) {
+			sensor = &t.Sensors[k]
+		}
+		if sensor.Encoder != nil {
+			s.positions[k] = &e.outputs[sensor.Encoder.Output]
+		}
+		s.sensors = append(s.sensors, newSensor(sensor, e.cfg.Seed, uint64(i*maxReads+k), t.Controller.period))
 	}
 	return s
 }
@@ -161,9 +196,9 @@ func (e *engine) interval(in *instant, gap *big.Rat) error {
 	if in.length == 0 {
 		return nil
 	}
-	part := new(big.Rat).Quo(gap, new(big.Rat).SetInt64(int64(in.parts)))
+	in.part = new(big.Rat).Quo(gap, new(big.Rat).SetInt64(int64(in.parts)))
 	var err error
-	in.step, err = e.cfg.System.step(e.flow, e.key, part)
+	in.step, err = e.cfg.System.step(e.flow, e.key, in.part)
 	return err
 }
 
@@ -179,16 +214,19 @@ func (e *engine) act(in *instant) {
 	if in.t >= e.change {
 		e.turn(in.t)
 	}
+	if in.tick {
+		for i := range e.layout.shaken {
+			n := &e.layout.shaken[i]
+			e.w[n.column] = n.step()
+		}
+	}
 	for _, i := range in.samples {
 		t := &e.tasks[i]
 		if t.skip > 0 {
 			t.skip--
 			continue
 		}
-		for k, p := range t.reads {
-			t.m[k] = t.Measure.Value(p.value(e.z))
-		}
-		e.compute(i, t, in.t)
+		e.sample(i, t, in.t)
 	}
 	for _, i := range in.updates {
 		e.apply(&e.tasks[i])
@@ -196,36 +234,90 @@ func (e *engine) act(in *instant) {
 	for _, k := range in.arrive {
 		h := &e.layout.held[k]
 		if q := &e.tasks[h.task].efforts; h.next >= 0 && h.next < q.count {
-			e.w[h.column] = q.at(h.next)
+			e.w[h.column] = h.felt(&e.tasks[h.task], q.at(h.next))
 		}
 		h.next++
 	}
 }
 
+// felt is what the plant feels of an effort: a dead zone and play take their part.
+func (h *held) felt(t *taskState, u float64) float64 {
+	if t.Deadband > 0 {
+		u = deadband(u, t.Deadband)
+	}
+	if t.Play > 0 {
+		h.stands = play(h.stands, u, t.Play)
+		return h.stands
+	}
+	return u
+}
+
+// sample is tick k of task i at the instant now: it is missed, or it reads and computes.
+func (e *engine) sample(i int, t *taskState, now float64) {
+	k := t.count
+	t.count++
+	if t.Missed != nil && t.Missed(k) {
+		t.efforts.push(t.effort, e.oldest(i, t))
+		return
+	}
+	period := t.Controller.period
+	if t.MeasuredPeriod && now > t.sampled {
+		period = now - t.sampled
+	}
+	t.sampled = now
+	if k == 0 || t.Stale == nil || !t.Stale(k) {
+		e.read(t, now, period, k)
+	}
+	e.compute(i, t, now, period)
+}
+
+// read takes the measurements of sample k.
+func (e *engine) read(t *taskState, now, period float64, k int64) {
+	if t.sensors == nil {
+		for j, p := range t.reads {
+			t.m[j] = p.value(e.z)
+		}
+		return
+	}
+	for j, p := range t.reads {
+		at := 0.0
+		if t.positions[j] != nil {
+			at = t.positions[j].value(e.z)
+		}
+		t.m[j] = t.sensors[j].measure(p.value(e.z), at, now, period, k)
+	}
+}
+
 // compute is the controller of task i with what it has sampled at t.
-func (e *engine) compute(i int, t *taskState, now float64) {
+func (e *engine) compute(i int, t *taskState, now, period float64) {
 	var r float64
 	if t.Reference > 0 {
 		r = e.tasks[t.Reference-1].held
 	} else {
 		r = t.reference.at(now)
 	}
-	v := t.state.effort(r, t.m)
+	v := t.state.effort(r, t.m, period)
 	u := t.act.hold(v)
 	t.state.advance(v, t.act.last)
-	oldest := t.applied
-	for k := range e.layout.held {
-		if h := &e.layout.held[k]; h.task == i {
-			oldest = min(oldest, h.next)
-		}
-	}
-	t.efforts.push(u, oldest)
+	t.effort = u
+	t.efforts.push(u, e.oldest(i, t))
 	if orZeroSign(t.Delay) == 0 {
 		t.held = u // tasks later in the list see it at once
 	}
 	if i == 0 {
 		e.ticks.add(&row{t: now, r: r, y: e.y.value(e.z), m: t.m[0], u: u})
 	}
+}
+
+// oldest is the lowest number of a sample of task i whose effort is still wanted.
+func (e *engine) oldest(i int, t *taskState) int64 {
+	oldest := t.applied
+	for k := range e.layout.held {
+		if h := &e.layout.held[k]; h.task == i {
+			oldest = min(oldest, h.next)
+		}
+	}
+	return oldest
 }
 
 // apply makes the next effort of a task the held one.
@@ -279,23 +371,72 @@ func (e *engine) propagate(p *advance, t, h float64) error {
 
 // free propagates over h seconds without a change of the inputs.
 func (e *engine) free(p *advance, t, h float64) error {
+	if e.parts != nil {
+		return e.parts.free(t, h, p != nil)
+	}
+	return e.stretch(p, t, h)
+}
+
+// stretch propagates over h seconds in one linear system.
+func (e *engine) stretch(p *advance, t, h float64) error {
+	e.begin()
+	if err := e.move(p, h); err != nil {
+		return err
+	}
+	e.end(t, h)
+	return nil
+}
+
+// begin and end tell those who follow the run within stretches.
+func (e *engine) begin() {
 	if e.watch != nil {
 		e.watch.before(e)
 	}
-	if p == nil {
-		if err := e.flow.advanceBy(e.z, e.carry, h); err != nil {
-			return err
-		}
-	} else {
-		p.apply(e.z, e.carry, e.dx)
+	for i := range e.marks {
+		e.marks[i].before(e)
 	}
+}
+
+func (e *engine) end(t, h float64) {
 	if e.watch != nil {
-		if p != nil {
-			e.flow.turn(e.w, h)
-		}
 		e.watch.after(e, t, h)
 	}
+	for i := range e.marks {
+		e.marks[i].after(e, t, h)
+	}
+}
+
+// move carries the state over h seconds.
+func (e *engine) move(p *advance, h float64) error {
+	if p == nil {
+		return e.flow.advanceBy(e.z, e.carry, h)
+	}
+	p.apply(e.z, e.carry, e.dx)
+	if e.followed {
+		e.flow.turn(e.w, h)
+	}
 	return nil
+}
+
+// prepared is the step of the part of the present interval in the present system; nil without whole or
+// where none is prepared.
+func (e *engine) prepared(whole bool) (*advance, error) {
+	in := e.current
+	if !whole || in == nil || in.part == nil {
+		return nil, nil
+	}
+	if p, ok := in.laws[e.parts.now]; ok {
+		return p, nil
+	}
+	p, err := e.cfg.System.step(e.flow, e.key, in.part)
+	if err != nil {
+		return nil, err
+	}
+	if in.laws == nil {
+		in.laws = map[*law]*advance{}
+	}
+	in.laws[e.parts.now] = p
+	return p, nil
 }
 
 // look records the point at t and returns the tracking error.
@@ -319,6 +460,7 @@ func (e *engine) look(t float64) (err float64, ok bool) {
 // span propagates over the interval after an instant whose tracking error is err; ok is false when a
 // signal is too large.
 func (e *engine) span(in *instant, err float64) (ok bool, fault error) {
+	e.current = in
 	h := in.length / float64(in.parts)
 	sum := in.weights[0] * err * err
 	for j := 1; j <= in.parts; j++ {

@@ -90,7 +90,7 @@ func (c *sampledCase) config(t testing.TB) Config {
 			task.Limits = Limits{true, in.Limits[0], in.Limits[1]}
 		}
 		if in.Measure != nil {
-			task.Measure = Converter{int(in.Measure[0]), in.Measure[1], in.Measure[2]}
+			task.Sensors = []Sensor{{Converter: Converter{Bits: int(in.Measure[0]), Low: in.Measure[1], High: in.Measure[2]}}}
 		}
 		if in.Jitter != nil {
 			task.Jitter = func(k int64) float64 {
@@ -106,7 +106,7 @@ func (c *sampledCase) config(t testing.TB) Config {
 			kp, ki := new(big.Rat).SetFloat64(in.PI[0].(float64)), new(big.Rat).SetFloat64(in.PI[1].(float64))
 			low := new(big.Rat).Sub(new(big.Rat).Mul(ki, task.Period), kp)
 			cc.Terms = []Term{{Model: inZ(t, []*big.Rat{low, kp}, rats("-1", "1"), in.Period), Weight: 1}}
-			cc.AntiWindup = map[string]AntiWindup{"none": NoAntiWindup, "clamp": Clamp, "tracking": Tracking}[in.PI[2].(string)]
+			cc.AntiWindup = map[string]AntiWindup{"none": NoAntiWindup, "clamp": StopOutward, "tracking": Tracking}[in.PI[2].(string)]
 			cc.TrackingTime = in.PI[3].(float64)
 		}
 		var err error

@@ -40,7 +40,7 @@ func TestAntiWindupByHand(t *testing.T) {
 	exactly(t, "u, integrator runs on", tr.TickU, []float64{1, 1, 1, 1, 1, 1, 0, -1})
 	exactly(t, "y", tr.TickY, []float64{0, 1, 2, 3, 4, 5, 6, 6})
 	// i stays while v > 1 and e > 0: v = 3 2 1 1 0 −1 −1 0
-	tr = piOnIntegrator(t, Clamp, 0, 3)
+	tr = piOnIntegrator(t, StopOutward, 0, 3)
 	exactly(t, "u, clamp", tr.TickU, []float64{1, 1, 1, 1, 0, -1, -1, 0})
 	exactly(t, "y", tr.TickY, []float64{0, 1, 2, 3, 4, 4, 3, 2})
 	// i ← i + e + (u − v)/2:  v = 3 4 3.5 2.25 0.625 −1, i = 2 2.5 2.25 1.625 0.625 −1
@@ -48,7 +48,7 @@ func TestAntiWindupByHand(t *testing.T) {
 	exactly(t, "u, tracking", tr.TickU, []float64{1, 1, 1, 1, 0.625, -1})
 	exactly(t, "y", tr.TickY, []float64{0, 1, 2, 3, 4, 4.625, 3.625})
 	// And the mirror images.
-	tr = piOnIntegrator(t, Clamp, 0, -3)
+	tr = piOnIntegrator(t, StopOutward, 0, -3)
 	exactly(t, "u, clamp, mirrored", tr.TickU, []float64{-1, -1, -1, -1, 0, 1, 1, 0})
 	tr = piOnIntegrator(t, Tracking, 2, -3)
 	exactly(t, "u, tracking, mirrored", tr.TickU, []float64{-1, -1, -1, -1, -0.625, 1})
@@ -57,7 +57,7 @@ func TestAntiWindupByHand(t *testing.T) {
 // Quantization is no limit: with the effort between two codes the integrator must go on.
 func TestQuantizedEffortDoesNotClamp(t *testing.T) {
 	c, err := NewController(ControllerConfig{
-		Period: rat("1"), Terms: []Term{{Model: inZ(t, rats("1/64"), rats("-1", "1"), "1"), Weight: 1}}, AntiWindup: Clamp,
+		Period: rat("1"), Terms: []Term{{Model: inZ(t, rats("1/64"), rats("-1", "1"), "1"), Weight: 1}}, AntiWindup: StopOutward,
 	})
 	if err != nil {
 		t.Fatal(err)
@@ -76,12 +76,12 @@ func TestQuantizedEffortDoesNotClamp(t *testing.T) {
 
 // 12 bit, 3.3 V: q = 3.3/4096 = 0.805664 mV; the ends hold, halves go up.
 func TestConverter(t *testing.T) {
-	c := Converter{12, 0, 3.3}
+	c := Converter{Bits: 12, Low: 0, High: 3.3}
 	near(t, "q", c.Value(0.0008), 0.000805664, 5e-10) // given to 6 digits
 	for _, v := range [][2]float64{{-1, 0}, {5, 3.3 * 4095 / 4096}, {3.3, 3.3 * 4095 / 4096}, {0.0004, 0}} {
 		near(t, "converter", c.Value(v[0]), v[1], 1e-15)
 	}
-	s := Converter{2, -1, 1}
+	s := Converter{Bits: 2, Low: -1, High: 1}
 	for _, v := range [][2]float64{{-0.25, 0}, {-0.26, -0.5}, {0.25, 0.5}, {0.74, 0.5}, {9, 0.5}, {-9, -1}} {
 		if got := s.Value(v[0]); got != v[1] {
 			t.Errorf("%g becomes %g, want %g", v[0], got, v[1])

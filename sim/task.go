@@ -19,11 +19,21 @@ type Task struct {
 	Delay  *big.Rat // seconds from the sample to the update, not negative; nil is 0
 
 	// Jitter, when set, shifts the sample of tick k by that many seconds. Instants must keep their
-	// order, and none comes before 0. It must be a function of k alone for two runs to agree.
+	// order, and none comes before 0. It must be a function of k alone for two runs to agree. See
+	// UniformJitter and MeasuredJitter.
 	Jitter func(k int64) float64
 	// UpdateOnGrid: the update keeps its place when the sample is shifted, as where updates
 	// wait for the next tick.
 	UpdateOnGrid bool
+	// UpdateShift, when set, shifts the update of tick k likewise; one that would come before its sample or
+	// before the update ahead of it comes right after them.
+	UpdateShift func(k int64) float64
+	// Missed and Stale, when set, tell which ticks do not run (no sample, the effort stays), and which run with
+	// the measurement of the tick before. See Chance.
+	Missed, Stale func(k int64) bool
+	// MeasuredPeriod: what is computed from times (the controller, when it was made for that; an encoder's
+	// velocity) takes the time since the last sample, not the nominal period.
+	MeasuredPeriod bool
 
 	Controller *Controller
 	Reads      []int // outputs sampled, in the order of Term.Read; Reads[0] is "m"
@@ -32,10 +42,13 @@ type Task struct {
 	// list, as the inner of two nested loops does.
 	Reference int
 
-	Measure Converter // of every output read; zero value: none
-	Limits  Limits    // of the effort; zero value: none
-	Bits    int       // of the effort over Limits; 0: no quantization
-	Slew    float64   // largest change of the effort in units a second; 0: no limit
+	Sensors  []Sensor // of the outputs read, in the order of Reads; shorter: none for the others
+	Limits   Limits   // of the effort; zero value: none
+	Bits     int      // of the effort over Limits; 0: no quantization
+	Step     float64  // of the effort, in place of Bits
+	Slew     float64  // largest change of the effort in units a second; 0: no limit
+	Deadband float64  // half width of the dead zone between the held effort and the plant
+	Play     float64  // backlash between them, after the dead zone: full width
 }
 
 // check finds mistakes of task i in a list of n for the system.
@@ -52,12 +65,19 @@ func (t *Task) check(i, n int, s *Continuous) error {
 		return bad("the controller is for another period")
 	case t.Reference < 0 || t.Reference > n || t.Reference == i+1:
 		return bad("no such reference")
-	case !t.Measure.valid() || !t.Limits.valid() || !finite([]float64{t.Slew}) || t.Slew < 0:
-		return bad("limits or converters that are not in order")
-	case t.Bits != 0 && !t.effortConverter().valid():
-		return bad("bits of the effort need limits")
+	case !t.Limits.valid() || !finite([]float64{t.Slew, t.Deadband, t.Play}) || t.Slew < 0 || t.Deadband < 0 || t.Play < 0:
+		return bad("limits that are not in order")
+	case !t.effortConverter().valid():
+		return bad("bits of the effort need limits, or a step above 0 in their place")
+	case len(t.Sensors) > len(t.Reads):
+		return bad("more sensors than outputs read")
 	case len(t.Reads) == 0:
 		return bad("reads nothing")
+	}
+	for k := range t.Sensors {
+		if err := t.Sensors[k].check(s); err != nil {
+			return bad(err.Error())
+		}
 	}
 	for _, k := range t.Controller.reads {
 		if k >= len(t.Reads) {
@@ -78,9 +98,9 @@ func (t *Task) check(i, n int, s *Continuous) error {
 }
 
 func (t *Task) effortConverter() Converter {
-	c := Converter{Bits: t.Bits, Low: t.Limits.Low, High: t.Limits.High}
-	if t.Bits > 0 && !t.Limits.On {
-		c.High, c.Low = 0, 0 // not valid
+	c := Converter{Bits: t.Bits, Step: t.Step}
+	if t.Limits.On {
+		c.Low, c.High = t.Limits.Low, t.Limits.High
 	}
 	return c
 }
@@ -99,12 +119,22 @@ type Drive struct {
 	Signal Signal
 }
 
+// RandomDrive is noise on an input of the system.
+type RandomDrive struct {
+	Input int
+	Random
+}
+
 // Config describes a run.
 type Config struct {
 	System       *Continuous
 	Tasks        []Task
 	Reference    Signal
 	Disturbances []Drive
+	Random       []RandomDrive // held for a period of the first task each
+	Seed         uint64        // of all noise of the run
+	Friction     *Friction     // of the plant, through InputFriction; nil: none
+	Play         *Play         // at the plant's output; nil: none
 	// Ticks is how many periods of the first task are run, at least 1. The run ends with the
 	// instant Ticks·Period, whose sample is still taken.
 	Ticks int64
@@ -143,6 +173,14 @@ func (c *Config) check() error {
 		if err := d.Signal.check(); err != nil {
 			return err
 		}
+	}
+	for i, d := range c.Random {
+		if d.Input < 0 || d.Input >= c.System.inputs || !d.valid() {
+			return fmt.Errorf("noise %d: no such input, or numbers that are not in order", i)
+		}
+	}
+	if c.Friction != nil && !c.Friction.valid() || c.Play != nil && !(c.Play.Gap >= 0 && finite([]float64{c.Play.Gap})) {
+		return errors.New("friction or play with numbers that are not in order")
 	}
 	if c.Step != nil {
 		spec := *c.Step

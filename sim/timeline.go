@@ -11,12 +11,15 @@ import (
 // instant is a moment at which something happens, and the interval that follows it.
 type instant struct {
 	t       float64
+	tick    bool  // a period of the first task begins
 	samples []int // tasks
 	updates []int // tasks
 	arrive  []int // indices into layout.held
 	length  float64
 	parts   int
-	step    *advance  // of length/parts; nil: not prepared
+	step    *advance // of length/parts; nil: not prepared
+	part    *big.Rat // length/parts where steps are prepared
+	laws    map[*law]*advance
 	weights []float64 // of the integral over the interval, parts + 1 of them
 }
 
@@ -57,7 +60,7 @@ func newCycle(e *engine) (*cycle, error) {
 	tasks := e.cfg.Tasks
 	whole := tasks[0].Period
 	for i := range tasks {
-		if tasks[i].Jitter != nil {
+		if tasks[i].Jitter != nil || tasks[i].UpdateShift != nil {
 			return nil, nil
 		}
 		whole = ratLCM(whole, tasks[i].Period)
@@ -132,6 +135,8 @@ func (c *cycle) place(e *engine, whole *big.Rat) []*big.Rat {
 		}
 		in := &c.list[len(c.list)-1]
 		switch m.kind {
+		case 0:
+			in.tick = true
 		case 1:
 			in.samples = append(in.samples, m.index)
 		case 2:

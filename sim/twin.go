@@ -27,8 +27,8 @@ type TwinConfig struct {
 	Terms         []TwinTerm
 	Prefilter     *sdomain.Model // nil is 1
 	Feedforward   *sdomain.Model // nil is 0
-	AntiWindup    AntiWindup
-	TrackingTime  float64 // seconds, for Tracking, positive
+	AntiWindup    AntiWindup     // Stop and Clamp, which are rules of programs, are followed as StopOutward
+	TrackingTime  float64        // seconds, for Tracking, positive
 	Limits        Limits
 	Reference     Signal
 	Disturbance   Signal  // at the plant input

@@ -121,7 +121,7 @@ func TestTwinStaircase(t *testing.T) {
 func TestTwinHeldOnTheLimit(t *testing.T) {
 	tr := twinOf(t, TwinConfig{
 		Plant: model(t, one(), rats("1", "0"), "0"), Sensor: unit(t),
-		Terms: []TwinTerm{{model(t, rats("1", "2"), rats("1", "0"), "0"), 1}}, AntiWindup: Clamp,
+		Terms: []TwinTerm{{model(t, rats("1", "2"), rats("1", "0"), "0"), 1}}, AntiWindup: StopOutward,
 		Limits: Limits{true, -1, 1}, Reference: Step(3), Duration: 12,
 	})
 	w := math.Sqrt(7) / 2
@@ -135,7 +135,7 @@ func TestTwinHeldOnTheLimit(t *testing.T) {
 	// Mirrored, the lower limit does the same.
 	down := twinOf(t, TwinConfig{
 		Plant: model(t, one(), rats("1", "0"), "0"), Sensor: unit(t),
-		Terms: []TwinTerm{{model(t, rats("1", "2"), rats("1", "0"), "0"), 1}}, AntiWindup: Clamp,
+		Terms: []TwinTerm{{model(t, rats("1", "2"), rats("1", "0"), "0"), 1}}, AntiWindup: StopOutward,
 		Limits: Limits{true, -1, 1}, Reference: Step(-3), Duration: 12,
 	})
 	for i := range tr.T {
@@ -266,7 +266,7 @@ func TestOperator(t *testing.T) {
 	cfg := TwinConfig{
 		Plant: model(t, rats("2"), rats("1", "0.3", "4"), "0.4"), Sensor: model(t, one(), rats("0.05", "1"), "0"),
 		Terms:  []TwinTerm{{model(t, rats("1", "2"), rats("1", "0"), "0"), 1}},
-		Limits: Limits{true, -1, 2}, Reference: Ramp(1), Disturbance: Step(0.5), AntiWindup: Clamp, Duration: 3,
+		Limits: Limits{true, -1, 2}, Reference: Ramp(1), Disturbance: Step(0.5), AntiWindup: StopOutward, Duration: 3,
 	}
 	if err := cfg.check(); err != nil {
 		t.Fatal(err)

@@ -134,7 +134,7 @@ func (w *twin) enter(ev *change, s *stretch, theta float64) {
 	from := w.state
 	w.state = ev.to(s.slope.at(w.r, theta))
 	w.length = math.Min(w.first, s.h)
-	if w.stalled < 2 || w.model.antiWindup != Clamp {
+	if w.stalled < 2 || w.model.antiWindup != StopOutward {
 		return
 	}
 	switch {

@@ -89,7 +89,11 @@ type builder struct {
 }
 
 func newTwinModel(cfg *TwinConfig) (*twinModel, error) {
-	b := &builder{cfg: cfg, model: &twinModel{limits: cfg.Limits, antiWindup: cfg.AntiWindup}}
+	rule := cfg.AntiWindup
+	if rule == Stop || rule == Clamp {
+		rule = StopOutward
+	}
+	b := &builder{cfg: cfg, model: &twinModel{limits: cfg.Limits, antiWindup: rule}}
 	var err error
 	if b.alone, err = realizeModel(cfg.Plant); err != nil {
 		return nil, err
@@ -354,7 +358,7 @@ func (m *twinModel) regime(md mode, frozen bool) *regime {
 func (m *twinModel) stopped(i int) bool {
 	for k, s := range m.integrators {
 		if s == i {
-			return m.antiWindup == Clamp || k >= m.outputs
+			return m.antiWindup == StopOutward || k >= m.outputs
 		}
 	}
 	return false

@@ -11,13 +11,19 @@ type stepWatch struct {
 
 // newStepWatch prepares y' = (c d)·[A B; 0 S]·(x, w).
 func newStepWatch(e *engine, spec *StepSpec) *stepWatch {
-	f := e.flow
+	s := &stepWatch{find: newFinder(spec.Band), final: spec.Final, z: make([]float64, len(e.z))}
+	s.refresh(e)
+	return s
+}
+
+// refresh follows a change of the system.
+func (s *stepWatch) refresh(e *engine) { s.slope = e.flow.derived(e.y.row) }
+
+// derived is the rate of the output with the row c over (x, w), as a row: c·[A B; 0 S].
+func (f *flow) derived(c []float64) []float64 {
 	N := f.n + f.m
-	s := &stepWatch{
-		find: newFinder(spec.Band), final: spec.Final, slope: make([]float64, N),
-		z: make([]float64, N),
-	}
-	for i, c := range e.y.row {
+	out := make([]float64, N)
+	for i, c := range c {
 		if c == 0 {
 			continue
 		}
@@ -29,10 +35,10 @@ func newStepWatch(e *engine, spec *StepSpec) *stepWatch {
 			if i >= f.n {
 				a *= f.scale[i-f.n]
 			}
-			s.slope[j] += c * a
+			out[j] += c * a
 		}
 	}
-	return s
+	return out
 }
 
 // value and slope at a state, as parts of the final value.

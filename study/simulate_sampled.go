@@ -48,7 +48,7 @@ func sampledConfig(l *loop.Loop, b *block, in loop.Input, length float64, conver
 		Limits: limitsOf(l), Slew: l.Actuator.Slew,
 	}
 	if converters {
-		task.Measure = sim.Converter{Bits: l.Sensor.Bits, Low: l.Sensor.Range[0], High: l.Sensor.Range[1]}
+		task.Sensors = []sim.Sensor{{Converter: sim.Converter{Bits: l.Sensor.Bits, Low: l.Sensor.Range[0], High: l.Sensor.Range[1]}}}
 		task.Bits = l.Actuator.Bits
 	}
 	ticks := int64(math.Max(1, math.Ceil(length/T*(1-1e-12))))

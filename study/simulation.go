@@ -120,7 +120,7 @@ func (b *block) controllerOf(l *loop.Loop) (*sim.Controller, error) {
 func antiWindupOf(l *loop.Loop) (sim.AntiWindup, float64) {
 	switch l.Controller.AntiWindup.Kind {
 	case "clamp":
-		return sim.Clamp, 0
+		return sim.StopOutward, 0
 	case "tracking":
 		t, _ := l.Controller.AntiWindup.TrackingTime.Float64()
 		return sim.Tracking, t
