@@ -45,6 +45,7 @@ type taskState struct {
 	m         []float64
 	count     int64   // samples so far, missed ones too
 	sampled   float64 // instant of the last sample that was taken
+	begun     bool    // one was taken
 	effort    float64 // last computed, as held
 	skip      int64   // instants of the cycle before the first sample
 	efforts   efforts
@@ -261,10 +262,10 @@ func (e *engine) sample(i int, t *taskState, now float64) {
 		return
 	}
 	period := t.Controller.period
-	if t.MeasuredPeriod && now > t.sampled {
+	if t.MeasuredPeriod && t.begun && now > t.sampled {
 		period = now - t.sampled
 	}
-	t.sampled = now
+	t.sampled, t.begun = now, true
 	if k == 0 || t.Stale == nil || !t.Stale(k) {
 		e.read(t, now, period, k)
 	}
