@@ -95,7 +95,8 @@ type engine struct {
 	parts   *mechanism // nil: none
 	marks   []marks    // of encoders that time their marks
 
-	followed bool // inputs that move are wanted at the end of every stretch
+	kick     *kick // nil: none
+	followed bool  // inputs that move are wanted at the end of every stretch
 
 	points *decimator
 	ticks  *decimator
@@ -278,6 +279,9 @@ func (e *engine) read(t *taskState, now, period float64, k int64) {
 		for j, p := range t.reads {
 			t.m[j] = p.value(e.z)
 		}
+		if e.kick != nil {
+			t.m[0] += e.kick.next()
+		}
 		return
 	}
 	for j, p := range t.reads {
@@ -301,6 +305,9 @@ func (e *engine) compute(i int, t *taskState, now, period float64) {
 	u := t.act.hold(v)
 	t.state.advance(v, t.act.last)
 	t.effort = u
+	if e.kick != nil {
+		e.kick.took(u, e.y.value(e.z))
+	}
 	t.efforts.push(u, e.oldest(i, t))
 	if orZeroSign(t.Delay) == 0 {
 		t.held = u // tasks later in the list see it at once
