@@ -28,7 +28,8 @@ func orderSix(t testing.TB) Config {
 func BenchmarkTick(b *testing.B) {
 	for _, points := range []int{1, 4, 8} {
 		b.Run(map[int]string{1: "points=1", 4: "points=4", 8: "points=8"}[points], func(b *testing.B) {
-			cfg := orderSix(b)
+			cfg := stableSix(b)
+			cfg.Tasks[0].Limits = Limits{On: true, Low: -24, High: 24}
 			cfg.PointsPerTick = points
 			cfg.Ticks = int64(max(b.N, 1))
 			b.ReportAllocs()

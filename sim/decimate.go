@@ -18,6 +18,8 @@ type decimator struct {
 	kept  []row
 	last  row
 	any   bool
+
+	low, high float64 // r − y of best[5] and best[6]
 }
 
 // newDecimator is for n rows, of which max are kept, one more for the last.
@@ -28,6 +30,20 @@ func newDecimator(n int64, max int) *decimator {
 		d.group = (n + groups - 1) / groups
 	}
 	return d
+}
+
+// dull counts a row that is neither kept nor extreme in its group, and says so; its other values are then not needed.
+// Without a row for every count, last is to be given at the end: see add.
+func (d *decimator) dull(y, u, miss float64) bool {
+	if d.seen == 0 || d.seen+1 >= d.group {
+		return false
+	}
+	b := &d.best
+	if y < b[1].y || y > b[2].y || u < b[3].u || u > b[4].u || miss < d.low || miss > d.high {
+		return false
+	}
+	d.seen++
+	return true
 }
 
 func (d *decimator) add(p *row) {
@@ -41,6 +57,7 @@ func (d *decimator) add(p *row) {
 		for i := range b {
 			b[i] = *p
 		}
+		d.low, d.high = p.r-p.y, p.r-p.y
 	} else {
 		d.compare(p)
 	}
@@ -62,10 +79,10 @@ func (d *decimator) compare(p *row) {
 	} else if p.u > b[4].u {
 		b[4] = *p
 	}
-	if e := p.r - p.y; e < b[5].r-b[5].y {
-		b[5] = *p
-	} else if e > b[6].r-b[6].y {
-		b[6] = *p
+	if e := p.r - p.y; e < d.low {
+		b[5], d.low = *p, e
+	} else if e > d.high {
+		b[6], d.high = *p, e
 	}
 }
 

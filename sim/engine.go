@@ -56,8 +56,8 @@ type taskState struct {
 
 // efforts keeps the efforts on their way, by the number of their sample.
 type efforts struct {
-	ring  []float64
-	count int64 // samples so far
+	ring  []float64 // its length a power of two
+	count int64     // samples so far
 }
 
 // push stores the next effort; oldest is the lowest number still wanted.
@@ -65,15 +65,15 @@ func (q *efforts) push(u float64, oldest int64) {
 	if oldest = max(oldest, 0); q.count-oldest >= int64(len(q.ring)) {
 		grown := make([]float64, max(8, 2*len(q.ring)))
 		for k := oldest; k < q.count; k++ {
-			grown[k%int64(len(grown))] = q.at(k)
+			grown[k&int64(len(grown)-1)] = q.at(k)
 		}
 		q.ring = grown
 	}
-	q.ring[q.count%int64(len(q.ring))] = u
+	q.ring[q.count&int64(len(q.ring)-1)] = u
 	q.count++
 }
 
-func (q *efforts) at(k int64) float64 { return q.ring[k%int64(len(q.ring))] }
+func (q *efforts) at(k int64) float64 { return q.ring[k&int64(len(q.ring)-1)] }
 
 // engine is a run in progress.
 type engine struct {
@@ -96,6 +96,7 @@ type engine struct {
 	marks   []marks    // of encoders that time their marks
 
 	kick     *kick // nil: none
+	general  bool  // never the shorter way of a plain run; for tests
 	followed bool  // inputs that move are wanted at the end of every stretch
 
 	points *decimator
@@ -333,7 +334,9 @@ func (e *engine) apply(t *taskState) {
 	if t.applied >= 0 && t.applied < t.efforts.count {
 		t.held = t.efforts.at(t.applied)
 		if t == &e.tasks[0] {
-			e.effort = math.Max(e.effort, math.Abs(t.held))
+			if a := math.Abs(t.held); a > e.effort {
+				e.effort = a
+			}
 		}
 	}
 	t.applied++

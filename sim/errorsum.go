@@ -56,14 +56,11 @@ func (s *errorSum) look(t, e float64) {
 	}
 }
 
-// add adds v to ∫e²dt (Neumaier's compensated sum).
+// add adds v to ∫e²dt, what rounding drops being kept (Knuth's exact sum).
 func (s *errorSum) add(v float64) {
 	sum := s.square + v
-	if math.Abs(s.square) >= math.Abs(v) {
-		s.carry += s.square - sum + v
-	} else {
-		s.carry += v - sum + s.square
-	}
+	back := sum - s.square
+	s.carry += (s.square - (sum - back)) + (v - back)
 	s.square = sum
 }
 

@@ -25,7 +25,7 @@ type flow struct {
 // advance is one prepared step: x += E·z, z = (x, w).
 type advance struct {
 	n int
-	e []float64 // E in blocks of four rows (the last filled up with zeros), each block by columns
+	e [][4]float64 // E in blocks of four rows (the last filled up with zeros), each block by columns
 }
 
 // newFlow takes A (n×n), B (n×m) and S (m×m) row by row.
@@ -88,7 +88,7 @@ func columnScale(b []float64, m, j int, size float64) float64 {
 func (f *flow) step(h dd.Float) (*advance, error) {
 	e := expm1(f.aug, h)
 	N := f.n + f.m
-	out := &advance{n: f.n, e: make([]float64, (f.n+3)/4*4*N)}
+	out := &advance{n: f.n, e: make([][4]float64, (f.n+3)/4*N)}
 	for i := range f.n {
 		for j := range N {
 			v := e.v[i*N+j].Float64()
@@ -98,7 +98,7 @@ func (f *flow) step(h dd.Float) (*advance, error) {
 			if math.IsNaN(v) || math.IsInf(v, 0) {
 				return nil, fmt.Errorf("the plant grows beyond the range of the arithmetic within %g s", h.Hi)
 			}
-			out.e[i/4*4*N+4*j+i%4] = v
+			out.e[i/4*N+j][i%4] = v
 		}
 	}
 	return out, nil
@@ -108,21 +108,61 @@ func (f *flow) step(h dd.Float) (*advance, error) {
 // a slow state under fast ticks would stand still one rounding short of each increment, 1e-9
 // off at λT = 1e-7. dx is scratch for the states filled up to fours.
 func (p *advance) apply(z, carry, dx []float64) {
-	e := p.e
+	if p.n <= 4 {
+		p.applyFour(z, carry)
+		return
+	}
+	e, N := p.e, len(z)
 	for i := 0; i+4 <= len(dx); i += 4 {
 		var a, b, c, d float64
-		for _, v := range z {
-			q := e[:4]
+		cols := e[:N]
+		for j, v := range z {
+			q := &cols[j]
 			a += q[0] * v
 			b += q[1] * v
 			c += q[2] * v
 			d += q[3] * v
-			e = e[4:]
 		}
-		r := dx[i : i+4]
+		e = e[N:]
+		r := (*[4]float64)(dx[i:])
 		r[0], r[1], r[2], r[3] = a, b, c, d
 	}
 	accumulate(z[:p.n], carry, dx)
+}
+
+// applyFour is apply for at most four states.
+func (p *advance) applyFour(z, carry []float64) {
+	if p.n == 0 {
+		return
+	}
+	var a, b, c, d float64
+	cols := p.e[:len(z)]
+	for j, v := range z {
+		q := &cols[j]
+		a += q[0] * v
+		b += q[1] * v
+		c += q[2] * v
+		d += q[3] * v
+	}
+	if p.n == 4 && len(z) >= 4 && len(carry) >= 4 {
+		x, r := (*[4]float64)(z), (*[4]float64)(carry)
+		x[0], r[0] = exactSum(x[0], a+r[0])
+		x[1], r[1] = exactSum(x[1], b+r[1])
+		x[2], r[2] = exactSum(x[2], c+r[2])
+		x[3], r[3] = exactSum(x[3], d+r[3])
+		return
+	}
+	dx := [4]float64{a, b, c, d}
+	for i := range p.n {
+		z[i], carry[i] = exactSum(z[i], dx[i]+carry[i])
+	}
+}
+
+// exactSum is v + y and what rounding drops of it (Knuth's exact sum).
+func exactSum(v, y float64) (s, dropped float64) {
+	s = v + y
+	t := s - v
+	return s, (v - (s - t)) + (y - t)
 }
 
 // accumulate does x += d with the part that rounding drops kept in carry (Knuth's exact sum).

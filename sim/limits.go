@@ -1,7 +1,5 @@
 package sim
 
-import "math"
-
 // Limits bound the effort. The zero value does not limit.
 type Limits struct {
 	On        bool
@@ -15,5 +13,11 @@ func (l Limits) clip(v float64) float64 {
 	if !l.On {
 		return v
 	}
-	return math.Max(l.Low, math.Min(v, l.High))
+	if v > l.High {
+		return l.High
+	}
+	if v < l.Low {
+		return l.Low
+	}
+	return v
 }

@@ -42,6 +42,16 @@ func Run(ctx context.Context, cfg Config) (*Trace, error) {
 const checkEvery = 4096
 
 func (e *engine) run(ctx context.Context) (*Trace, error) {
+	if e.plain() {
+		diverged, err := e.runPlain(ctx)
+		if err != nil {
+			return nil, err
+		}
+		if e.cfg.Progress != nil {
+			e.cfg.Progress(1)
+		}
+		return e.trace(diverged), nil
+	}
 	length := float64(e.cfg.Ticks) * e.tasks[0].Controller.period
 	diverged := false
 	for n := 0; ; n++ {

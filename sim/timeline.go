@@ -156,12 +156,19 @@ func floorMod(a, b *big.Rat) (n *big.Int, rest *big.Rat) {
 	return n, rest.Sub(a, rest)
 }
 
+// now is the instant that comes next: turn·period to the last bit, with the phase added to its rest.
+func (c *cycle) now() float64 { return c.instant(c.turn, c.at) }
+
+// instant is number at of a turn.
+func (c *cycle) instant(turn float64, at int) float64 {
+	p := turn * c.period.Hi
+	low := math.FMA(turn, c.period.Hi, -p) + turn*c.period.Lo
+	return p + (low + c.phase[at].Hi)
+}
+
 func (c *cycle) next() (*instant, error) {
 	in := &c.list[c.at]
-	// turn·period to the last bit, with the phase added to its rest.
-	p := c.turn * c.period.Hi
-	low := math.FMA(c.turn, c.period.Hi, -p) + c.turn*c.period.Lo
-	in.t = p + (low + c.phase[c.at].Hi)
+	in.t = c.now()
 	if c.turn == c.end && c.at == c.endAt {
 		c.out = *in
 		c.out.length, c.out.parts = 0, 0

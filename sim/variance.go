@@ -346,4 +346,4 @@ func (p *tickPlant) advance(e *advance, n, width int, from map[int]int) {
 }
 
 // at is entry (i, j) of E, which has the given number of columns.
-func (p *advance) at(i, j, columns int) float64 { return p.e[i/4*4*columns+4*j+i%4] }
+func (p *advance) at(i, j, columns int) float64 { return p.e[i/4*columns+j][i%4] }
