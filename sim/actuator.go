@@ -9,11 +9,15 @@ type actuator struct {
 	converter Converter
 	rise      float64 // largest change in a tick, +Inf for no limit
 	last      float64
+	limited   bool // some effort was
 }
 
 // hold returns the effort that will be held for the computed effort v.
 func (a *actuator) hold(v float64) float64 {
 	u := a.limits.clip(v)
+	if u != v {
+		a.limited = true
+	}
 	if u > a.last+a.rise {
 		u = a.last + a.rise
 	} else if u < a.last-a.rise {

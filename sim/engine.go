@@ -96,6 +96,7 @@ type engine struct {
 	marks   []marks    // of encoders that time their marks
 
 	kick     *kick // nil: none
+	tail     *tail // nil: not asked for
 	general  bool  // never the shorter way of a plain run; for tests
 	followed bool  // inputs that move are wanted at the end of every stretch
 
@@ -148,6 +149,9 @@ func newEngine(cfg *Config) (*engine, error) {
 	}
 	if cfg.Step != nil && cfg.Step.applies() {
 		e.watch = newStepWatch(e, cfg.Step)
+	}
+	if cfg.TailFrom > 0 {
+		e.tail = newTail(float64(cfg.TailFrom) * e.tasks[0].Controller.period)
 	}
 	e.timeMarks()
 	if e.parts, err = newMechanism(e); err != nil {
@@ -313,6 +317,9 @@ func (e *engine) compute(i int, t *taskState, now, period float64) {
 	if orZeroSign(t.Delay) == 0 {
 		t.held = u // tasks later in the list see it at once
 	}
+	if e.tail != nil && i == 0 && now >= e.tail.from {
+		e.tail.tick(u, r-e.y.value(e.z))
+	}
 	if i == 0 {
 		e.ticks.add(&row{t: now, r: r, y: e.y.value(e.z), m: t.m[0], u: u})
 	}
@@ -462,6 +469,9 @@ func (e *engine) look(t float64) (err float64, ok bool) {
 	}
 	e.points.add(&p)
 	err = p.r - p.y
+	if e.tail != nil && t >= e.tail.from {
+		e.tail.look(p.y, err)
+	}
 	if math.Abs(err) > e.sum.peak {
 		e.sum.look(t, err)
 	}

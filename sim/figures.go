@@ -24,6 +24,9 @@ type Figures struct {
 	SettlingTime     Maybe // seconds; not applicable when the run ends outside the band
 	PeakTime         Maybe // seconds; not applicable without overshoot
 	PeakEffort       Maybe
+	// RecoveryTime is how long the response takes, from its first moment within the settling band, to stay in it,
+	// in seconds: what is left of an effort that was at its limit. Not applicable when it was not, or when the run ends outside.
+	RecoveryTime Maybe
 }
 
 // StepSpec asks for the figures of a step response.
@@ -73,6 +76,8 @@ type finder struct {
 	top, topTime float64
 	outside      bool    // at the end of what was seen
 	settled      float64 // last passing into the band
+	entered      float64 // first moment within the band
+	inside       bool    // there was one
 	last         float64 // value at the end of what was seen
 }
 
@@ -140,11 +145,26 @@ func (f *finder) monotone(t0, t1, v0, v1 float64, at func(float64) (float64, flo
 			level = 1 + f.band
 		}
 		f.outside, f.settled = false, locate(level)
+		f.enter(f.settled)
+	}
+	// Through the band and out again in one stretch.
+	if !f.inside && edge(v0) > 0 && (v0-1)*(v1-1) < 0 {
+		level := 1 - f.band
+		if v0 > 1 {
+			level = 1 + f.band
+		}
+		f.enter(locate(level))
 	}
 }
 
-// figures ends the search.
-func (f *finder) figures(effort float64) Figures {
+func (f *finder) enter(t float64) {
+	if !f.inside {
+		f.inside, f.entered = true, t
+	}
+}
+
+// figures ends the search; effort is its peak, limited tells that it was at a limit.
+func (f *finder) figures(effort float64, limited bool) Figures {
 	out := Figures{PeakEffort: some(effort)}
 	if f.has10 && f.has90 {
 		out.RiseTime = some(f.t90 - f.t10)
@@ -159,6 +179,9 @@ func (f *finder) figures(effort float64) Figures {
 	}
 	if !f.outside {
 		out.SettlingTime = some(f.settled)
+		if limited && f.inside {
+			out.RecoveryTime = some(math.Max(0, f.settled-f.entered))
+		}
 	}
 	return out
 }

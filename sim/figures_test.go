@@ -131,3 +131,46 @@ func TestStepFiguresNotApplicable(t *testing.T) {
 	f, _, _ = StepFigures(context.Background(), cfg, StepSpec{Final: 1.5})
 	figure(t, "rise after a jump", f.RiseTime, math.Log(0.5/0.15), 1e-12)
 }
+
+// Recovery after a limit: 1/s under a PI controller whose integrator runs on. By hand (see piOnIntegrator): with T = 1 and
+// r = 3 the output climbs far beyond and back through 3; back-calculation recovers sooner.
+func TestRecoveryTime(t *testing.T) {
+	took := map[AntiWindup]float64{}
+	for _, rule := range []AntiWindup{NoAntiWindup, Tracking} {
+		c, err := NewController(ControllerConfig{
+			Period: rat("1/2"), Terms: []Term{{Model: inZ(t, rats("-0.75", "1"), rats("-1", "1"), "1/2"), Weight: 1}},
+			AntiWindup: rule, TrackingTime: 0.5,
+		})
+		if err != nil {
+			t.Fatal(err)
+		}
+		f, tr, err := StepFigures(context.Background(), Config{
+			System: plantOf(t, model(t, one(), rats("1", "0"), "0"), unit(t)), Reference: Step(3), Ticks: 60, MaxPoints: 5000, PointsPerTick: 40,
+			Tasks: []Task{{Period: rat("1/2"), Controller: c, Reads: []int{OutputM}, Drives: []int{InputEffort}, Limits: Limits{true, -1, 1}}},
+		}, StepSpec{Final: 3})
+		if err != nil {
+			t.Fatal(err)
+		}
+		// From the trace: the first and the last time that the output crosses the edge of the band, by straight lines.
+		first, last := 0.0, 0.0
+		for i := 1; i < len(tr.T); i++ {
+			a, b := math.Abs(tr.Y[i-1]-3)-0.06, math.Abs(tr.Y[i]-3)-0.06
+			if a > 0 != (b > 0) {
+				last = tr.T[i-1] + (tr.T[i]-tr.T[i-1])*a/(a-b)
+				if first == 0 {
+					first = last
+				}
+			}
+		}
+		near(t, "recovery", f.RecoveryTime.Value, last-first, 1e-9)
+		took[rule] = f.RecoveryTime.Value
+	}
+	if !(took[NoAntiWindup] > 1.5*took[Tracking]) || !(took[Tracking] > 0) {
+		t.Errorf("recovery %v", took)
+	}
+	// An effort that never meets its limit has nothing to recover from.
+	cfg := proportional(t, plantOf(t, model(t, one(), rats("1", "0"), "0"), unit(t)), "1/10", "0", "1", 100)
+	if f, _, err := StepFigures(context.Background(), cfg, StepSpec{Final: 1}); err != nil || f.RecoveryTime.OK {
+		t.Errorf("recovery %v, %v", f.RecoveryTime, err)
+	}
+}

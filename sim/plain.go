@@ -9,7 +9,7 @@ import (
 // disturbances: the loop in its usual form. runPlain follows it with the operations of act, look and span
 // in their order, so that both give the same bits, at a third of the time.
 func (e *engine) plain() bool {
-	if e.general || len(e.tasks) != 1 || e.parts != nil || e.watch != nil || e.kick != nil || e.followed ||
+	if e.general || len(e.tasks) != 1 || e.parts != nil || e.watch != nil || e.kick != nil || e.followed || e.tail != nil ||
 		len(e.layout.driven) > 0 || len(e.layout.shaken) > 0 || e.y.direct || e.m.direct {
 		return false
 	}

@@ -15,13 +15,16 @@ func TestPlainRunIsTheGeneralOne(t *testing.T) {
 		t.Fatal(err)
 	}
 	for name, change := range map[string]func(*Config){
-		"step":          func(*Config) {},
-		"many ticks":    func(c *Config) { c.Ticks, c.PointsPerTick = 20_000, 1 },
-		"sine":          func(c *Config) { c.Reference = Sine(1, 30) },
-		"parabola":      func(c *Config) { c.Reference = parabola },
-		"table":         func(c *Config) { c.Reference = table },
-		"no delay":      func(c *Config) { c.Tasks[0].Delay = nil },
-		"ticks late":    func(c *Config) { c.Tasks[0].Delay = rat("0.0017"); c.Tasks[0].Limits = Limits{On: true, Low: -3, High: 2} },
+		"step":       func(*Config) {},
+		"many ticks": func(c *Config) { c.Ticks, c.PointsPerTick = 20_000, 1 },
+		"sine":       func(c *Config) { c.Reference = Sine(1, 30) },
+		"parabola":   func(c *Config) { c.Reference = parabola },
+		"table":      func(c *Config) { c.Reference = table },
+		"no delay":   func(c *Config) { c.Tasks[0].Delay = nil },
+		"ticks late": func(c *Config) {
+			c.Tasks[0].Delay = rat("0.0017")
+			c.Tasks[0].Limits = Limits{On: true, Low: -3, High: 2}
+		},
 		"offset":        func(c *Config) { c.Tasks[0].Offset = rat("0.0012") },
 		"bits and slew": func(c *Config) { c.Tasks[0].Bits, c.Tasks[0].Slew = 9, 5000 },
 		"step size":     func(c *Config) { c.Tasks[0].Step = 0.125 },

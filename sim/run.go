@@ -21,6 +21,8 @@ type Trace struct {
 	PeakError, PeakErrorTime, RMSError float64
 	// PeakEffort is the largest magnitude held by the first task.
 	PeakEffort float64
+	// Tail holds what Config.TailFrom asks for.
+	Tail Tail
 	// Step holds the figures asked for by Config.Step.
 	Step Figures
 	// Diverged: a signal passed 1e100 and the run ended there.
@@ -95,8 +97,9 @@ func (e *engine) trace(diverged bool) *Trace {
 		PeakError: e.sum.peak, PeakErrorTime: e.sum.peakTime, RMSError: e.sum.rms(),
 		PeakEffort: e.effort, Diverged: diverged,
 	}
+	t.Tail = e.tail.figures()
 	if e.watch != nil && !diverged {
-		t.Step = e.watch.find.figures(e.effort)
+		t.Step = e.watch.find.figures(e.effort, e.tasks[0].act.limited)
 	}
 	last := e.points.last
 	t.FinalT, t.FinalR, t.FinalY, t.FinalM, t.FinalU = last.t, last.r, last.y, last.m, last.u

@@ -143,6 +143,8 @@ type Config struct {
 	PointsPerTick int
 	// MaxPoints bounds the points kept in the trace, and the ticks kept; 0 means 2000, at least 16.
 	MaxPoints int
+	// TailFrom, when positive, is the first tick of the part of the run that Trace.Tail is about.
+	TailFrom int64
 	// Step, when set, asks for the step figures of output 0 (its first value being 0).
 	Step *StepSpec
 	// Progress, when set, is called now and then with the part done, 0 to 1.

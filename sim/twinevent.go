@@ -133,6 +133,9 @@ func highest(f func(float64) float64, a, b float64) (x, top float64) {
 func (w *twin) enter(ev *change, s *stretch, theta float64) {
 	from := w.state
 	w.state = ev.to(s.slope.at(w.r, theta))
+	if w.state.md != linear {
+		w.out.limited = true
+	}
 	w.length = math.Min(w.first, s.h)
 	if w.stalled < 2 || w.model.antiWindup != StopOutward {
 		return

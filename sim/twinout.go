@@ -10,6 +10,7 @@ type twinOut struct {
 	y, m, u              []float64
 	sum                  errorSum
 	effort               float64
+	limited              bool // the effort was at a limit
 	find                 *finder
 	lastY, lastM, lastU  float64
 }
@@ -230,7 +231,7 @@ func (o *twinOut) trace(diverged bool, pieces int) *TwinTrace {
 			t.FinalT, t.FinalR, t.FinalY, t.FinalM, t.FinalU = t.T[n-1], t.R[n-1], t.Y[n-1], t.M[n-1], t.U[n-1]
 		}
 	} else if o.find != nil {
-		t.Step = o.find.figures(o.effort)
+		t.Step = o.find.figures(o.effort, o.limited)
 	}
 	return t
 }
