@@ -285,7 +285,7 @@ func (e *engine) read(t *taskState, now, period float64, k int64) {
 			t.m[j] = p.value(e.z)
 		}
 		if e.kick != nil {
-			t.m[0] += e.kick.next()
+			t.m[0] += e.kick.measured()
 		}
 		return
 	}
@@ -312,6 +312,8 @@ func (e *engine) compute(i int, t *taskState, now, period float64) {
 	t.effort = u
 	if e.kick != nil {
 		e.kick.took(u, e.y.value(e.z))
+		u += e.kick.given()
+		t.effort = u
 	}
 	t.efforts.push(u, e.oldest(i, t))
 	if orZeroSign(t.Delay) == 0 {

@@ -112,3 +112,17 @@ func TestNoVariance(t *testing.T) {
 		}
 	}
 }
+
+// x⁺ = a·x + b·(w − k·(x + n)), p = a − bk: the responses are geometric, b·k·p^j and b·p^j, so the sums of their
+// magnitudes bk/(1 − |p|) and b/(1 − |p|), with p negative here.
+func TestPeakGains(t *testing.T) {
+	cfg := proportional(t, plantOf(t, model(t, one(), rats("1", "1"), "0"), unit(t)), "1/2", "0", "3", 10)
+	g, err := Peaks(context.Background(), cfg)
+	if err != nil {
+		t.Fatal(err)
+	}
+	b := -math.Expm1(-0.5)
+	p := 1 - 4*b
+	near(t, "measurement", g.Measurement, 3*b/(1+p), 1e-13)
+	near(t, "effort", g.Effort, b/(1+p), 1e-13)
+}
