@@ -14,8 +14,11 @@ type Options struct {
 	Degrade  Degrade                          // zero value: nothing is varied
 	Curves   bool                             // fill Compare.Curves for the report
 	Version  string                           // for the foot of the report
+	Seed     uint64                           // of the noise of the loop as built; 0 is 1
 	Progress func(what string, done, all int) // nil: silent
 }
+
+func (o Options) seed() uint64 { return max(o.Seed, 1) }
 
 func (o Options) progress(what string, done, all int) {
 	if o.Progress != nil {
@@ -44,6 +47,13 @@ func RunCompare(ctx context.Context, l *loop.Loop, o Options) (*Compare, error) 
 	}
 	c.Sampled = sampled.column(l)
 	if err := simulateAll(ctx, l, c, cont, sampled, o); err != nil {
+		return nil, err
+	}
+	o.progress("as built", 0, 1)
+	if c.AsBuilt, err = built(ctx, l, c, cont, sampled, o); err != nil {
+		return nil, err
+	}
+	if err := c.Sampled.addWords(ctx, l, sampled); err != nil {
 		return nil, err
 	}
 	c.DelayLedger = ledger(l, sampled, cont)

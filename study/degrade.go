@@ -30,7 +30,7 @@ func newRun(t *sim.Trace) run {
 // simulateAll fills everything that comes from simulation: step figures, the figures of move
 // and file inputs, the errors at the end of unbounded ones and the degradation table.
 func simulateAll(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyzed, o Options) error {
-	list := variants(l, sampled, o.Degrade)
+	list := variants(l, sampled, o.Degrade, o.seed())
 	warnStored(c, l, list)
 	o.progress("step response", 0, 1)
 	if err := transients(ctx, l, c, cont, sampled); err != nil {
@@ -174,9 +174,9 @@ func (v variant) row(l *loop.Loop, in loop.Input, r run) DegradeRow {
 	period, _ := v.run.block.period.Float64()
 	delay, _ := v.run.block.delay.Float64()
 	out.PeriodS, out.LoopDelayS = Fig(period), Fig(delay)
-	if v.converters && v.run.stable {
+	if v.built && v.run.stable {
 		out.SteadyError = Figure{}
-		out.Note = "simulated with the word lengths of the file; its steady error is not predicted by linear analysis"
+		out.Note = "simulated on the hardware of the file; its steady error is not predicted by linear analysis"
 	}
 	return out
 }

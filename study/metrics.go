@@ -24,6 +24,9 @@ var columnMetrics = map[string]func(*Column) Figure{
 	"rise_time":             func(c *Column) Figure { return c.Transient.RiseTimeS },
 	"settling_time":         func(c *Column) Figure { return c.Transient.SettlingTimeS },
 	"peak_effort":           func(c *Column) Figure { return c.Transient.PeakEffort },
+	"recovery_time":         func(c *Column) Figure { return c.Transient.RecoveryTimeS },
+	"effort_noise":          func(c *Column) Figure { return c.EffortNoise },
+	"stuck_error":           func(c *Column) Figure { return c.StuckError },
 }
 
 // metric looks a metric of the sampled loop up by its name in requirements. The value
@@ -39,6 +42,10 @@ func metric(l *loop.Loop, c *Compare, name string) (Figure, string) {
 	case name == "samples_per_rise":
 		f = c.Sampled.Transient.RiseTimeS
 		f.Value /= c.PeriodS
+	case name == "limit_cycle":
+		if c.AsBuilt != nil && c.AsBuilt.Rest != nil {
+			f = c.AsBuilt.Rest.LimitCycle
+		}
 	case name == "processor_load":
 		f = Fig(loadPercent(l))
 	default:
@@ -48,9 +55,24 @@ func metric(l *loop.Loop, c *Compare, name string) (Figure, string) {
 		return Figure{}, "timing has no compute time and processor no cost"
 	}
 	if !f.OK {
-		return f, "the loop has no such figure"
+		return f, noFigure(l, c, name)
 	}
 	return f, ""
+}
+
+// noFigure says why a metric has no figure. A loop without what makes one has none of it: those count as 0.
+func noFigure(l *loop.Loop, c *Compare, name string) string {
+	switch name {
+	case "effort_noise":
+		return "the sensor declares neither noise nor words"
+	case "stuck_error":
+		return "the file declares nothing that could hold the loop off its place, or friction that no bound is known for"
+	case "limit_cycle":
+		return "the file declares nothing that quantizes or sticks"
+	case "recovery_time":
+		return "the effort does not reach a limit, or the response does not settle"
+	}
+	return "the loop has no such figure"
 }
 
 // loadPercent is the part of the tick that the processor spends on it, rounded once: a load that is a limit to the last digit meets it.
@@ -63,7 +85,7 @@ func loadPercent(l *loop.Loop) float64 {
 // judged tells whether compare evaluates the metric at all.
 func judged(name string) bool {
 	switch name {
-	case "effort_noise", "stuck_error", "word_margin":
+	case "word_margin":
 		return false
 	}
 	return true
@@ -113,13 +135,13 @@ func MetricUnit(name string, u Units) string { return requirementUnit(name, u) }
 // requirementUnit is the base unit in which a metric is compared and printed.
 func requirementUnit(name string, u Units) string {
 	switch name {
-	case "step_error", "ramp_error", "parabola_error", "load_error", "ripple", "peak_tracking_error", "rms_tracking_error", "stuck_error":
+	case "step_error", "ramp_error", "parabola_error", "load_error", "ripple", "peak_tracking_error", "rms_tracking_error", "stuck_error", "limit_cycle":
 		return u.Output
 	case "phase_margin":
 		return "deg"
 	case "gain_margin":
 		return "dB"
-	case "delay_margin", "jitter_margin", "rise_time", "settling_time":
+	case "delay_margin", "jitter_margin", "rise_time", "settling_time", "recovery_time":
 		return "s"
 	case "crossover", "bandwidth":
 		return "rad/s"
@@ -138,7 +160,8 @@ func judge(l *loop.Loop, c *Compare) {
 	c.Requirements = []Requirement{}
 	for _, r := range l.Requirements {
 		v, why := metric(l, c, r.Name)
-		out := Requirement{Name: r.Name, Op: r.Op, Limit: r.Limit, Value: v, Unit: requirementUnit(r.Name, c.Units)}
+		v, why, from := worse(l, c, r, v, why)
+		out := Requirement{Name: r.Name, Op: r.Op, Limit: r.Limit, Value: v, Unit: requirementUnit(r.Name, c.Units), From: from}
 		switch {
 		case !judged(r.Name):
 			c.warn("requirement_not_judged", "requirement %q cannot be judged: %s", r.Text, why)

@@ -36,6 +36,7 @@ type Compare struct {
 	LoopDelayS   float64       `json:"loop_delay_s"`
 	Continuous   *Column       `json:"continuous"` // null when the controller is digital only
 	Sampled      *Column       `json:"sampled"`
+	AsBuilt      *AsBuilt      `json:"as_built"` // null when the file declares no hardware, or the loop is unstable
 	DelayLedger  []LedgerItem  `json:"delay_ledger"`
 	Requirements []Requirement `json:"requirements"`
 	Degrade      []DegradeRow  `json:"degrade"`
@@ -78,6 +79,11 @@ type Column struct {
 	CrossoverRadS   Figure `json:"crossover_rad_s"`
 	BandwidthRadS   Figure `json:"bandwidth_rad_s"`
 	JitterMarginS   Figure `json:"jitter_margin_s"`
+
+	// Of the sampled column, from the words and the noise that the file declares.
+	EffortNoise Figure `json:"effort_noise"`
+	OutputNoise Figure `json:"output_noise"`
+	StuckError  Figure `json:"stuck_error"`
 
 	GainCrossings  []Crossing `json:"gain_crossings"`  // |L| = 1
 	PhaseCrossings []Crossing `json:"phase_crossings"` // arg L = −180°
@@ -136,6 +142,7 @@ type Transient struct {
 	SettlingTimeS    Figure `json:"settling_time_s"`
 	PeakTimeS        Figure `json:"peak_time_s"`
 	PeakEffort       Figure `json:"peak_effort"`
+	RecoveryTimeS    Figure `json:"recovery_time_s"` // after an effort at its limit: see sim.Figures; null when it is not limited
 }
 
 // LedgerItem is one contribution to lag around the loop.
@@ -151,7 +158,8 @@ type Requirement struct {
 	Op    string  `json:"op"`
 	Limit float64 `json:"limit"`
 	Value Figure  `json:"value"`
-	Met   *bool   `json:"met"` // null: cannot be judged
+	Met   *bool   `json:"met"`  // null: cannot be judged
+	From  string  `json:"from"` // the column that the value is of: "sampled", or "as built" where that is worse
 	Unit  string  `json:"unit"`
 }
 

@@ -27,8 +27,9 @@ func pointsPerTick(ticks int64) int {
 	return fewPoints
 }
 
-// sampledConfig is the run of a sampled block with an input for about length seconds.
-func sampledConfig(l *loop.Loop, b *block, in loop.Input, length float64, converters bool) (sim.Config, error) {
+// sampledConfig is the run of a sampled block with an input for about length seconds, with the actuator's limits and slew
+// but no other hardware.
+func sampledConfig(l *loop.Loop, b *block, in loop.Input, length float64) (sim.Config, error) {
 	system, err := sim.NewPlant(l.Plant, l.Sensor.Model)
 	if err != nil {
 		return sim.Config{}, err
@@ -47,10 +48,6 @@ func sampledConfig(l *loop.Loop, b *block, in loop.Input, length float64, conver
 		Reads: []int{sim.OutputM}, Drives: []int{sim.InputEffort},
 		Limits: limitsOf(l), Slew: l.Actuator.Slew,
 	}
-	if converters {
-		task.Sensors = []sim.Sensor{{Converter: sim.Converter{Bits: l.Sensor.Bits, Low: l.Sensor.Range[0], High: l.Sensor.Range[1]}}}
-		task.Bits = l.Actuator.Bits
-	}
 	ticks := int64(math.Max(1, math.Ceil(length/T*(1-1e-12))))
 	return sim.Config{
 		System: system, Tasks: []sim.Task{task}, Reference: r,
@@ -61,7 +58,10 @@ func sampledConfig(l *loop.Loop, b *block, in loop.Input, length float64, conver
 
 // simulate runs the variant with an input for about length seconds.
 func (v variant) simulate(ctx context.Context, in loop.Input, length float64) (run, error) {
-	cfg, err := sampledConfig(v.loop, v.run.block, in, length, v.converters)
+	cfg, err := sampledConfig(v.loop, v.run.block, in, length)
+	if v.built {
+		cfg, err = builtConfig(v.loop, v.run.block, in, length, v.seed, asDeclared)
+	}
 	if err != nil {
 		return run{}, err
 	}

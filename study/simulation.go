@@ -108,18 +108,33 @@ func (a *analyzed) slowest() float64 {
 
 // controllerOf builds the difference equations of a sampled block.
 func (b *block) controllerOf(l *loop.Loop) (*sim.Controller, error) {
+	return sim.NewController(b.controllerConfig(l))
+}
+
+func (b *block) controllerConfig(l *loop.Loop) sim.ControllerConfig {
 	cfg := sim.ControllerConfig{Period: b.period, Prefilter: b.prefilter, Feedforward: b.feedforward}
-	for _, t := range b.terms {
+	for i, t := range b.terms {
 		w, _ := t.weight.Float64()
-		cfg.Terms = append(cfg.Terms, sim.Term{Model: t.model, Weight: w})
+		term := sim.Term{Model: t.model, Weight: w}
+		for k := range l.Controller.Terms[i].Parts {
+			if p := &l.Controller.Terms[i].Parts[k]; p.Continuous != nil && p.Continuous.Ratio.OriginPoles > 0 {
+				term.Ahead = aheadOf(p)
+			}
+		}
+		cfg.Terms = append(cfg.Terms, term)
 	}
 	cfg.AntiWindup, cfg.TrackingTime = antiWindupOf(l)
-	return sim.NewController(cfg)
+	cfg.Low, cfg.High = l.Controller.AntiWindup.Clamp[0], l.Controller.AntiWindup.Clamp[1]
+	return cfg
 }
 
 func antiWindupOf(l *loop.Loop) (sim.AntiWindup, float64) {
 	switch l.Controller.AntiWindup.Kind {
 	case "clamp":
+		return sim.Clamp, 0
+	case "stop":
+		return sim.Stop, 0
+	case "stop_outward":
 		return sim.StopOutward, 0
 	case "tracking":
 		t, _ := l.Controller.AntiWindup.TrackingTime.Float64()

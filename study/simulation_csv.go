@@ -19,7 +19,7 @@ type SimulationCSV struct {
 func (s SimulationCSV) Write(w io.Writer) error { return sim.WriteCSV(w, s.trace, s.twin) }
 
 // Simulate runs input number i (from 0) of the file through the loop as it will run,
-// converters included, and through its continuous twin at the same instants.
+// on the hardware that the file declares, and through its continuous twin at the same instants.
 func Simulate(ctx context.Context, l *loop.Loop, i int, o Options) (SimulationCSV, error) {
 	cont, sampled, err := bothColumns(l, &Compare{})
 	if err != nil {
@@ -27,7 +27,7 @@ func Simulate(ctx context.Context, l *loop.Loop, i int, o Options) (SimulationCS
 	}
 	in := l.Inputs[i]
 	length := cut(l, horizon(l, in, cont, sampled), mostTicksRun)
-	cfg, err := sampledConfig(l, sampled.block, in, length, true)
+	cfg, err := builtConfig(l, sampled.block, in, length, o.seed(), asDeclared)
 	if err != nil {
 		return SimulationCSV{}, err
 	}

@@ -46,7 +46,7 @@ func sampledTransient(ctx context.Context, l *loop.Loop, c *Compare, cont, sampl
 		return nil
 	}
 	in, length := stepRun(l, cont, sampled)
-	cfg, err := sampledConfig(l, sampled.block, in, length, false)
+	cfg, err := sampledConfig(l, sampled.block, in, length)
 	if err != nil {
 		return err
 	}
@@ -69,6 +69,7 @@ func transientOf(f sim.Figures) Transient {
 	t := Transient{
 		OvershootPercent: fig(f.OvershootPercent), RiseTimeS: fig(f.RiseTime),
 		SettlingTimeS: fig(f.SettlingTime), PeakTimeS: fig(f.PeakTime), PeakEffort: fig(f.PeakEffort),
+		RecoveryTimeS: fig(f.RecoveryTime),
 	}
 	if !t.SettlingTimeS.OK { // the highest value may be still to come
 		t.OvershootPercent, t.PeakTimeS = Figure{}, Figure{}

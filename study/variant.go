@@ -9,15 +9,19 @@ import (
 
 // variant is one way to run the sampled loop in the degradation study.
 type variant struct {
-	name       string
-	loop       *loop.Loop // at the variant's rate
-	run        *analyzed  // nil where the variant cannot run: note says why
-	note       string
-	converters bool // quantize m and u as the file says
+	name  string
+	loop  *loop.Loop // at the variant's rate
+	run   *analyzed  // nil where the variant cannot run: note says why
+	note  string
+	built bool // on the hardware of the file
+	seed  uint64
 }
 
+// asBuilt names the loop on the hardware that the file declares.
+const asBuilt = "as built"
+
 // variants builds the loop at its own rate and delay first, then the rates and delays of the study.
-func variants(l *loop.Loop, own *analyzed, d Degrade) []variant {
+func variants(l *loop.Loop, own *analyzed, d Degrade, seed uint64) []variant {
 	out := []variant{{name: "sampled at " + rateText(l.Timing.Period), loop: l, run: own}}
 	rates := d.Rates
 	if l.Controller.Digital {
@@ -49,8 +53,8 @@ func variants(l *loop.Loop, own *analyzed, d Degrade) []variant {
 		v.analyse(own.block.held.held, delay)
 		out = append(out, v)
 	}
-	if l.Sensor.Bits > 0 || l.Actuator.Bits > 0 {
-		out = append(out, variant{name: "own rate, with converters", loop: l, run: own, converters: true})
+	if declaresHardware(l) {
+		out = append(out, variant{name: asBuilt, loop: l, run: own, built: true, seed: seed})
 	}
 	return out
 }

@@ -1,0 +1,131 @@
+package study
+
+import (
+	"context"
+	"errors"
+	"math"
+
+	"steadytick/loop"
+	"steadytick/sim"
+)
+
+// AsBuilt is what the loop does on the hardware that the file declares, from simulation.
+type AsBuilt struct {
+	Seed       uint64        `json:"seed"`
+	Transient  Transient     `json:"transient"`
+	Steady     []BuiltSteady `json:"steady"`
+	NoiseTicks int64         `json:"noise_ticks"`  // over which effort_noise and output_noise were taken
+	Effort     Figure        `json:"effort_noise"` // rms about the mean, holding the step's end
+	Output     Figure        `json:"output_noise"`
+	Rest       *Rest         `json:"rest"` // null when nothing in the loop quantizes or sticks
+	TableError Figure        `json:"sensor_table_error"`
+}
+
+// BuiltSteady is one input once transients are gone, in the last third of a long run; of a move or file, the whole of it.
+type BuiltSteady struct {
+	Input         string `json:"input"`
+	Size          Figure `json:"size"`
+	TrackingError Figure `json:"tracking_error"` // mean at the ticks
+	WorstError    Figure `json:"worst_error"`    // largest magnitude, at and between the ticks
+	Swing         Figure `json:"swing"`          // of the error at the ticks, rms about its mean
+	PeakError     Figure `json:"peak_tracking_error"`
+	RMSError      Figure `json:"rms_tracking_error"`
+	AtLimit       bool   `json:"effort_at_limit"`
+}
+
+const (
+	// builtLonger: the loop as built is run this many times longer than the others, and looked at in the last third.
+	builtLonger = 3
+	// mostTicksBuilt bounds its runs: with friction or jitter a tick takes microseconds.
+	mostTicksBuilt = 120_000
+	// noiseTicks are wanted for the rms of noise: its own relative error is then 1 % or so.
+	noiseTicks = 20_000
+)
+
+// built runs the loop on its hardware; nil when the file declares none, or the loop is unstable.
+func built(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyzed, o Options) (*AsBuilt, error) {
+	if !declaresHardware(l) || !sampled.stable {
+		return nil, nil
+	}
+	out := &AsBuilt{Seed: o.seed(), Steady: make([]BuiltSteady, len(l.Inputs))}
+	h := horizon(l, loop.Input{Kind: "step", Size: 1}, sampled)
+	err := parallel(len(l.Inputs)+3, func(i int) (err error) {
+		switch k := i - len(l.Inputs); k {
+		case 0:
+			return out.step(ctx, l, cont, sampled)
+		case 1:
+			return out.noise(ctx, l, sampled, h)
+		case 2:
+			out.Rest, err = restOf(ctx, l, sampled, h)
+			return err
+		}
+		out.Steady[i], err = builtSteady(ctx, l, l.Inputs[i], sampled, o.seed()+uint64(i)+1)
+		return err
+	})
+	if errors.Is(err, sim.ErrMechanism) {
+		c.warn("not_simulated_as_built", "the loop as built cannot be simulated: %v", err)
+		return nil, nil
+	}
+	if curve := l.Sensor.Curve; curve != nil && err == nil {
+		var table *sim.Curve
+		if table, err = sim.NewCurve(curve.Output, curve.Electric); err == nil {
+			size, _ := table.TableError()
+			out.TableError = Fig(size)
+		}
+	}
+	return out, err
+}
+
+// step fills the step figures.
+func (b *AsBuilt) step(ctx context.Context, l *loop.Loop, cont, sampled *analyzed) error {
+	in, length := stepRun(l, cont, sampled)
+	cfg, err := builtConfig(l, sampled.block, in, cut(l, length, mostTicksBuilt), b.Seed, asDeclared)
+	if err != nil {
+		return err
+	}
+	f, _, err := sim.StepFigures(ctx, cfg, sampled.stepSpec(l, in))
+	b.Transient = transientOf(f)
+	return err
+}
+
+// noise holds the loop at the end of the step and takes effort and error about their means.
+func (b *AsBuilt) noise(ctx context.Context, l *loop.Loop, sampled *analyzed, h float64) error {
+	in, _ := stepRun(l, nil, sampled)
+	T := sampled.seconds()
+	settle := cut(l, 2*h, mostTicksBuilt/2)
+	cfg, err := builtConfig(l, sampled.block, in, settle+noiseTicks*T, b.Seed, asDeclared)
+	if err != nil {
+		return err
+	}
+	cfg.PointsPerTick, cfg.TailFrom = 1, int64(math.Round(settle/T))
+	t, err := sim.Run(ctx, cfg)
+	if err == nil && !t.Diverged {
+		b.NoiseTicks, b.Effort, b.Output = t.Tail.Ticks, Fig(t.Tail.EffortRMS), Fig(t.Tail.ErrorRMS)
+	}
+	return err
+}
+
+// builtSteady runs one input.
+func builtSteady(ctx context.Context, l *loop.Loop, in loop.Input, sampled *analyzed, seed uint64) (BuiltSteady, error) {
+	out := BuiltSteady{Input: in.Kind, Size: blankSteady(in).Size}
+	length, whole := endLength(l, in)
+	if !whole {
+		length = builtLonger * horizon(l, in, sampled)
+	}
+	cfg, err := builtConfig(l, sampled.block, in, cut(l, length, mostTicksBuilt), seed, asDeclared)
+	if err != nil {
+		return out, err
+	}
+	cfg.TailFrom = max(1, cfg.Ticks-cfg.Ticks/builtLonger)
+	t, err := sim.Run(ctx, cfg)
+	if err != nil || t.Diverged {
+		return out, err
+	}
+	out.AtLimit = atLimit(l, t.FinalU)
+	if whole {
+		out.PeakError, out.RMSError = Fig(t.PeakError), Fig(t.RMSError)
+		return out, nil
+	}
+	out.TrackingError, out.WorstError, out.Swing = Fig(t.Tail.MeanError), Fig(t.Tail.WorstError), Fig(t.Tail.ErrorRMS)
+	return out, nil
+}

@@ -1,0 +1,218 @@
+package study
+
+import (
+	"context"
+	"errors"
+	"math"
+
+	"steadytick/loop"
+	"steadytick/sim"
+)
+
+// Rest is the loop left alone at a constant reference, without noise and disturbances: it stands still with a stuck error,
+// or hunts in a limit cycle.
+type Rest struct {
+	Starts     int    `json:"starts"`      // runs to rest, from different sides to places within a code of the sensor
+	Cycling    int    `json:"cycling"`     // of these, the runs that did not come to rest
+	LimitCycle Figure `json:"limit_cycle"` // largest swing of y, peak to peak; 0 when all came to rest
+	PeriodS    Figure `json:"limit_cycle_period_s"`
+	EffortPP   Figure `json:"limit_cycle_effort"` // swing of the effort in that run, peak to peak
+	Bound      Figure `json:"limit_cycle_bound"`  // no limit cycle of the words can be larger; null where theory gives none
+	StuckError Figure `json:"stuck_error"`        // largest mean error of the runs
+}
+
+const (
+	restStarts = 12
+	// stillSwing: a swing below this part of the reference is rounding, not a limit cycle.
+	stillSwing = 1e-9
+	// restTicks are looked at at least.
+	restTicks = 512
+)
+
+// restOf searches for limit cycles; nil when nothing quantizes or sticks.
+func restOf(ctx context.Context, l *loop.Loop, sampled *analyzed, h float64) (*Rest, error) {
+	if !quantizes(l) {
+		return nil, nil
+	}
+	runs := make([]restRun, restStarts)
+	err := parallel(restStarts, func(i int) (err error) {
+		runs[i], err = rest(ctx, l, sampled, h, i)
+		return err
+	})
+	if err != nil {
+		return nil, err
+	}
+	out := &Rest{Starts: restStarts, LimitCycle: Fig(0), StuckError: Fig(0)}
+	for _, r := range runs {
+		out.StuckError.Value = math.Max(out.StuckError.Value, math.Abs(r.mean))
+		if !r.cycles {
+			continue
+		}
+		if out.Cycling++; r.swing >= out.LimitCycle.Value {
+			out.LimitCycle, out.PeriodS, out.EffortPP = Fig(r.swing), r.period, Fig(r.effort)
+		}
+	}
+	out.Bound, err = cycleBound(ctx, l, sampled)
+	return out, err
+}
+
+// restRun is one run to rest.
+type restRun struct {
+	cycles bool
+	mean   float64
+	swing  float64
+	effort float64
+	period Figure
+}
+
+// rest goes to a place near the step's end, even starts from below and odd ones from above, and looks at the last third.
+func rest(ctx context.Context, l *loop.Loop, sampled *analyzed, h float64, start int) (restRun, error) {
+	in, _ := stepRun(l, nil, sampled)
+	place := in.Size + sensorBin(l)*float64(start)/restStarts
+	T := sampled.seconds()
+	ticks := math.Min(math.Max(3*h/T, 3*restTicks), mostTicksBuilt/4)
+	away := math.Floor(ticks / 3)
+	from := 0.75 * place
+	if start%2 == 1 {
+		from = 1.25 * place
+	}
+	r, err := sim.Table([]float64{0, away * T, away * T}, []float64{from, from, place})
+	if err != nil {
+		return restRun{}, err
+	}
+	cfg, err := builtConfig(l, sampled.block, in, ticks*T, 1, undisturbed)
+	if err != nil {
+		return restRun{}, err
+	}
+	cfg.Reference, cfg.Disturbances, cfg.PointsPerTick = r, nil, 2
+	cfg.TailFrom, cfg.MaxPoints = max(1, cfg.Ticks-cfg.Ticks/3), int(cfg.Ticks)+16
+	t, err := sim.Run(ctx, cfg)
+	if err != nil || t.Diverged {
+		return restRun{}, err
+	}
+	out := restRun{mean: t.Tail.MeanError, swing: t.Tail.Swing, effort: t.Tail.HighestEffort - t.Tail.LowestEffort}
+	period, early, late := cycleOf(t.TickT, t.TickY, float64(cfg.TailFrom)*T)
+	// What is still dying out is no cycle: its swing falls.
+	out.cycles = out.swing > stillSwing*math.Max(math.Abs(place), out.swing*1e-3) && late > 0.7*early
+	out.period = period
+	return out, nil
+}
+
+// cycleOf is the mean time between the upward passings of the middle of y from the instant on, and the swings in both halves
+// of that time.
+func cycleOf(t, y []float64, from float64) (period Figure, early, late float64) {
+	first := 0
+	for first < len(t) && t[first] < from {
+		first++
+	}
+	t, y = t[first:], y[first:]
+	span := func(y []float64) (low, high float64) {
+		low, high = math.Inf(1), math.Inf(-1)
+		for _, v := range y {
+			low, high = math.Min(low, v), math.Max(high, v)
+		}
+		return low, high
+	}
+	if len(y) < 8 {
+		return Figure{}, 0, 0
+	}
+	a, b := span(y[:len(y)/2])
+	c, d := span(y[len(y)/2:])
+	low, high := math.Min(a, c), math.Max(b, d)
+	upper, lower := low+0.6*(high-low), low+0.4*(high-low)
+	up, passed := false, []float64{}
+	for i, v := range y {
+		if v > upper && !up {
+			if i > 0 {
+				passed = append(passed, t[i])
+			}
+			up = true
+		} else if v < lower {
+			up = false
+		}
+	}
+	if n := len(passed); n > 1 {
+		period = Fig((passed[n-1] - passed[0]) / float64(n-1))
+	}
+	return period, b - a, d - c
+}
+
+// sensorBin is the step of what the sensor can tell, in output units, 0 when it tells everything.
+func sensorBin(l *loop.Loop) float64 {
+	s := l.Sensor
+	c := sim.Converter{Bits: s.Bits, Low: s.Range[0], High: s.Range[1], Step: s.Step}
+	switch {
+	case s.Encoder != nil && s.Encoder.Velocity:
+		T, _ := l.Timing.Period.Float64()
+		return s.Encoder.Count() / T
+	case s.Encoder != nil:
+		return s.Encoder.Count()
+	case s.Curve != nil:
+		return c.Bin() * steepest(l)
+	}
+	return c.Bin()
+}
+
+// steepest is the largest slope of the sensor's table, output units by electric unit.
+func steepest(l *loop.Loop) float64 {
+	c, most := l.Sensor.Curve, 0.0
+	for i := 1; i < len(c.Output); i++ {
+		most = math.Max(most, math.Abs((c.Output[i]-c.Output[i-1])/(c.Electric[i]-c.Electric[i-1])))
+	}
+	return most
+}
+
+// effortBin is the step of the effort, 0 for none.
+func effortBin(l *loop.Loop) float64 {
+	c := sim.Converter{Bits: l.Actuator.Bits, Step: l.Actuator.Step}
+	if l.Actuator.Limits != nil {
+		c.Low, c.High = l.Actuator.Limits[0], l.Actuator.Limits[1]
+	}
+	return c.Bin()
+}
+
+// hidden is how far the effort that the plant feels may lie from the computed one at rest: half a code, the dead zone, half the play,
+// and friction that acts at the plant's input; ok is false where friction gives no such bound.
+func hiddenEffort(l *loop.Loop) (size float64, ok bool) {
+	size = effortBin(l)/2 + l.Actuator.Deadband
+	if b := l.Backlash; b != nil && !b.AtOutput {
+		size += b.Gap / 2
+	}
+	if f := l.Friction; f != nil {
+		if f.Through != nil || f.Viscous > 0 {
+			return 0, false
+		}
+		size += f.Static
+	}
+	return size, true
+}
+
+// cycleBound is the largest swing that the words can cause, peak to peak: every quantizer is a disturbance of half a code (an
+// encoder's velocity by counts: of a whole one), and the peak gains of the linear loop say what such disturbances can do.
+func cycleBound(ctx context.Context, l *loop.Loop, sampled *analyzed) (Figure, error) {
+	effort, ok := hiddenEffort(l)
+	if !ok || l.Sensor.Encoder != nil && l.Sensor.Encoder.ByTime {
+		return Figure{}, nil
+	}
+	in, length := stepRun(l, nil, sampled)
+	cfg, err := sampledConfig(l, sampled.block, in, length)
+	if err != nil {
+		return Figure{}, err
+	}
+	g, err := sim.Peaks(ctx, cfg)
+	if errors.Is(err, sim.ErrNoVariance) {
+		return Figure{}, nil
+	}
+	if err != nil {
+		return Figure{}, err
+	}
+	measured := sensorBin(l) / 2
+	if e := l.Sensor.Encoder; e != nil && e.Velocity {
+		measured = sensorBin(l)
+	}
+	bound := g.Measurement*measured + g.Effort*effort
+	if b := l.Backlash; b != nil && b.AtOutput {
+		bound += (1 + g.Measurement) * b.Gap / 2
+	}
+	return Fig(2 * bound), nil
+}

@@ -1,0 +1,149 @@
+package study
+
+import (
+	"context"
+	"errors"
+	"math"
+
+	"steadytick/internal/lti"
+	"steadytick/loop"
+	"steadytick/sim"
+)
+
+// wordFigures are the figures of the linear loop that follow from the words and the noise of the file.
+type wordFigures struct{ effort, output, stuck Figure }
+
+// noiseInputs are the variances of what is added to the measurement: white, and as the difference of white noise over
+// the period. A quantizer that is kept busy adds q²/12 (Widrow; IEEE Std 1241; from memory).
+func noiseInputs(l *loop.Loop) (white, differenced float64) {
+	s := l.Sensor
+	scale := 1.0
+	if s.Curve != nil {
+		scale = steepest(l)
+	}
+	q := sim.Converter{Bits: s.Bits, Low: s.Range[0], High: s.Range[1], Step: s.Step}.Bin()
+	white = scale * scale * (s.Noise*s.Noise + q*q/12)
+	for _, d := range l.Disturbances {
+		if d.Kind == "noise" && d.At == "sensor" && d.Band == nil {
+			white += d.Size * d.Size
+		}
+	}
+	if e := s.Encoder; e != nil {
+		count := e.Count()
+		switch {
+		case !e.Velocity:
+			white += count * count / 12
+		case !e.ByTime:
+			differenced = count * count / 12
+		}
+	}
+	return white, differenced
+}
+
+// noisy tells whether the file declares anything that makes noise in the measurement.
+func noisy(l *loop.Loop) bool {
+	white, differenced := noiseInputs(l)
+	return white > 0 || differenced > 0
+}
+
+// words computes effort_noise, output_noise and stuck_error of a stable sampled loop.
+func words(ctx context.Context, l *loop.Loop, a *analyzed) (wordFigures, error) {
+	var out wordFigures
+	if !a.stable {
+		return out, nil
+	}
+	out.stuck = stuckError(l, a)
+	white, differenced := noiseInputs(l)
+	if white == 0 && differenced == 0 {
+		return out, nil
+	}
+	in, length := stepRun(l, nil, a)
+	cfg, err := sampledConfig(l, a.block, in, length)
+	if err != nil {
+		return out, err
+	}
+	effort, output := 0.0, 0.0
+	for _, x := range []struct {
+		variance   float64
+		difference bool
+	}{{white, false}, {differenced, true}} {
+		if x.variance == 0 {
+			continue
+		}
+		g, err := sim.Noise(ctx, cfg, x.difference)
+		if errors.Is(err, sim.ErrNoVariance) {
+			return out, nil
+		}
+		if err != nil {
+			return out, err
+		}
+		effort += g.Effort * g.Effort * x.variance
+		output += g.Output * g.Output * x.variance
+	}
+	out.effort, out.output = Fig(math.Sqrt(effort)), Fig(math.Sqrt(output))
+	return out, nil
+}
+
+// stuckError is the steady error that the words of the file can hold for ever,
+//
+//	|y/d|·(half a code of the effort, dead zone, play, static friction) + |y/m|·(half a code of the sensor + |offset| + table error)
+//
+// the two gains at rest being those of the linear loop from the plant's input and from the measurement to the output; play at
+// the output adds half its gap. An integrator in the controller makes the first gain 0: then the loop hunts instead.
+// Not applicable where the file declares nothing of that kind, or friction that gives no bound.
+func stuckError(l *loop.Loop, a *analyzed) Figure {
+	s := l.Sensor
+	if !quantizes(l) && s.Offset == 0 && s.Curve == nil {
+		return Figure{}
+	}
+	effort, ok := hiddenEffort(l)
+	if !ok {
+		return Figure{}
+	}
+	load := 0.0
+	if effort > 0 {
+		if load, ok = loadGain(a.block.sys.Cm, l); !ok {
+			return Figure{}
+		}
+	}
+	scale := 1.0
+	measured := 0.0
+	if s.Curve != nil {
+		scale = steepest(l)
+		if table, err := sim.NewCurve(s.Curve.Output, s.Curve.Electric); err == nil {
+			measured, _ = table.TableError()
+		}
+	}
+	measured += sensorBin(l)/2 + math.Abs(s.Offset)*scale
+	h := leadingOf(s.Model.Ratio)
+	through := 0.0
+	if h.c != nil && h.order == 0 {
+		hc, _ := h.c.Float64()
+		through = atRestGain(a) / math.Abs(hc)
+	}
+	total := math.Abs(load)*effort + through*measured
+	if b := l.Backlash; b != nil && b.AtOutput {
+		total += b.Gap / 2
+	}
+	return Fig(total)
+}
+
+// atRestGain is |L/(1 + L)| at rest.
+func atRestGain(a *analyzed) float64 {
+	order, c := lti.Leading(a.block.open)
+	lead := c.Float64()
+	switch {
+	case order < 0:
+		return 1
+	case order > 0:
+		return 0
+	}
+	return math.Abs(lead / (1 + lead))
+}
+
+// addWords fills the figures of words and noise.
+func (c *Column) addWords(ctx context.Context, l *loop.Loop, a *analyzed) error {
+	w, err := words(ctx, l, a)
+	c.EffortNoise, c.OutputNoise, c.StuckError = w.effort, w.output, w.stuck
+	return err
+}
