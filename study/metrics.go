@@ -63,7 +63,7 @@ func loadPercent(l *loop.Loop) float64 {
 // judged tells whether compare evaluates the metric at all.
 func judged(name string) bool {
 	switch name {
-	case "effort_noise", "stuck_error", "word_margin":
+	case "effort_noise", "stuck_error", "word_margin", "recovery_time", "limit_cycle":
 		return false
 	}
 	return true
@@ -113,13 +113,13 @@ func MetricUnit(name string, u Units) string { return requirementUnit(name, u) }
 // requirementUnit is the base unit in which a metric is compared and printed.
 func requirementUnit(name string, u Units) string {
 	switch name {
-	case "step_error", "ramp_error", "parabola_error", "load_error", "ripple", "peak_tracking_error", "rms_tracking_error", "stuck_error":
+	case "step_error", "ramp_error", "parabola_error", "load_error", "ripple", "peak_tracking_error", "rms_tracking_error", "stuck_error", "limit_cycle":
 		return u.Output
 	case "phase_margin":
 		return "deg"
 	case "gain_margin":
 		return "dB"
-	case "delay_margin", "jitter_margin", "rise_time", "settling_time":
+	case "delay_margin", "jitter_margin", "rise_time", "settling_time", "recovery_time":
 		return "s"
 	case "crossover", "bandwidth":
 		return "rad/s"

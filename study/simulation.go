@@ -119,7 +119,7 @@ func (b *block) controllerOf(l *loop.Loop) (*sim.Controller, error) {
 
 func antiWindupOf(l *loop.Loop) (sim.AntiWindup, float64) {
 	switch l.Controller.AntiWindup.Kind {
-	case "clamp":
+	case "stop_outward":
 		return sim.Clamp, 0
 	case "tracking":
 		t, _ := l.Controller.AntiWindup.TrackingTime.Float64()
