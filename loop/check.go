@@ -3,6 +3,7 @@ package loop
 import (
 	"fmt"
 	"math/big"
+	"strings"
 
 	"steadytick/sdomain"
 )
@@ -13,6 +14,8 @@ const maxTicks = 1_000_000
 // check looks at what several sections say together. Every section by itself is fine.
 func (r *reader) check(l *Loop, top *section) {
 	r.checkTiming(l, top)
+	r.checkMeasured(l, top)
+	r.checkPeriodUsed(l, top)
 	r.checkProcessor(l, top)
 	r.checkWindup(l, top)
 	r.checkReference(l, top)
@@ -27,33 +30,53 @@ func within(top *section, name, key string) place {
 	if !ok {
 		return top.at
 	}
-	for _, x := range e.value.entries {
-		if x.key == key {
-			return x.at
+	return e.find(key).at
+}
+
+// find is the entry of a key within e, e itself where there is none.
+func (e entry) find(key string) entry {
+	if e.value != nil {
+		for _, x := range e.value.entries {
+			if x.key == key {
+				return x
+			}
 		}
 	}
-	return e.at
+	return e
 }
 
 // checkTiming: what happens between the sample and the update fits the tick.
 func (r *reader) checkTiming(l *Loop, top *section) {
 	t := l.Timing
 	work := new(big.Rat).Add(t.Conversion, t.Compute)
+	work.Add(work, t.Latency)
+	parts := []string{"conversion", "compute"}
+	if t.Latency.Sign() > 0 {
+		parts = []string{"conversion", "latency", "compute"}
+	}
 	at := within(top, "timing", "compute")
-	if at == within(top, "timing", "") {
-		at = within(top, "timing", "conversion")
+	for _, key := range []string{"conversion", "latency"} {
+		if at == within(top, "timing", "") {
+			at = within(top, "timing", key)
+		}
 	}
 	if work.Cmp(t.Period) > 0 {
-		r.report(at, fmt.Sprintf("conversion and compute take %s, longer than the tick of %s", showSeconds(work), showSeconds(t.Period)),
+		last := len(parts) - 1
+		r.report(at, fmt.Sprintf("%s and %s take %s, longer than the tick of %s", list(parts[:last]), parts[last], showSeconds(work), showSeconds(t.Period)),
 			"a slower rate, or less to do in one tick")
 	}
 	if t.Update == After && t.UpdateAfter.Cmp(work) < 0 {
 		r.report(within(top, "timing", "update"), fmt.Sprintf("the update comes %s after the sample, before the effort is known at %s",
-			showSeconds(t.UpdateAfter), showSeconds(work)), "after: conversion + compute or more")
+			showSeconds(t.UpdateAfter), showSeconds(work)), "after: "+strings.Join(parts, " + ")+" or more")
 	}
-	if twice := new(big.Rat).Add(t.Jitter, t.Jitter); twice.Cmp(t.Period) >= 0 {
-		r.report(within(top, "timing", "jitter"), fmt.Sprintf("with a jitter of %s peak the samples of a tick of %s can change order",
-			showSeconds(t.Jitter), showSeconds(t.Period)), "less than half a tick")
+	for _, j := range []struct {
+		key, what string
+		peak      *big.Rat
+	}{{"jitter", "samples", t.Jitter}, {"update_jitter", "updates", t.UpdateJitter}} {
+		if twice := new(big.Rat).Add(j.peak, j.peak); twice.Cmp(t.Period) >= 0 {
+			r.report(within(top, "timing", j.key), fmt.Sprintf("with a jitter of %s peak the %s of a tick of %s can change order",
+				showSeconds(j.peak), j.what, showSeconds(t.Period)), "less than half a tick")
+		}
 	}
 }
 
@@ -89,7 +112,8 @@ func (l *Loop) deadTime() *big.Rat {
 }
 
 func (r *reader) checkDelay(l *Loop, top *section) {
-	ticks := new(big.Rat).Add(l.deadTime(), l.Timing.LoopDelay())
+	_, most := l.delays()
+	ticks := new(big.Rat).Add(l.deadTime(), most)
 	ticks.Quo(ticks, l.Timing.Period)
 	if ticks.Cmp(big.NewRat(maxTicks, 1)) > 0 {
 		f, _ := ticks.Float64()
@@ -116,7 +140,7 @@ func (p Part) feedthrough() bool {
 // checkSampledLoop refuses a loop in which the effort of a tick needs the sample that it
 // changes itself.
 func (r *reader) checkSampledLoop(l *Loop, top *section) {
-	if !l.direct() || l.Timing.LoopDelay().Sign() != 0 {
+	if least, _ := l.delays(); !l.direct() || least.Sign() != 0 {
 		return
 	}
 	for _, t := range l.Controller.Terms {

@@ -224,33 +224,6 @@ func (r *reader) overridden(text string, at *big.Rat, s *section, ownAt place) (
 	return Map{word, w}, r.belowNyquist(w, s.at)
 }
 
-// antiWindup reads none, clamp or {tracking_time: …}.
-func (r *reader) antiWindup(l *Loop, n *node) {
-	if n == nil || n.broken {
-		return
-	}
-	const forms = "none, clamp or {tracking_time: 50 ms}"
-	switch n.kind {
-	case textNode:
-		if n.text != "none" && n.text != "clamp" {
-			r.reportNear(n.at, fmt.Sprintf("%s is not a kind of anti_windup", quote(n.text)), forms,
-				nearest(n.text, []string{"none", "clamp"}))
-			return
-		}
-		l.Controller.AntiWindup.Kind = n.text
-	case mapNode:
-		s, broken := r.section(n, "anti_windup", "tracking_time")
-		if broken {
-			return
-		}
-		if t, ok := r.positiveSeconds(s.need("tracking_time", "tracking_time: 50 ms"), "tracking_time"); ok {
-			l.Controller.AntiWindup = AntiWindup{Kind: "tracking", TrackingTime: t}
-		}
-	default:
-		r.report(n.at, fmt.Sprintf("anti_windup is %s here", n.kind), forms)
-	}
-}
-
 // rational is num/den as a model, ascending coefficients; den is not zero.
 func rational(num, den []*big.Rat) sdomain.Model {
 	m, err := sdomain.FromPolynomials(reversed(num), reversed(den))

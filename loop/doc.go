@@ -21,10 +21,10 @@ put in quotes. Limits of nesting: 50 lists, mappings or brackets, 200 columns of
 	output        unit of r, y and m, any text                   "units"
 	effort        unit of u, any text                            "units"
 	symbols       named numbers
-	plant         model, dead_time                               required
+	plant         model, dead_time, friction, backlash           required
 	controller    model with map, or pid                         required
-	sensor        model, bits, range
-	actuator      limits, bits, slew
+	sensor        model, converter, encoder, curve, noise, offset
+	actuator      limits, bits or step, slew, deadband
 	timing        rate or period, and the time-line of a tick    required
 	inputs        list of inputs
 	requirements  list of "name op number unit"
@@ -32,7 +32,7 @@ put in quotes. Limits of nesting: 50 lists, mappings or brackets, 200 columns of
 	timer         the hardware timer
 	processor     what a tick costs
 	rate          range of rates to search
-	disturbances  list of known vibrations
+	disturbances  list of vibrations, loads, noise and records
 
 # Numbers and units
 
@@ -115,6 +115,79 @@ Both models are in s and may have a dead time; dead_time adds to the plant's. Wi
 sensor m = y. bits (1 to 32) and range, the converter's lowest and highest value in output
 units, come together.
 
+# Friction and backlash
+
+	plant:
+	  model: 0.31/(s*(0.018*s + 0.09))
+	  friction: {coulomb: 0.3, static: 0.4, viscous: 0.02}
+	  backlash: {gap: 0.002, at: output}
+
+Friction is a force against the motion v of a part of the plant,
+
+	y = plant·(u + d) − through·F(v)
+	F = sign(v)·coulomb + viscous·v    while it moves
+	F = whatever holds it, up to static, at rest
+
+	coulomb   0 or more; 0 when left out
+	static    coulomb or more, the force that starts a motion; coulomb when left out
+	viscous   0 or more, force by velocity; 0 when left out. It adds to what the model has
+	motion    position (default): the output is a position and v its rate; or velocity: v is the output
+	through   a model in s without dead time, from the force to the output
+
+One of the three forces must be above 0. Without through friction acts at the plant input,
+after its dead time, and forces are in effort units; with it they are in the units of its
+input. So that a force accelerates a mass, in its own direction, through (or the plant in its
+place) must have exactly two poles more than zeros with motion: position, one with motion:
+velocity, and a positive leading coefficient; and plant/through must be proper. All three
+are decided in exact numbers. A plant with a motor lag before its mass needs through:
+
+	plant:
+	  model: 0.31/(s*(0.018*s + 0.09)*(0.002*s + 1))
+	  friction: {coulomb: 0.05, through: 1/(s*(0.018*s + 0.09))}
+
+Backlash is play of full width gap, above 0: what it drives stands still until the play is used
+up. at: input (default) is between actuator and plant, in effort units; at: output is
+between plant and output, in output units.
+
+# Converter, encoder, curve
+
+	sensor: {step: 0.001, noise: 0.002, offset: 0.01}
+
+	step    above 0: size of a code of a converter without ends; not with bits
+	noise   0 or more: rms of white noise on every sample, 0 when left out
+	offset  added before the conversion, 0 when left out
+
+are in output units, or in electric units where the sensor has a curve.
+
+	sensor:
+	  encoder: {counts_per_turn: 4096, measures: velocity, method: time, clock: 10 MHz}
+
+An encoder stands in place of bits, step and curve.
+
+	counts_per_turn  a whole number from 1 to 1e9, after quadrature
+	measures         what the output is: position or velocity
+	turn             above 0: size of a turn in the unit of the position, which for a velocity is the
+	                 output's unit times a second
+	method           of a velocity: counts (default), the counts of a tick over the tick, or time, one
+	                 count over the time between the last two
+	clock            of the timer that times the counts, with method: time; as in timer. Times have no
+	                 error when it is left out
+
+measures and turn may be left out where the unit of the output tells: rad and deg are positions
+with a turn of 2π and 360, turn and turns of 1; rad/s, deg/s, turn/s and turns/s are velocities with
+the same, and rpm with a turn of 60, a turn a second being 60 rpm. With any other unit, or a unit that
+contradicts measures, what it does not tell must be written.
+
+	sensor: {curve: [[0, 3.1], [25, 2.4], [60, 1.2]], bits: 12, range: [0, 3.3]}
+	sensor: {curve: {file: ntc.csv}, noise: 0.004}
+
+A curve is what the converter sees for an output, such as a thermistor's voltage: 2 to 10 000 points
+[output, electric], or a file beside the loop file with the header output,electric. Outputs rise
+strictly; the electric values rise or fall strictly, throughout, for else the firmware could not
+tell which output it was. Slopes have magnitudes from 1e-200 to 1e200. Between the points
+the sensor follows a smooth monotone curve, the firmware a straight line. bits with range, step,
+noise and offset are then in electric units.
+
 # Controller
 
 	controller:
@@ -139,9 +212,17 @@ Beside model or pid:
 
 	feedforward: {model, map, at}   FF: u has FF·r added
 	prefilter:   {model, map, at}   F: the controller gets F·r in place of r
-	anti_windup: none, clamp (stop integrating while limited) or {tracking_time: 50 ms}
+	anti_windup: a kind of the list below; none when left out
 
-anti_windup needs the limits of the actuator.
+	none                    integrators know nothing of the limits
+	clamp                   the integrator is held within the actuator's limits
+	{clamp: [-10, 10]}      or within these, low and high, in effort units
+	stop                    no integration while the effort is limited
+	stop_outward            none while it is limited and what is integrated drives it further out
+	{tracking_time: 50 ms}  back-calculation: the integrator is driven by (limited − wanted effort)/time,
+	                        a time above zero
+
+Every kind but none needs the limits of the actuator.
 
 # PID
 
@@ -171,26 +252,46 @@ proportional part alone needs no map.
 
 # Actuator
 
-	actuator: {limits: [-24, 24], bits: 11, slew: 5000}
+	actuator: {limits: [-24, 24], bits: 11, slew: 5000, deadband: 0.2}
 
 limits are low and high, bits (1 to 32) divide them, slew is the largest change in effort
-units per second. Each may be left out; bits needs limits.
+units per second. step, above 0, is the size of a code of the effort in place of bits. deadband, 0
+or more, is half the width of a band of the effort in which the plant feels nothing; outside it feels
+the effort less the deadband. Each may be left out; bits needs limits.
 
 # Timing
 
 	timing:
-	  rate: 2 kHz          or period: 500 us; 1e-6 Hz to 1e9 Hz
-	  conversion: 6 us     from the sample to the value in memory
-	  compute: 140 us      from there to the new effort known
-	  update: when_ready   at once (default), next_tick, or {after: 250 us} from the sample
-	  jitter: 15 us        peak, of the sampling instant
+	  rate: 2 kHz            or period: 500 us; 1e-6 Hz to 1e9 Hz
+	  conversion: 6 us       from the sample to the value in memory
+	  latency: 1.5 us        from there to the start of the computation: interrupt entry
+	  compute: 140 us        from there to the new effort known
+	  update: when_ready     at once (default), next_tick, or {after: 250 us} from the sample
+	  jitter: 15 us          peak, of the sampling instant
+	  update_jitter: 5 us    peak, of the update instant
+	  measured: ticks.csv    recorded tick times
+	  missed: 1 %            ticks that do not run: no sample, the effort stays
+	  stale: {every: 100}    ticks that get the measurement of the tick before
+	  period_used: nominal   what the firmware takes for T: nominal (default) or measured
 
-Times left out are zero. conversion + compute must fit the tick; after: must not be shorter
-than they are, and may be longer than a tick; jitter must be below half a tick. All delay of
-the loop together is at most 1 000 000 ticks.
+Times left out are zero. conversion + latency + compute must fit the tick; after: must not be shorter
+than they are, and may be longer than a tick; jitter and update_jitter must each be below half a
+tick. All delay of the loop together is at most 1 000 000 ticks.
+
+measured names a CSV file beside the loop file with the header interval_s, or interval_s,delay_s:
+the time between two samples, from 0.01 to 100 ticks, and the time from the sample to its update, 0 or more
+and at most 1 000 000 ticks; 1 to a million rows, repeated when a run is longer. It stands in place of jitter, and
+with delay_s of update_jitter too.
+
+missed and stale are a probability, 0 % to below 100 %, of every tick by itself, or {every: n} for every
+n-th tick, a whole number from 2 to 1e9. None when left out.
+
+With period_used: measured the firmware computes each tick with the measured time since the tick before, which
+needs formulas with T in them: parts that are constant or have the map forward, backward, tustin or prewarped. Parts
+with another map, models in z and stored: with_period hold numbers for one T and are refused.
 
 A loop in which the effort of a tick would need a sample that depends on it (plant and
-sensor with as many zeros as poles, no delay, a controller that answers at once) is refused
+sensor with as many zeros as poles, no delay or a measured one of 0, a controller that answers at once) is refused
 as an algebraic loop, and so is one whose continuous equations have no solution
 (1 + C·P·H = 0 at infinite frequency).
 
@@ -246,10 +347,19 @@ found by the program when it is left out. The loop's own rate is in timing.
 At most 20, each a mapping of one key:
 
   - sine: {name: gear mesh, at: sensor, size: 0.002, frequency: 310 Hz}
+  - load_step: {name: tool down, size: 0.4, time: 0.2 s}
+  - noise: {at: sensor, rms: 0.01, band: 200 Hz}
+  - file: {name: road, at: output, file: d.csv}
 
-A vibration or ripple of known frequency. at is input (of the plant), output (when left
-out) or sensor; name and size, not 0, may be left out. It tells where the frequency lands
-among the samples; runs do not contain it.
+name and at may be left out in each. at is input (of the plant), output or sensor: output for a sine
+when left out, input for the others. Sizes are in effort units at the input, else in output units.
+
+	sine       a vibration or ripple of known frequency. It tells where the frequency lands among the samples;
+	           with a size, which is not 0, runs contain it
+	load_step  a step of size, not 0, at time, 0 s when left out
+	noise      random, of an rms above 0; with a band a first-order spectrum with its −3 dB corner there,
+	           without one white, a new value every tick
+	file       a record with the header t_s,d, two rows or more (at most a million), rising times from 0 on
 
 # Requirements
 
@@ -263,9 +373,9 @@ Lines "name op number unit" with op one of <= >= < >. Names and units:
 	delay_margin, jitter_margin                             a time
 	crossover, bandwidth                                    a frequency
 	overshoot                                               %
-	rise_time, settling_time                                a time
+	rise_time, settling_time, recovery_time                 a time
 	peak_effort, effort_noise                               effort units
-	ripple, stuck_error                                     output units
+	ripple, stuck_error, limit_cycle                        output units
 	peak_tracking_error, rms_tracking_error                 output units; needs a move or file
 	word_margin                                             bits
 	processor_load                                          %
@@ -279,7 +389,8 @@ limits in either.
 Options, WithRate and WithMap give the loop of the same file at another rate or with another
 map of the controller (not of prefilter and feedforward), with every check again. The prewarp
 frequency of the file counts only under a map that asks for it. A model in z takes no other
-rate. Numbers stored with_period stay as stored, so that Ki and Kd change.
+rate. Numbers stored with_period stay as stored, so that Ki and Kd change. Tick times of a measured file
+stay as measured and must still be 0.01 to 100 ticks long.
 
 Loops made from each other share their numbers: nobody changes a number or a slice of a Loop.
 */

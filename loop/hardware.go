@@ -2,7 +2,6 @@ package loop
 
 import (
 	"fmt"
-	"math/big"
 
 	"steadytick/sdomain"
 )
@@ -21,20 +20,23 @@ func (r *reader) continuousModel(n *node, what string) (sdomain.Model, bool) {
 	return m.m, true
 }
 
-// plant reads the plant with its dead time.
+// plant reads the plant with its dead time and its moving parts.
 func (r *reader) plant(l *Loop, n *node) {
 	if n == nil {
 		return
 	}
-	s, broken := r.section(n, "plant", "model", "dead_time")
+	s, broken := r.section(n, "plant", "model", "dead_time", "friction", "backlash")
 	if broken {
 		return
 	}
 	delay, timed := r.seconds(s.get("dead_time"), "dead_time")
 	m, ok := r.continuousModel(s.need("model", "model: "+modelForms), "the plant")
+	l.Backlash = r.backlash(s.get("backlash"))
 	if !ok {
+		r.friction(s.get("friction"), s.keyAt("friction"), nil)
 		return
 	}
+	l.Friction = r.friction(s.get("friction"), s.keyAt("friction"), &m)
 	if timed {
 		var err error
 		if m, err = m.WithDelay(delay); err != nil {
@@ -44,31 +46,12 @@ func (r *reader) plant(l *Loop, n *node) {
 	l.Plant = m
 }
 
-// sensor reads the sensor; without one the model is 1.
-func (r *reader) sensor(l *Loop, n *node) {
-	l.Sensor.Model = sdomain.Const(big.NewRat(1, 1))
-	if n == nil {
-		return
-	}
-	s, broken := r.section(n, "sensor", "model", "bits", "range")
-	if broken {
-		return
-	}
-	if m, ok := r.continuousModel(s.get("model"), "the sensor"); ok {
-		l.Sensor.Model = m
-	}
-	r.converter(s, "range", &l.Sensor.Bits, &l.Sensor.Range)
-	if s.has("range") && !s.has("bits") {
-		r.report(s.keyAt("range"), "range without bits", "bits: of the converter, or no range")
-	}
-}
-
 // actuator reads what limits the effort.
 func (r *reader) actuator(l *Loop, n *node) {
 	if n == nil {
 		return
 	}
-	s, broken := r.section(n, "actuator", "limits", "bits", "slew")
+	s, broken := r.section(n, "actuator", "limits", "bits", "slew", "step", "deadband")
 	if broken {
 		return
 	}
@@ -83,6 +66,9 @@ func (r *reader) actuator(l *Loop, n *node) {
 			l.Actuator.Slew = v
 		}
 	}
+	s.together("bits", "step")
+	s.fill("step", &l.Actuator.Step, r.positive)
+	s.fill("deadband", &l.Actuator.Deadband, r.notNegative)
 }
 
 // converter reads bits and its range, a list [low, high], under the given key. It
@@ -94,20 +80,28 @@ func (r *reader) converter(s *section, key string, bits *int, span *[2]float64) 
 			r.report(s.keyAt("bits"), fmt.Sprintf("bits without %s", key), key+": [low, high], which the codes divide")
 		}
 	}
-	n := s.get(key)
-	c, ok := r.constants(n, key, 2)
+	v, ok := r.span(s.get(key), key)
+	if ok {
+		*span = v
+	}
+	return ok
+}
+
+// span reads two rising numbers. A nil n gives false without a word.
+func (r *reader) span(n *node, what string) (span [2]float64, ok bool) {
+	c, ok := r.constants(n, what, 2)
 	if !ok {
-		return false
+		return span, false
 	}
 	if len(c) != 2 || c[0].Cmp(c[1]) >= 0 {
-		r.report(n.at, fmt.Sprintf("%s are not two rising numbers", key), "[low, high] with low < high")
-		return false
+		r.report(n.at, fmt.Sprintf("%s are not two rising numbers", what), "[low, high] with low < high")
+		return span, false
 	}
 	span[0], _ = c[0].Float64()
 	span[1], _ = c[1].Float64()
 	if !(span[0] < span[1]) {
-		r.report(n.at, fmt.Sprintf("%s are too close together", key), "[low, high] with low < high")
-		return false
+		r.report(n.at, fmt.Sprintf("%s are too close together", what), "[low, high] with low < high")
+		return span, false
 	}
-	return true
+	return span, true
 }

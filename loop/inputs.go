@@ -1,11 +1,8 @@
 package loop
 
 import (
-	"bytes"
 	"fmt"
 	"math"
-	"strconv"
-	"strings"
 )
 
 // inputKinds in the order in which messages list them.
@@ -111,97 +108,32 @@ func moveTime(m *Move) float64 {
 		2*m.Velocity/m.Acceleration + 2*m.Acceleration/m.Jerk
 }
 
-// maxRows bounds an input file.
-const maxRows = 1_000_000
-
 // fileInput reads a CSV file with the header t_s,r and rising times.
 func (r *reader) fileInput(in *Input, n *node) bool {
-	name, ok := r.text(n, "file")
+	name, src, ok := r.openCSV(n, "t_s,r")
+	in.File = name
 	if !ok {
 		return false
 	}
-	in.File = name
-	if r.open == nil || name == "" || strings.ContainsRune(name, 0) {
-		r.report(n.at, "input files cannot be opened here", "")
-		return false
-	}
-	src, err := r.open(name)
-	if err != nil {
-		r.report(n.at, fmt.Sprintf("file %s: %v", quote(name), err), "a CSV file with the header t_s,r")
-		return false
-	}
-	return r.csv(in, name, src)
+	in.Times, in.Values, ok = r.timeSeries(name, src, "r")
+	return ok
 }
 
-// csv fills Times and Values. Its problems name the CSV file; only the first is told.
-func (r *reader) csv(in *Input, name string, src []byte) bool {
-	fail := func(line int, text, message, expected string) bool {
-		if len(text) > 200 {
-			text = text[:200]
-		}
-		r.faults++
-		r.problems = append(r.problems, Problem{File: name, Line: line, Column: min(line, 1), LineText: text,
-			Message: message, Expected: expected})
-		return false
-	}
-	if len(src) > maxCSV {
-		return fail(0, "", "the input file is too long", fmt.Sprintf("at most %d bytes", maxCSV))
-	}
-	src = bytes.TrimPrefix(src, []byte("\xef\xbb\xbf"))
-	line := 0
-	for len(src) > 0 {
-		raw, rest, _ := bytes.Cut(src, []byte("\n"))
-		src = rest
-		line++
-		text := strings.TrimSpace(string(raw))
-		if line == 1 {
-			if head := strings.ReplaceAll(text, " ", ""); head != "t_s,r" {
-				return fail(1, text, "this is not the header of an input file", "t_s,r")
-			}
-			continue
-		}
-		if text == "" {
-			continue
-		}
-		t, v, message := csvRow(text)
+// timeSeries reads a signal over time: the header t_s and the name of the signal, times from 0 on that rise.
+func (r *reader) timeSeries(name string, src []byte, signal string) (times, values []float64, ok bool) {
+	shape := csvShape{headers: []string{"t_s," + signal}, least: 2, most: maxRows, row: "the time in s and " + signal}
+	_, ok = r.csv(name, src, shape, func(v []float64) (message, expected string) {
+		t := v[0]
 		switch {
-		case message != "":
-			return fail(line, text, message, "two numbers: the time in s and r")
 		case t < 0 || t > 1e9:
-			return fail(line, text, "the time is out of range", "0 to 1e9 s")
-		case len(in.Times) > 0 && !(t > in.Times[len(in.Times)-1]):
-			return fail(line, text, "the times do not rise", fmt.Sprintf("a time above %g", in.Times[len(in.Times)-1]))
-		case len(in.Times) == maxRows:
-			return fail(line, "", "the input file has too many rows", fmt.Sprintf("at most %d", maxRows))
+			return "the time is out of range", "0 to 1e9 s"
+		case len(times) > 0 && !(t > times[len(times)-1]):
+			return "the times do not rise", fmt.Sprintf("a time above %g", times[len(times)-1])
 		}
-		in.Times, in.Values = append(in.Times, t), append(in.Values, v)
-	}
-	if len(in.Times) < 2 {
-		return fail(0, "", "the input file has fewer than two rows", "the header t_s,r and two rows or more")
-	}
-	return true
-}
-
-// csvRow reads "t,r"; message is what is wrong, "" for nothing.
-func csvRow(text string) (t, v float64, message string) {
-	a, b, found := strings.Cut(text, ",")
-	if !found || strings.Contains(b, ",") {
-		return 0, 0, "this row does not have two columns"
-	}
-	for _, f := range []struct {
-		s  string
-		to *float64
-	}{{strings.TrimSpace(a), &t}, {strings.TrimSpace(b), &v}} {
-		if strings.Trim(f.s, "0123456789+-.eE") != "" || len(f.s) > 2*maxDigits {
-			return 0, 0, fmt.Sprintf("%s is not a number", quote(f.s))
-		}
-		x, err := strconv.ParseFloat(f.s, 64)
-		if err != nil || math.Abs(x) > 1e200 {
-			return 0, 0, fmt.Sprintf("%s is not a number, or out of range", quote(f.s))
-		}
-		*f.to = x
-	}
-	return t, v, ""
+		times, values = append(times, t), append(values, v[1])
+		return "", ""
+	})
+	return times, values, ok
 }
 
 // first is the first input of one of the kinds, nil for none.

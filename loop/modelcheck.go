@@ -68,7 +68,11 @@ func atInfinity(r exact.Ratio) *big.Rat {
 	if r.IsZero() || r.RelativeDegree() > 0 {
 		return new(big.Rat)
 	}
-	v := new(big.Rat).Set(r.Gain)
+	return leading(r)
+}
+
+// leading is lim m·s^d for large s, d poles more than zeros: the quotient of the leading coefficients. m is not zero.
+func leading(r exact.Ratio) *big.Rat {
 	lead := func(list []exact.Factor) *big.Rat {
 		p := big.NewRat(1, 1)
 		for _, f := range list {
@@ -78,6 +82,6 @@ func atInfinity(r exact.Ratio) *big.Rat {
 		}
 		return p
 	}
-	v.Mul(v, lead(r.Num))
+	v := new(big.Rat).Mul(r.Gain, lead(r.Num))
 	return v.Quo(v, lead(r.Den))
 }

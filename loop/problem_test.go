@@ -42,7 +42,7 @@ func TestPrint(t *testing.T) {
 demo.yaml:2:25: unknown key "deadtime" in plant
     plant: {model: K/(s+1), deadtime: 2}
                             ^
-    expected: one of model, dead_time
+    expected: one of model, dead_time, friction, backlash
     did you mean "dead_time"?`
 	if got := problems.Error(); got != want {
 		t.Errorf("got\n%s\nwant\n%s", got, want)

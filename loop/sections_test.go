@@ -83,6 +83,8 @@ func TestRequirementUnits(t *testing.T) {
 		"rms_tracking_error <= 0.01": 0.01,
 		"samples_per_rise >= 6":      6,
 		"ripple <= 0.001":            0.001,
+		"recovery_time <= 35 ms":     0.035,
+		"limit_cycle <= 1e-4 rad":    1e-4,
 	} {
 		l := mustParse(t, head+"  - "+text+"\n")
 		got := l.Requirements[0]
@@ -135,7 +137,7 @@ func TestLoadFaults(t *testing.T) {
 
 // Every metric of the list can be required, and nothing else.
 func TestMetrics(t *testing.T) {
-	if n := len(Metrics()); n != 26 { // the names of the table in doc.go
+	if n := len(Metrics()); n != 28 { // the names of the table in doc.go
 		t.Errorf("%d metrics", n)
 	}
 	for _, m := range Metrics() {

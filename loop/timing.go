@@ -7,12 +7,14 @@ import (
 
 // timing reads the time-line of a tick. It reports whether the period is known.
 func (r *reader) timing(t *Timing, top *section) bool {
-	*t = Timing{Period: big.NewRat(1, 1), Conversion: new(big.Rat), Compute: new(big.Rat), Jitter: new(big.Rat)}
+	*t = Timing{Period: big.NewRat(1, 1), Conversion: new(big.Rat), Compute: new(big.Rat), Jitter: new(big.Rat),
+		Latency: new(big.Rat), UpdateJitter: new(big.Rat)}
 	n := top.need("timing", "timing: with rate or period")
 	if n == nil {
 		return false
 	}
-	s, broken := r.section(n, "timing", "rate", "period", "conversion", "compute", "update", "jitter")
+	s, broken := r.section(n, "timing", "rate", "period", "conversion", "compute", "update", "jitter",
+		"latency", "update_jitter", "measured", "missed", "stale", "period_used")
 	if broken {
 		return false
 	}
@@ -25,12 +27,19 @@ func (r *reader) timing(t *Timing, top *section) bool {
 		r.filePeriod, r.period = t.Period, t.Period
 		r.overridePeriod(t)
 	}
-	for key, v := range map[string]**big.Rat{"conversion": &t.Conversion, "compute": &t.Compute, "jitter": &t.Jitter} {
+	for key, v := range map[string]**big.Rat{"conversion": &t.Conversion, "compute": &t.Compute, "jitter": &t.Jitter,
+		"latency": &t.Latency, "update_jitter": &t.UpdateJitter} {
 		if x, ok := r.seconds(s.get(key), key); ok {
 			*v = x
 		}
 	}
 	r.update(t, s.get("update"))
+	r.measured(t, s)
+	t.Missed = r.chance(s.get("missed"), "missed")
+	t.Stale = r.chance(s.get("stale"), "stale")
+	if word, ok := r.choice(s.get("period_used"), "period_used", "nominal", "measured"); ok {
+		t.MeasuredPeriod = word == "measured"
+	}
 	return known
 }
 

@@ -87,6 +87,38 @@ func (r *reader) float(n *node, what string) (float64, bool) {
 	return f, true
 }
 
+// notNegative reads a number from 0 on.
+func (r *reader) notNegative(n *node, what string) (float64, bool) {
+	v, ok := r.float(n, what)
+	if ok && v < 0 {
+		r.report(n.at, what+" is negative", "0 or a number above 0")
+		return 0, false
+	}
+	return v, ok
+}
+
+// positive reads a number above zero.
+func (r *reader) positive(n *node, what string) (float64, bool) {
+	v, ok := r.float(n, what)
+	if ok && v <= 0 {
+		r.report(n.at, what+" is not above zero", "a number above 0")
+		return 0, false
+	}
+	return v, ok
+}
+
+// fill reads a key that may be left out into to. It reports whether nothing is wrong.
+func (s *section) fill(key string, to *float64, read func(n *node, what string) (float64, bool)) bool {
+	if !s.has(key) {
+		return true
+	}
+	v, ok := read(s.get(key), key)
+	if ok {
+		*to = v
+	}
+	return ok
+}
+
 // whole reads an integer from low to high.
 func (r *reader) whole(n *node, what string, low, high int64) (int, bool) {
 	c, ok := r.constant(n, what)

@@ -134,7 +134,7 @@ func TestActuatorReachesTheSimulation(t *testing.T) {
 		t.Fatal(err)
 	}
 	for _, converters := range []bool{false, true} {
-		r, err := variant{loop: l, run: a, converters: converters}.simulate(context.Background(), l.Inputs[0], 1)
+		r, err := variant{loop: l, run: a, built: converters}.simulate(context.Background(), l.Inputs[0], 1)
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -168,7 +168,7 @@ func TestTwinHasTheAntiWindup(t *testing.T) {
 		return c.Continuous.Transient.OvershootPercent.Value, c.Sampled.Transient.OvershootPercent.Value
 	}
 	wound, _ := over("none")
-	for _, kind := range []string{"clamp", "{tracking_time: 0.1 s}"} {
+	for _, kind := range []string{"stop_outward", "{tracking_time: 0.1 s}"} {
 		cont, sampled := over(kind)
 		// T over the fastest time constant, 0.0005/0.3, by first order
 		near(t, "overshoot with "+kind, cont, sampled, 0.01*sampled+0.1)

@@ -42,7 +42,8 @@ func requireEverything(l *loop.Loop, limit float64) {
 }
 
 // Every requirement of every example is met, missed with a cause, or not judged with a reason; for any figure v
-// and limit, exactly two of <=, >, <, >= hold; and no NaN reaches a text or the JSON.
+// and limit, exactly two of <=, >, <, >= hold, or fewer where the loop as built is the worse for one and the sampled loop for
+// another of them; and no NaN reaches a text or the JSON.
 func TestGateOfEveryMetric(t *testing.T) {
 	for _, l := range exampleLoops(t) {
 		for _, limit := range []float64{0, 1e-200, -1e200, 0.3, 40, 1e200} {
@@ -51,8 +52,12 @@ func TestGateOfEveryMetric(t *testing.T) {
 			if err != nil {
 				t.Fatal(err)
 			}
-			met := map[string]int{}
+			met, values := map[string]int{}, map[string]map[Figure]bool{}
 			for _, r := range g.Requirements[1:] {
+				if values[r.Name] == nil {
+					values[r.Name] = map[Figure]bool{}
+				}
+				values[r.Name][r.Value] = true
 				switch {
 				case r.Met == nil && (r.NotJudged == "" || r.Cause != nil):
 					t.Errorf("%s: %s is not judged, %q, %+v", l.File, r.Requirement, r.NotJudged, r.Cause)
@@ -61,7 +66,7 @@ func TestGateOfEveryMetric(t *testing.T) {
 				case r.Passed():
 					met[r.Name]++
 				}
-				if r.Met != nil && g.Requirements[0].Passed() && met[r.Name] != 2 && r.Op == ">=" {
+				if r.Met != nil && g.Requirements[0].Passed() && r.Op == ">=" && (met[r.Name] > 2 || met[r.Name] < 2 && len(values[r.Name]) == 1) {
 					t.Errorf("%s: %s against %g: %d of 4 hold", l.File, r.Name, limit, met[r.Name])
 				}
 			}

@@ -94,7 +94,7 @@ func TestGateUnits(t *testing.T) {
 // What cannot be judged is no pass, and says why.
 func TestGateNotJudged(t *testing.T) {
 	for text, want := range map[string]string{
-		held1 + "requirements: [effort_noise <= 1]":                                                        "computes no effort_noise",
+		held1 + "requirements: [effort_noise <= 1]":                                                        "neither noise nor words",
 		held1 + "requirements: [processor_load <= 50 %]":                                                   "no compute time",
 		strings.Replace(held1, "1/(s*(s + 1))", "s/(s + 1)^2", 1) + "requirements: [settling_time <= 1 s]": "no such figure",
 	} {

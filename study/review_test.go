@@ -23,7 +23,7 @@ func TestUnstableWithConverters(t *testing.T) {
 		"timing: {rate: 20 Hz, compute: 0 s}", "inputs: [{step: 1}]"))
 	found := false
 	for _, r := range c.Degrade {
-		if r.Variant == "own rate, with converters" {
+		if r.Variant == asBuilt {
 			found = true
 			if r.Stable || r.Note != "unstable" {
 				t.Errorf("stable %v, note %q", r.Stable, r.Note)
@@ -31,7 +31,7 @@ func TestUnstableWithConverters(t *testing.T) {
 		}
 	}
 	if !found {
-		t.Error("no line with converters")
+		t.Error("no line of the loop as built")
 	}
 }
 
