@@ -177,12 +177,31 @@ func winch() *study.Compare {
 		LoopFile: "loop: winch drum angle            # invented demo data\noutput: rad\neffort: V\n\nplant:\n  model: 0.31 / (s*(0.018*s + 0.09))\ncontroller:\n  model: 4.2*(0.21*s + 1)/(0.011*s + 1)\n  map: tustin\n",
 		File:     "winch.yaml", Version: "0.1.0",
 	}
+	c.AsBuilt = asBuilt()
+	for i := range c.Requirements {
+		c.Requirements[i].From = []string{"sampled", "as built"}[i%2]
+	}
 	step, ramp := "step 1 rad", "ramp 2 rad/s"
 	c.Degrade = append(degradeRows(step, 0.5, variants), degradeRows(ramp, 0.01, variants)...)
 	c.Curves = &study.Curves{Inputs: []study.InputCurves{inputCurves(step, 0, variants), inputCurves(ramp, 2, variants)},
 		NyquistRadS: math.Pi / 5e-4, RateHz: 2000}
 	addLoopCurves(c)
 	return c
+}
+
+// asBuilt is an invented loop on its hardware.
+func asBuilt() *study.AsBuilt {
+	b := &study.AsBuilt{Seed: 7, NoiseTicks: 20_000, Effort: study.Fig(0.41), Output: study.Fig(3.2e-4),
+		Transient: study.Transient{OvershootPercent: study.Fig(26.25), RiseTimeS: study.Fig(0.0047), SettlingTimeS: none, PeakTimeS: study.Fig(0.0101),
+			PeakEffort: study.Fig(24), RecoveryTimeS: study.Fig(0.0312)},
+		Rest: &study.Rest{Starts: 12, Cycling: 3, LimitCycle: study.Fig(7.7e-4), PeriodS: study.Fig(0.0625), EffortPP: study.Fig(0.21875),
+			Bound: none, StuckError: study.Fig(3.9e-4)}}
+	for _, s := range column(true).Steady {
+		b.Steady = append(b.Steady, study.BuiltSteady{Input: s.Input, Size: s.Size, TrackingError: study.Fig(0.0123), WorstError: study.Fig(0.0456),
+			Swing: study.Fig(7.89e-4), AtLimit: s.Input == "parabola"})
+	}
+	b.Steady = append(b.Steady, study.BuiltSteady{Input: "move", PeakError: study.Fig(0.033), RMSError: study.Fig(0.011)})
+	return b
 }
 
 // addLoopCurves invents frequency responses, poles and the curves over the rate.
@@ -224,7 +243,7 @@ func stormy() *study.Compare {
 	long := strings.Repeat("a very long name of a loop that somebody typed without a thought for tables ", 2)
 	c.Loop, c.Units = hostile, study.Units{Output: "<i>mm</i>", Effort: `"N"`}
 	c.LoopFile, c.File, c.Verdict, c.Version = "loop: "+hostile+"\n", hostile+".yaml", "Unstable: "+hostile, hostile
-	c.Sampled = column(false)
+	c.Sampled, c.AsBuilt = column(false), nil
 	c.Sampled.Poles, c.Sampled.EquivalentPoles = nil, nil
 	for k := range 32 {
 		for _, sign := range []float64{1, -1} {

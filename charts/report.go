@@ -75,6 +75,7 @@ type view struct {
 	Steady          []group
 	Ledger          []ledgerRow
 	LedgerUnit      string
+	Built           []builtGroup
 	Requirements    []requirementRow
 	Inputs          []inputView
 	Frequency       section
@@ -112,7 +113,7 @@ func Report(w io.Writer, c *study.Compare) error {
 func newView(c *study.Compare) (*view, error) {
 	t := tables{c: c, notes: c.Warnings}
 	v := &view{C: c, Trouble: c.Sampled != nil && !c.Sampled.Stable,
-		Compare: t.compare(), Series: t.series(), Steady: t.steady(), Requirements: t.requirements(),
+		Compare: t.compare(), Built: t.built(), Series: t.series(), Steady: t.steady(), Requirements: t.requirements(),
 		Crossings: t.crossings(), PoleTables: t.poles()}
 	v.Ledger, v.LedgerUnit = t.ledger()
 	v.setFacts()

@@ -109,7 +109,7 @@ func (t tables) compare() []group {
 	integer := func(c *study.Column) (figure, bool) {
 		return figure{Value: exact(c.Type), Text: formatNumber(float64(c.Type))}, false
 	}
-	return []group{
+	return t.three([]group{
 		{"Stability", []row{
 			t.truth("closed loop", "stable", "stable", "unstable", func(c *study.Column) bool { return c.Stable }),
 			t.truth("judged by closed-loop poles", "stable_by_poles", "stable", "unstable", func(c *study.Column) bool { return c.StabilityByPoles }),
@@ -117,9 +117,10 @@ func (t tables) compare() []group {
 			t.words("loop type", "type", integer),
 		}},
 		{"Margins", t.rows(marginQuantities)},
-		{"Step response", t.rows(transientQuantities(t.c.Units))},
+		{"Step response", t.builtRows(stepQuantities(t.c.Units))},
+		{"Noise and words", t.builtRows(wordQuantities(t.c.Units))},
 		{"Error constants", t.rows(constantQuantities)},
-	}
+	})
 }
 
 // series is the table of the error series.
@@ -153,16 +154,6 @@ var constantQuantities = []quantity{
 	{"position constant Kp", "", "", "position_constant", func(c *study.Column) study.Figure { return c.PositionConstant }},
 	{"velocity constant Kv", "", "1/s", "velocity_constant", func(c *study.Column) study.Figure { return c.VelocityConstant }},
 	{"acceleration constant Ka", "", "1/s²", "acceleration_constant", func(c *study.Column) study.Figure { return c.AccelerationConstant }},
-}
-
-func transientQuantities(u study.Units) []quantity {
-	return []quantity{
-		{"overshoot", "", "%", "transient.overshoot_percent", func(c *study.Column) study.Figure { return c.Transient.OvershootPercent }},
-		{"rise time", "10 to 90 %", timeUnit, "transient.rise_time_s", func(c *study.Column) study.Figure { return c.Transient.RiseTimeS }},
-		{"settling time", "", timeUnit, "transient.settling_time_s", func(c *study.Column) study.Figure { return c.Transient.SettlingTimeS }},
-		{"peak time", "", timeUnit, "transient.peak_time_s", func(c *study.Column) study.Figure { return c.Transient.PeakTimeS }},
-		{"peak effort", "", u.Effort, "transient.peak_effort", func(c *study.Column) study.Figure { return c.Transient.PeakEffort }},
-	}
 }
 
 func seriesQuantities(path string, get func(*study.Column) [4]study.Figure) []quantity {

@@ -38,6 +38,7 @@ func ledgerRows(list []study.LedgerItem) (rows []ledgerRow, unitName string) {
 // requirementRow is one requirement and how it fares.
 type requirementRow struct {
 	Name, Op, Unit string
+	From           figure // the column of the value
 	Limit, Value   figure
 	Met            figure
 	State          string // "met", "missed", "open"
@@ -55,6 +56,7 @@ func (t tables) requirements() []requirementRow {
 		}
 		r := requirementRow{Name: words(q.Name), Op: opSign(q.Op), Unit: u.name,
 			Limit: showFloat(path+"limit", q.Limit, u), Value: show(path+"value", q.Value, u)}
+		r.From = figure{Path: path + "from", Value: q.From, Text: q.From}
 		r.Met, r.State = figure{Path: path + "met", Value: "null", Text: "cannot be judged"}, "open"
 		if q.Met != nil {
 			r.Met, r.State = showBool(path+"met", *q.Met, "✓ met", "✗ not met"), "missed"

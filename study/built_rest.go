@@ -65,12 +65,25 @@ type restRun struct {
 	period Figure
 }
 
-// rest goes to a place near the step's end, even starts from below and odd ones from above, and looks at the last third.
+// rest goes to a place near the step's end, even starts from below and odd ones from above, and looks at the last third. A run that
+// neither stands still nor has passed through a whole cycle is made longer.
 func rest(ctx context.Context, l *loop.Loop, sampled *analyzed, h float64, start int) (restRun, error) {
+	T := sampled.seconds()
+	ticks := math.Min(math.Max(3*h/T, 3*restTicks), mostTicksBuilt/3)
+	for {
+		r, going, err := restFor(ctx, l, sampled, math.Floor(ticks), start)
+		if err != nil || !going || ticks >= mostTicksBuilt {
+			return r, err
+		}
+		ticks = math.Min(5*ticks, mostTicksBuilt)
+	}
+}
+
+// restFor is one run of that many ticks; going tells that a longer one would say more.
+func restFor(ctx context.Context, l *loop.Loop, sampled *analyzed, ticks float64, start int) (out restRun, going bool, err error) {
 	in, _ := stepRun(l, nil, sampled)
 	place := in.Size + sensorBin(l)*float64(start)/restStarts
 	T := sampled.seconds()
-	ticks := math.Min(math.Max(3*h/T, 3*restTicks), mostTicksBuilt/4)
 	away := math.Floor(ticks / 3)
 	from := 0.75 * place
 	if start%2 == 1 {
@@ -78,24 +91,26 @@ func rest(ctx context.Context, l *loop.Loop, sampled *analyzed, h float64, start
 	}
 	r, err := sim.Table([]float64{0, away * T, away * T}, []float64{from, from, place})
 	if err != nil {
-		return restRun{}, err
+		return out, false, err
 	}
 	cfg, err := builtConfig(l, sampled.block, in, ticks*T, 1, undisturbed)
 	if err != nil {
-		return restRun{}, err
+		return out, false, err
 	}
 	cfg.Reference, cfg.Disturbances, cfg.PointsPerTick = r, nil, 2
 	cfg.TailFrom, cfg.MaxPoints = max(1, cfg.Ticks-cfg.Ticks/3), int(cfg.Ticks)+16
 	t, err := sim.Run(ctx, cfg)
 	if err != nil || t.Diverged {
-		return restRun{}, err
+		return out, false, err
 	}
-	out := restRun{mean: t.Tail.MeanError, swing: t.Tail.Swing, effort: t.Tail.HighestEffort - t.Tail.LowestEffort}
+	out = restRun{mean: t.Tail.MeanError, swing: t.Tail.Swing, effort: t.Tail.HighestEffort - t.Tail.LowestEffort}
 	period, early, late := cycleOf(t.TickT, t.TickY, float64(cfg.TailFrom)*T)
+	moves := out.swing > stillSwing*math.Max(math.Abs(place), out.swing*1e-3)
 	// What is still dying out is no cycle: its swing falls.
-	out.cycles = out.swing > stillSwing*math.Max(math.Abs(place), out.swing*1e-3) && late > 0.7*early
-	out.period = period
-	return out, nil
+	out.cycles, out.period = moves && late > 0.7*early, period
+	// An effort that goes on while the output stands, or a swing without a period: the cycle may be longer than the run.
+	drifts := out.effort > stillSwing*math.Max(math.Abs(t.Tail.MeanEffort), 1e-300)
+	return out, drifts && !(out.cycles && period.OK), nil
 }
 
 // cycleOf is the mean time between the upward passings of the middle of y from the instant on, and the swings in both halves

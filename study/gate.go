@@ -48,6 +48,7 @@ type GateRequirement struct {
 	Line        int    `json:"line"` // of the loop file, 0 for stable
 	Value       Figure `json:"value"`
 	Continuous  Figure `json:"continuous_value"` // of the loop as designed
+	From        string `json:"from"`             // the column of value: "sampled", or "as built" where that is worse; "" for stable
 	Met         *bool  `json:"met"`              // null: not judged, which is no pass
 	NotJudged   string `json:"not_judged"`       // why it is not judged, "" where it is
 
@@ -118,7 +119,7 @@ func gateStable(c *Compare) GateRequirement {
 func gateRequirement(l *loop.Loop, c *Compare, r loop.Requirement, j Requirement) GateRequirement {
 	out := GateRequirement{
 		Requirement: r.Text, Name: j.Name, Op: j.Op, Limit: Fig(j.Limit), Unit: j.Unit, Line: r.Line,
-		Value: j.Value, Continuous: continuousMetric(l, c, j.Name), Met: j.Met, Written: writtenUnit(r, j.Unit),
+		Value: j.Value, From: j.From, Continuous: continuousMetric(l, c, j.Name), Met: j.Met, Written: writtenUnit(r, j.Unit),
 	}
 	if j.Met == nil {
 		out.NotJudged = notJudged(l, c, j.Name)

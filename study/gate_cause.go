@@ -19,6 +19,8 @@ type GateCause struct {
 	//	ripple      what lives between the ticks
 	//	actuator    the effort reaches its limit
 	//	processor   the compute time
+	//	hardware    the sampled loop meets it; the words, noise, ticks and mechanics that the file declares do not
+	//	words       the word lengths and the noise of the sensor, or what sticks at rest
 	//	unstable    the loop is unstable and meets nothing
 	Kind string `json:"kind"`
 	Text string `json:"text"`
@@ -39,7 +41,14 @@ func causeOf(l *loop.Loop, c *Compare, r GateRequirement) *GateCause {
 	if !c.Sampled.Stable {
 		return causef("unstable", "the loop is unstable: it meets no requirement, whatever its figures")
 	}
+	if alone, why := metric(l, c, r.Name); r.From == asBuilt && alone.OK && why == "" && meets(alone.Value, r.Op, r.Limit.Value) {
+		return causef("hardware", "the sampled loop alone has %s and meets it: what the file declares of the hardware makes the difference", r.withUnit(alone))
+	}
 	switch r.Name {
+	case "effort_noise":
+		return causef("words", "the noise and the codes of the sensor reach the effort with the gain of the controller: a finer sensor, a slower or more filtered derivative, or less gain at high frequency")
+	case "stuck_error", "limit_cycle":
+		return causef("words", "codes, dead zone, friction or play hold the loop off its place: finer codes, or an integrator where a stuck error is the matter; none of them is cured by the sample rate alone")
 	case "step_error", "ramp_error", "parabola_error":
 		return steadyCause(l, c, r)
 	case "load_error":
@@ -50,7 +59,7 @@ func causeOf(l *loop.Loop, c *Compare, r GateRequirement) *GateCause {
 		return rippleCause(c, r)
 	case "peak_tracking_error", "rms_tracking_error":
 		return followCause(l, c, r)
-	case "overshoot", "rise_time", "settling_time", "peak_effort":
+	case "overshoot", "rise_time", "settling_time", "peak_effort", "recovery_time":
 		return stepCause(l, c, r)
 	case "samples_per_rise":
 		return samplesCause(c, r)

@@ -13,6 +13,7 @@ const (
 	itemDeadTime = "plant dead time"
 	itemSensor   = "sensor lag"
 	itemMap      = "controller map"
+	itemLatency  = "interrupt latency"
 )
 
 // ledger lists what adds lag around the sampled loop. Pure delays are seconds times
@@ -30,6 +31,11 @@ func ledger(l *loop.Loop, sampled *analyzed, cont *analyzed) []LedgerItem {
 	T := l.Timing.Period
 	wait := new(big.Rat).Sub(l.Timing.LoopDelay(), l.Timing.Conversion)
 	wait.Sub(wait, l.Timing.Compute)
+	latency := new(big.Rat)
+	if positive(l.Timing.Latency) {
+		latency = l.Timing.Latency
+		wait.Sub(wait, latency)
+	}
 	var out []LedgerItem
 	for _, x := range []struct {
 		item    string
@@ -37,10 +43,14 @@ func ledger(l *loop.Loop, sampled *analyzed, cont *analyzed) []LedgerItem {
 	}{
 		{"hold, half a tick", new(big.Rat).Quo(T, big.NewRat(2, 1))},
 		{"conversion", l.Timing.Conversion},
+		{itemLatency, latency},
 		{"compute", l.Timing.Compute},
 		{"waiting for the update", wait},
 		{itemDeadTime, l.Plant.Delay},
 	} {
+		if x.item == itemLatency && latency.Sign() == 0 {
+			continue // most files do not declare one
+		}
 		s, _ := x.seconds.Float64()
 		out = append(out, LedgerItem{x.item, s, degrees(s)})
 	}

@@ -46,6 +46,9 @@ func (j *rateJob) windows() error {
 	}
 	for _, q := range j.unjudged {
 		note := "rate does not evaluate this metric"
+		if q.Name == "limit_cycle" {
+			note = "a limit cycle is searched for at one rate: the pick shows it, or compare --rate"
+		}
 		j.r.warn("requirement_not_judged", "requirement %q cannot be judged: %s; it is left out of the window", q.Text, note)
 		j.r.Windows = append(j.r.Windows, RateWindow{Requirement: q.Text, Name: q.Name, Intervals: []Interval{}, Note: note,
 			Unit: requirementUnit(q.Name, j.r.Units)})

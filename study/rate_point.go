@@ -111,6 +111,9 @@ func (p *ratePoint) analyse(shared *heldAt, between bool) error {
 	p.c = &Compare{PeriodS: T, Units: Units{p.loop.Output, p.loop.Effort}}
 	p.c.Sampled = a.figures(p.loop, between)
 	p.c.Sampled.GainCrossings, p.c.Sampled.PhaseCrossings = nil, nil
+	if requiresWords(p.loop) {
+		return p.c.Sampled.addWords(context.Background(), p.loop, a) // a solution, not a run: nothing to interrupt
+	}
 	return nil
 }
 

@@ -8,12 +8,21 @@ type ComparisonRow struct {
 	Key, Name, Unit string
 	Figure          func(*Column) Figure
 	Word            func(*Column) string
+	Built           func(*AsBuilt) Figure // of the loop as built; nil: none
 }
 
 // ComparisonRows are the lines of the comparison table in order; text and report print these.
 func ComparisonRows(c *Compare) []ComparisonRow {
 	fig := func(key, name, unit string, f func(*Column) Figure) ComparisonRow {
 		return ComparisonRow{Key: key, Name: name, Unit: unit, Figure: f}
+	}
+	built := func(r ComparisonRow, f func(*AsBuilt) Figure) ComparisonRow {
+		r.Built = f
+		return r
+	}
+	step := func(key, name, unit string, f func(*Transient) Figure) ComparisonRow {
+		return built(fig("transient."+key, name, unit, func(c *Column) Figure { return f(&c.Transient) }),
+			func(b *AsBuilt) Figure { return f(&b.Transient) })
 	}
 	rows := []ComparisonRow{
 		{Key: "stable", Name: "stable", Word: func(c *Column) string {
@@ -45,11 +54,18 @@ func ComparisonRows(c *Compare) []ComparisonRow {
 		fig("jitter_margin_s", "jitter margin", "s", func(c *Column) Figure { return c.JitterMarginS }),
 		fig("crossover_rad_s", "crossover", "rad/s", func(c *Column) Figure { return c.CrossoverRadS }),
 		fig("bandwidth_rad_s", "bandwidth (−3 dB)", "rad/s", func(c *Column) Figure { return c.BandwidthRadS }),
-		fig("transient.overshoot_percent", "overshoot", "%", func(c *Column) Figure { return c.Transient.OvershootPercent }),
-		fig("transient.rise_time_s", "rise time 10–90 %", "s", func(c *Column) Figure { return c.Transient.RiseTimeS }),
-		fig("transient.settling_time_s", "settling time", "s", func(c *Column) Figure { return c.Transient.SettlingTimeS }),
-		fig("transient.peak_time_s", "peak time", "s", func(c *Column) Figure { return c.Transient.PeakTimeS }),
-		fig("transient.peak_effort", "peak effort", c.Units.Effort, func(c *Column) Figure { return c.Transient.PeakEffort }),
+		step("overshoot_percent", "overshoot", "%", func(t *Transient) Figure { return t.OvershootPercent }),
+		step("rise_time_s", "rise time 10–90 %", "s", func(t *Transient) Figure { return t.RiseTimeS }),
+		step("settling_time_s", "settling time", "s", func(t *Transient) Figure { return t.SettlingTimeS }),
+		step("peak_time_s", "peak time", "s", func(t *Transient) Figure { return t.PeakTimeS }),
+		step("peak_effort", "peak effort", c.Units.Effort, func(t *Transient) Figure { return t.PeakEffort }),
+		step("recovery_time_s", "recovery after the limit", "s", func(t *Transient) Figure { return t.RecoveryTimeS }),
+		built(fig("effort_noise", "effort noise, rms", c.Units.Effort, func(c *Column) Figure { return c.EffortNoise }),
+			func(b *AsBuilt) Figure { return b.Effort }),
+		built(fig("output_noise", "output noise, rms", c.Units.Output, func(c *Column) Figure { return c.OutputNoise }),
+			func(b *AsBuilt) Figure { return b.Output }),
+		built(fig("stuck_error", "stuck error at most", c.Units.Output, func(c *Column) Figure { return c.StuckError }),
+			func(b *AsBuilt) Figure { return b.rest(func(r *Rest) Figure { return r.StuckError }) }),
 	)
 }
 
@@ -105,4 +121,53 @@ func SteadyRows(s Steady, u Units) []SteadyRow {
 			row("end_time_s", "    at time", named("s"), func(s *Steady) Figure { return s.EndTimeS })}
 	}
 	return []SteadyRow{tracking, loopErr, worst}
+}
+
+func (b *AsBuilt) rest(f func(*Rest) Figure) Figure {
+	if b.Rest == nil {
+		return Figure{}
+	}
+	return f(b.Rest)
+}
+
+// BuiltRow is one line about the loop as built that no other column has.
+type BuiltRow struct {
+	Key, Name, Unit string
+	Figure          Figure
+}
+
+// BuiltRows are those lines: the loop at rest, and each input once transients are gone.
+func BuiltRows(c *Compare) []BuiltRow {
+	b := c.AsBuilt
+	if b == nil {
+		return nil
+	}
+	var rows []BuiltRow
+	add := func(key, name, unit string, f Figure) { rows = append(rows, BuiltRow{key, name, unit, f}) }
+	if r := b.Rest; r != nil {
+		add("rest.limit_cycle", "limit cycle at rest, p-p", c.Units.Output, r.LimitCycle)
+		if r.Cycling > 0 {
+			add("rest.limit_cycle_period_s", "  its period", "s", r.PeriodS)
+			add("rest.limit_cycle_effort", "  of the effort, p-p", c.Units.Effort, r.EffortPP)
+		}
+		add("rest.limit_cycle_bound", "  at most, by theory", c.Units.Output, r.Bound)
+		add("rest.cycling", "  runs that hunt", "", Fig(float64(r.Cycling)))
+		add("rest.starts", "  of", "", Fig(float64(r.Starts)))
+	}
+	if b.TableError.OK {
+		add("sensor_table_error", "error of the sensor's table", c.Units.Output, b.TableError)
+	}
+	for i := range b.Steady {
+		s := &b.Steady[i]
+		label := InputLabel(c.Sampled.Steady[i], c.Units)
+		if s.PeakError.OK || s.Input == "move" || s.Input == "file" {
+			add("peak_tracking_error", label+": peak tracking", c.Units.Output, s.PeakError)
+			add("rms_tracking_error", "  rms tracking", c.Units.Output, s.RMSError)
+			continue
+		}
+		add("tracking_error", label+": mean tracking", c.Units.Output, s.TrackingError)
+		add("swing", "  rms about it, at the ticks", c.Units.Output, s.Swing)
+		add("worst_error", "  worst, at and between ticks", c.Units.Output, s.WorstError)
+	}
+	return rows
 }

@@ -147,3 +147,13 @@ func (c *Column) addWords(ctx context.Context, l *loop.Loop, a *analyzed) error 
 	c.EffortNoise, c.OutputNoise, c.StuckError = w.effort, w.output, w.stuck
 	return err
 }
+
+// requiresWords tells whether a requirement names one of these figures: where none does, a sweep over rates saves them.
+func requiresWords(l *loop.Loop) bool {
+	for _, r := range l.Requirements {
+		if r.Name == "effort_noise" || r.Name == "stuck_error" {
+			return true
+		}
+	}
+	return false
+}

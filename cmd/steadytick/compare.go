@@ -4,6 +4,7 @@ import (
 	"context"
 	"fmt"
 	"io"
+	"strconv"
 
 	"github.com/urfave/cli/v2"
 
@@ -24,6 +25,7 @@ func compareCommand() *cli.Command {
 			&cli.StringFlag{Name: "json", Usage: "write the result to `FILE` (- for stdout, in place of the tables)"},
 			&cli.StringFlag{Name: "csv", Usage: "write the simulation to `FILE` (- for stdout, in place of the tables)"},
 			&cli.StringFlag{Name: "csv-input", Usage: "the input that --csv simulates: its `NUMBER` in the file's list, from 1", Value: "1"},
+			&cli.StringFlag{Name: "seed", Usage: "`NUMBER` that the noise of the loop as built depends on, from 1", Value: "1"},
 			&cli.StringFlag{Name: "html", Usage: "write the report to `FILE`"},
 		},
 		Action: compareAction,
@@ -54,6 +56,9 @@ func compareAction(c *cli.Context) error {
 	}
 	if _, err := fmt.Sscanf(c.String("csv-input"), "%d", &req.csvInput); err != nil || req.csvInput < 1 {
 		return requestf("--csv-input wants the number of an input in the file's list, from 1; got %q", c.String("csv-input"))
+	}
+	if req.options.Seed, err = strconv.ParseUint(c.String("seed"), 10, 63); err != nil || req.options.Seed < 1 {
+		return requestf("--seed wants a whole number from 1; got %q", c.String("seed"))
 	}
 	if c.IsSet("csv-input") && req.csv == "" {
 		return requestf("--csv-input needs --csv FILE")

@@ -17,11 +17,9 @@ func printCompare(w io.Writer, c *study.Compare) error {
 		printWrapped(w, "", c.Verdict)
 	}
 	t.line("")
-	t.row("", "", "continuous", "sampled")
-	for _, r := range study.ComparisonRows(c) {
-		t.row(r.Name, r.Unit, cell(c.Continuous, r), cell(c.Sampled, r))
-	}
+	printColumns(t, c)
 	printSteady(t, c)
+	printBuilt(t, c)
 	printPoles(t, c)
 	printLedger(t, c)
 	printMaps(t, c)
@@ -32,6 +30,42 @@ func printCompare(w io.Writer, c *study.Compare) error {
 		printWrapped(w, "", study.Caution)
 	}
 	return t.err
+}
+
+// printColumns prints the comparison, with a third column where the file declares hardware.
+func printColumns(t *table, c *study.Compare) {
+	rows := study.ComparisonRows(c)
+	if c.AsBuilt == nil {
+		t.row("", "", "continuous", "sampled")
+		for _, r := range rows {
+			t.row(r.Name, r.Unit, cell(c.Continuous, r), cell(c.Sampled, r))
+		}
+		return
+	}
+	t.row3("", "", "continuous", "sampled", "as built")
+	for _, r := range rows {
+		t.row3(r.Name, r.Unit, cell(c.Continuous, r), cell(c.Sampled, r), builtCell(c.AsBuilt, r))
+	}
+}
+
+func builtCell(b *study.AsBuilt, r study.ComparisonRow) string {
+	if r.Built == nil {
+		return ""
+	}
+	return show(r.Built(b))
+}
+
+// printBuilt prints what only the loop as built has.
+func printBuilt(t *table, c *study.Compare) {
+	if c.AsBuilt == nil {
+		return
+	}
+	t.line("")
+	t.line("As built: simulated on the hardware of the file, seed %d", c.AsBuilt.Seed)
+	t.line("  noise over %d ticks; each input in the last third of a long run", c.AsBuilt.NoiseTicks)
+	for _, r := range study.BuiltRows(c) {
+		t.row(r.Name, r.Unit, "", show(r.Figure))
+	}
 }
 
 // cell is one value of a comparison row.
@@ -150,7 +184,11 @@ func printRequirements(t *table, c *study.Compare) {
 		return
 	}
 	t.line("")
-	t.line("Requirements (sampled loop)")
+	of := "sampled loop"
+	if c.AsBuilt != nil {
+		of = "the worse of sampled and as built"
+	}
+	t.line("Requirements (%s)", of)
 	for _, r := range c.Requirements {
 		verdict := "cannot be judged"
 		if r.Met != nil {

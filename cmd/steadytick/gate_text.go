@@ -84,6 +84,9 @@ func requirementLines(g *study.GateLoop) []gateLine {
 			l.cells[3] = strings.TrimRight(r.Op+" "+show(r.Written.In(r.Limit))+" "+cut(r.Written.Name, 12), " ")
 			l.cells[4], l.cells[5] = short(r.Written.In(r.Slack), 4), percent(r.SlackPercent)
 		}
+		if r.From == "as built" && r.Met != nil && *r.Met {
+			l.why = append(l.why, "of the loop as built, which is the worse here")
+		}
 		if r.NotJudged != "" {
 			l.why = append(l.why, r.NotJudged)
 		}

@@ -78,6 +78,11 @@ func (t *table) row(name, unit, continuous, sampled string) {
 	t.line("  %s%s%s%s", padRight(cut(name, 34), 35), padRight(cut(unit, 10), 11), padLeft(continuous, 14), padLeft(sampled, 15))
 }
 
+// row3 is row with three values.
+func (t *table) row3(name, unit, left, middle, right string) {
+	t.line("  %s %s%s%s%s", padRight(cut(name, 26), 26), padRight(cut(unit, 8), 8), padLeft(left, 13), padLeft(middle, 14), padLeft(right, 14))
+}
+
 // printWrapped prints a text under a label, wrapped with a hanging indent.
 func printWrapped(w io.Writer, label, text string) {
 	line := label
