@@ -93,6 +93,9 @@ func TestMeasuredTicks(t *testing.T) {
 	direct := "plant: {model: (s + 2)/(s + 1)}\n"
 	accepted(t, direct+timed(", compute: 1 us, measured: ticks.csv"))
 	refused(t, direct+timed(", §compute: 1 us, measured: both.csv"), "algebraic loop")
+	// The longest delay counts among all delay, 1000 s here: 0.2 ms of the file, with none in timing.
+	accepted(t, "plant: {model: 1/(s + 1), dead_time: 999.9997 s}\n"+timed(", measured: both.csv"))
+	refused(t, "plant: {model: 1/(s + 1), §dead_time: 999.9999 s}\n"+timed(", measured: both.csv"), "all delay together is 1000000")
 }
 
 // A file at another rate: its intervals stay, and must still belong to the tick.
