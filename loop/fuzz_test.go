@@ -1,6 +1,7 @@
 package loop
 
 import (
+	"math"
 	"math/big"
 	"os"
 	"path/filepath"
@@ -63,7 +64,14 @@ func FuzzLoopFile(f *testing.F) {
 			f.Add(string(src))
 		}
 	}
-	open := func(name string) ([]byte, error) { return []byte("t_s,r\n0,0\n1,1\n"), nil }
+	open := func(name string) ([]byte, error) { // what it holds is told by the beginning of its name
+		for beginning, text := range map[string]string{"d": sides["d.csv"], "n": sides["ntc.csv"], "b": sides["both.csv"], "ti": sides["ticks.csv"]} {
+			if strings.HasPrefix(name, beginning) {
+				return []byte(text), nil
+			}
+		}
+		return []byte(sides["ref.csv"]), nil
+	}
 	f.Fuzz(func(t *testing.T, src string) {
 		start := time.Now()
 		l, problems := Parse("fuzz.yaml", []byte(src), open)
@@ -106,6 +114,7 @@ func checkWhole(t *testing.T, l *Loop) {
 	if tm.Period.Sign() <= 0 || tm.LoopDelay().Sign() < 0 || tm.Jitter.Sign() < 0 {
 		t.Fatalf("timing %+v", tm)
 	}
+	checkHardware(t, l)
 	again, problems := l.WithRate(tm.Period)
 	if len(problems) > 0 || again.Timing.Period.Cmp(tm.Period) != 0 {
 		t.Fatalf("its own rate is refused: %v", problems)
@@ -115,4 +124,49 @@ func checkWhole(t *testing.T, l *Loop) {
 	agree(t, "3/2 of the period", l, Options{Period: period}, other, problems)
 	other, problems = l.WithMap("hold")
 	agree(t, "another map", l, Options{Map: "hold"}, other, problems)
+}
+
+// checkHardware looks for what the simulation of a loop that was accepted relies on.
+func checkHardware(t *testing.T, l *Loop) {
+	t.Helper()
+	sound := func(what string, good bool) {
+		if !good {
+			t.Fatalf("%s of %+v", what, l)
+		}
+	}
+	a, s, tm, w := l.Actuator, l.Sensor, l.Timing, l.Controller.AntiWindup
+	sound("actuator", a.Step >= 0 && a.Deadband >= 0 && (a.Step == 0 || a.Bits == 0) && !math.IsInf(a.Step+a.Deadband, 0))
+	sound("sensor", s.Step >= 0 && s.Noise >= 0 && (s.Step == 0 || s.Bits == 0) && !math.IsInf(s.Step+s.Noise+s.Offset, 0) && !math.IsNaN(s.Offset))
+	if e := s.Encoder; e != nil {
+		sound("encoder", s.Bits == 0 && s.Step == 0 && s.Curve == nil && e.Count() > 0 && e.Clock >= 0 && (e.Velocity || !e.ByTime) && (e.ByTime || e.Clock == 0))
+	}
+	if c := s.Curve; c != nil {
+		sound("curve", len(c.Output) >= 2 && len(c.Output) == len(c.Electric))
+		for i := 1; i < len(c.Output); i++ {
+			slope := (c.Electric[i] - c.Electric[i-1]) / (c.Output[i] - c.Output[i-1])
+			sound("curve", c.Output[i] > c.Output[i-1] && slope != 0 && !math.IsInf(slope, 0) && (slope > 0) == (c.Electric[1] > c.Electric[0]))
+		}
+	}
+	if f := l.Friction; f != nil {
+		through := l.Plant
+		if f.Through != nil {
+			through = *f.Through
+		}
+		lead, _ := leading(through.Ratio).Float64()
+		sound("friction", f.Coulomb >= 0 && f.Static >= f.Coulomb && f.Viscous >= 0 && f.Static+f.Viscous > 0 && lead >= 0 &&
+			(through.RelativeDegree() == 1) == f.Velocity && l.Plant.RelativeDegree() >= through.RelativeDegree())
+	}
+	sound("backlash", l.Backlash == nil || l.Backlash.Gap > 0)
+	sound("anti-windup", w.Kind == "none" || a.Limits != nil)
+	sound("clamp", (w.Kind == "clamp") == (w.Clamp[0] < w.Clamp[1]))
+	for _, c := range []Chance{tm.Missed, tm.Stale} {
+		sound("chance", c.Probability >= 0 && c.Probability < 1 && (c.Every == 0 || c.Every >= 2 && c.Probability == 0))
+	}
+	if m := tm.Measured; m != nil {
+		sound("measured", tm.Jitter.Sign() == 0 && len(m.Interval) > 0 && (m.Delay == nil || len(m.Delay) == len(m.Interval)))
+	}
+	for _, d := range l.Disturbances {
+		sound("disturbance", (d.Frequency != nil) == (d.Kind == "sine") && (d.Time != nil) == (d.Kind == "step") && (len(d.Times) > 1) == (d.Kind == "file") &&
+			(d.Kind != "noise" || d.Size > 0) && (d.Kind != "step" || d.Size != 0))
+	}
 }

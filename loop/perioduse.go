@@ -12,7 +12,7 @@ func (r *reader) checkPeriodUsed(l *Loop, top *section) {
 		return
 	}
 	c := top.values["controller"]
-	if r.periodic || l.periodic {
+	if r.periodic {
 		r.report(c.find("pid").find("stored").at, "stored: with_period and period_used: measured contradict each other: numbers with the nominal period in them are not computed with the measured one",
 			"stored: plain, or period_used: nominal")
 	}

@@ -171,15 +171,29 @@ func TestQuantities(t *testing.T) {
 	})
 }
 
+// oneOff are good files for TestOneCharacterOff.
+var oneOff = []string{
+	"loop: t\nsymbols: {J: {value: 0.018, spread: 20 %}}\nplant: {model: 1/(J*s^2 + s), dead_time: 1 ms}\n" +
+		"controller:\n  pid: {form: standard, K: 2, Ti: 1 s, Td: 3 ms, filter_ratio: 9, map: {i: forward, d: tustin}}\n" +
+		"timing: {rate: 1 kHz, compute: 3 us, update: {after: 9 us}}\ninputs: [ramp: 2]\nrequirements: [ramp_error <= 0.3]\n",
+	"loop: t\noutput: rad\nplant:\n  model: 1/(s^2 + s)\n  friction: {coulomb: 0.1, static: 0.2, viscous: 1, motion: position, through: 1/s^2}\n  backlash: {gap: 1, at: output}\n" +
+		"sensor: {noise: 0.1, offset: 1, encoder: {counts_per_turn: 64, measures: position, turn: 2*pi}}\n" +
+		"controller: {model: 2/s, map: tustin, anti_windup: {clamp: [-1, 1]}}\nactuator: {limits: [-2, 2], step: 0.1, deadband: 0.3}\n" +
+		"timing: {rate: 1 kHz, latency: 3 us, update_jitter: 5 us, missed: 1 %, stale: {every: 9}, measured: ticks.csv, period_used: measured}\n" +
+		"disturbances:\n  - load_step: {at: sensor, size: 1, time: 3 s}\n  - noise: {rms: 1, band: 3 Hz}\n  - file: {name: x, file: d.csv}\n",
+	"loop: t\nplant: {model: 1/(s + 1)}\nsensor: {curve: [[0, 3.1], [25, 2.4], [60, 1.2]], step: 0.1}\ncontroller: {model: 2}\ntiming: {rate: 1 kHz, measured: both.csv}\n",
+}
+
 // A character deleted, doubled or changed anywhere in a good file gives a loop or plain
 // problems with places in the file.
 func TestOneCharacterOff(t *testing.T) {
-	good := "loop: t\nsymbols: {J: {value: 0.018, spread: 20 %}}\nplant: {model: 1/(J*s^2 + s), dead_time: 1 ms}\n" +
-		"controller:\n  pid: {form: standard, K: 2, Ti: 1 s, Td: 3 ms, filter_ratio: 9, map: {i: forward, d: tustin}}\n" +
-		"timing: {rate: 1 kHz, compute: 3 us, update: {after: 9 us}}\ninputs: [ramp: 2]\nrequirements: [ramp_error <= 0.3]\n"
-	mustParse(t, good)
+	for _, good := range oneOff {
+		if l, problems := Parse("t.yaml", []byte(good), openSide); l == nil {
+			t.Fatal(problems)
+		}
+	}
 	rapid.Check(t, func(t *rapid.T) {
-		r := []rune(good)
+		r := []rune(rapid.SampledFrom(oneOff).Draw(t, "file"))
 		i := rapid.IntRange(0, len(r)-1).Draw(t, "place")
 		c := rapid.SampledFrom([]rune("\x00\t\n #:-[]{}\"'&*!|>%@,.0sz()^eJ列\u0301")).Draw(t, "character")
 		switch rapid.IntRange(0, 2).Draw(t, "change") {
@@ -190,12 +204,12 @@ func TestOneCharacterOff(t *testing.T) {
 		default:
 			r[i] = c
 		}
-		l, problems := Parse("t.yaml", []byte(string(r)), nil)
+		l, problems := Parse("t.yaml", []byte(string(r)), openSide)
 		if (l == nil) != (len(problems) > 0) {
 			t.Fatalf("loop %v with %d problems", l != nil, len(problems))
 		}
 		for _, p := range problems {
-			if p.Message == "" || p.Line > strings.Count(string(r), "\n")+1 {
+			if p.Message == "" || p.File == "t.yaml" && p.Line > strings.Count(string(r), "\n")+1 {
 				t.Fatalf("%+v", p)
 			}
 		}

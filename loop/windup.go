@@ -37,7 +37,7 @@ func (r *reader) antiWindup(l *Loop, n *node) {
 				*w = AntiWindup{Kind: "tracking", TrackingTime: t}
 			}
 		default:
-			s.missing("anti_windup is an empty mapping", forms, "clamp", "tracking_time")
+			s.missing("anti_windup has neither clamp nor tracking_time", forms, "clamp", "tracking_time")
 		}
 	default:
 		r.report(n.at, fmt.Sprintf("anti_windup is %s here", n.kind), forms)
