@@ -121,6 +121,10 @@ func (r *reader) fileInput(in *Input, n *node) bool {
 		return false
 	}
 	in.File = name
+	if t := r.table(name); t != nil {
+		in.Times, in.Values = t.Times, t.Values
+		return true
+	}
 	if r.open == nil || name == "" || strings.ContainsRune(name, 0) {
 		r.report(n.at, "input files cannot be opened here", "")
 		return false
