@@ -73,12 +73,12 @@ func printSpreadRequirements(t *table, r *study.Spread) {
 			t.line("%s%s", padRight("  "+cut(q.Requirement, nameCells-4), nameCells), padLeft("not judged", 12))
 			continue
 		}
-		asWritten := brief4(q.Nominal)
+		asWritten, unit := brief4(q.Nominal), q.Unit
 		if q.Name == "stable" {
-			asWritten = yesNo(q.Nominal.OK && q.Nominal.Value > 0)
+			asWritten, unit = yesNo(q.Nominal.OK && q.Nominal.Value > 0), ""
 		}
 		t.line("%s%s%s%s%s %s", padRight("  "+cut(q.Requirement, nameCells-4), nameCells), padLeft(asWritten, 12), padLeft(percentText(q.Percent), 9),
-			padLeft(worstFigure(q, q.Worst), 12), padLeft(worstFigure(q, q.Corner), 13), q.Unit)
+			padLeft(worstFigure(q, q.Worst), 12), padLeft(worstFigure(q, q.Corner), 13), unit)
 	}
 	y := r.Yield
 	t.line("%s%s%s", padRight("  all together", nameCells), padLeft("", 12), padLeft(percentText(y.Percent), 9))
