@@ -258,7 +258,7 @@ func TestSpreadRefuses(t *testing.T) {
 // A loop that is unstable as written, a requirement that no analysis judges, and one without a figure.
 func TestSpreadOddRequirements(t *testing.T) {
 	l := integratorLoop(t, "90 %", "0.3 s", "phase_margin >= 45 deg")
-	r := spreadOf(t, l, SpreadOptions{Trials: 100, Seed: 1})
+	r, text := lines(t, l, SpreadOptions{Trials: 100, Seed: 1})
 	if r.Warnings[0].Code != "nominal_unstable" || r.Yield.Stable == 0 || metricNamed(t, r, "phase_margin").Sensitivities[0].PerPercent.OK {
 		t.Errorf("%+v", r)
 	}
@@ -268,7 +268,17 @@ func TestSpreadOddRequirements(t *testing.T) {
 	if !(r.Requirements[0].Worst.Value.Value < 0) {
 		t.Errorf("the worst of stable does not grow: %+v", r.Requirements[0].Worst)
 	}
-	m := metricNamed(t, r, "phase_margin")
+	// The worst grows fastest: of z = 1 − kT that with the largest k.
+	most := 0.0
+	for _, row := range rowsOf(t, text) {
+		most = math.Max(most, row.Symbols["k"])
+	}
+	for _, q := range r.Requirements {
+		if q.Worst.Symbols[0].Value != most {
+			t.Errorf("%s: the worst is %+v, the largest k %g", q.Requirement, q.Worst, most)
+		}
+	}
+	m := metricNamed(t, r, "velocity_constant") // an unstable loop has one, but no error that follows from it
 	if m.Without != r.Yield.Unstable || m.Count+m.Infinite+m.Without != 100 {
 		t.Errorf("%+v", m)
 	}
@@ -276,5 +286,33 @@ func TestSpreadOddRequirements(t *testing.T) {
 	r = spreadOf(t, l, SpreadOptions{Trials: 10, Seed: 1, Required: Fig(0)})
 	if q := r.Requirements[len(r.Requirements)-1]; q.Judged || r.Yield.Met != 10 || *r.Yield.Reached || r.Warnings[0].Code != "requirement_not_judged" {
 		t.Errorf("%+v %+v", r.Requirements, r.Yield)
+	}
+}
+
+// The sentence names the yield, what fails most or comes nearest to it, what drives it, and the worst cases.
+func TestSpreadVerdict(t *testing.T) {
+	for _, c := range []struct {
+		name, text string
+		o          SpreadOptions
+		want       []string
+	}{
+		{"some fail", wide, SpreadOptions{Trials: 200, Seed: 5, Required: Fig(99)}, []string{"does not reach the 99 % asked for", `"ramp_error <= 0.08" fails most, in `, " b drives it", "The worst trial, number ", "the worst corner (J low, b high, w high, Kt low) has "}},
+		{"all meet", fmt.Sprintf(integrator, "10 %", "0.1 s", "velocity_constant >= 1, phase_margin >= 50 deg"), SpreadOptions{Trials: 50, Seed: 1, Required: Fig(90)},
+			[]string{"50 of 50 trials (100 %) meet all requirements", "between 92.87 and 100 %", "reaches the 90 % asked for", `"phase_margin >= 50 deg" comes nearest to failing. k drives it: 1 % more of it changes the figure by -0.3308 deg`, "the worst corner (k high) has 56.63 deg"}},
+		{"no requirements", fmt.Sprintf(integrator, "10 %", "0.1 s", ""), SpreadOptions{Trials: 50, Seed: 1}, []string{"(100 %) are stable", "k drives the modulus margin", "the worst corner (k high) has 0.45"}},
+		{"some unstable", fmt.Sprintf(integrator, "90 %", "0.12 s", "velocity_constant >= 1"), SpreadOptions{Trials: 50, Seed: 1}, []string{`"stable" fails most, in `, "k drives the modulus margin", "is unstable; the worst corner (k high) is unstable"}},
+		{"corners", wide, SpreadOptions{Draw: DrawCorners}, []string{"of 16 corners (", ". \"ramp_error <= 0.08\" fails most", "The worst corner (J low"}},
+	} {
+		got := spreadOf(t, parsed(t, c.text), c.o).Verdict
+		for _, w := range c.want {
+			if !strings.Contains(got, w) {
+				t.Errorf("%s: %s\nwant %q", c.name, got, w)
+			}
+		}
+	}
+	for p, want := range map[float64]string{100: "100", 99.95: "99.95", 99.999: "99.999", 87.126: "87.13", 0: "0", 99.99999: "99.99999"} {
+		if got := share(p); got != want {
+			t.Errorf("%g is written %s, want %s", p, got, want)
+		}
 	}
 }

@@ -105,6 +105,10 @@ func spreadParts(c *cli.Context) (parts []study.PartFile, file string, err error
 
 // looksLikePart tells a file of JSON lines from a loop file: by its name, or because it begins with {" as no loop file in block style does.
 func looksLikePart(name string) (bool, error) {
+	info, err := os.Stat(name)
+	if err == nil && !info.Mode().IsRegular() {
+		return false, errors.New("not a regular file; parts are read more than once")
+	}
 	f, err := os.Open(name)
 	if err != nil {
 		var p *os.PathError

@@ -149,7 +149,10 @@ func symbolsText(w *study.WorstCase) string {
 	return strings.Join(parts, ", ")
 }
 
-const metricCells = 22 // name of a metric
+const (
+	metricCells = 22 // name of a metric
+	sensCells   = 20 // the same beside its symbols
+)
 
 // printSpreadMetrics prints the distribution of each figure that changes, and the others in a line.
 func printSpreadMetrics(t *table, r *study.Spread) {
@@ -194,7 +197,7 @@ func printSensitivities(t *table, r *study.Spread) {
 		names = []string{"phase_margin", "gain_margin", "modulus_margin"}
 	}
 	t.line("")
-	t.line("%s%s%s%s%s", padRight("Sensitivities", metricCells), padRight("symbol", 14), padLeft("with 1 % more", 14), padLeft("over the spread", 17), padLeft("rank corr.", 11))
+	t.line("%s%s%s%s%s", padRight("Sensitivities", sensCells), padRight("symbol", 11), padLeft("with 1 % more", 14), padLeft("over spread", 14), padLeft("rank corr.", 12))
 	for _, m := range r.Metrics {
 		if !slices.Contains(names, m.Name) {
 			continue
@@ -204,12 +207,12 @@ func printSensitivities(t *table, r *study.Spread) {
 			if s.OverSpread.Value == 0 && !s.Rank.OK {
 				continue
 			}
-			t.line("%s%s%s%s%s  %s", padRight("  "+cut(name, metricCells-3), metricCells), padRight(cut(s.Symbol, 13), 14), padLeft(signed(s.PerPercent), 14),
-				padLeft("±"+brief4(absolute(s.OverSpread)), 17), padLeft(rankText(s.Rank), 11), cut(m.Unit, 5))
+			t.line("%s%s%s%s%s  %s", padRight("  "+cut(name, sensCells-3), sensCells), padRight(cut(s.Symbol, 10), 11), padLeft(signed(s.PerPercent), 14),
+				padLeft("±"+brief4(absolute(s.OverSpread)), 14), padLeft(rankText(s.Rank), 12), cut(m.Unit, 5))
 			name = ""
 		}
 		if name != "" {
-			t.line("%s%s", padRight("  "+cut(name, metricCells-3), metricCells), "no symbol changes it")
+			t.line("%s%s", padRight("  "+cut(name, sensCells-3), sensCells), "no symbol changes it")
 		}
 	}
 }
