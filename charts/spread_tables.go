@@ -38,6 +38,9 @@ func (t spreadTables) facts() []fact {
 	seed := strconv.FormatUint(r.Seed, 10)
 	add("Seed", "", figure{Path: "seed", Value: seed, Text: seed})
 	add("Draw", "", word(r.Draw))
+	u := seconds(r.PeriodS)
+	add("Tick", u.name, showFloat("period_s", r.PeriodS, u))
+	add("Controller map", "", word(r.Map))
 	return out
 }
 

@@ -19,7 +19,7 @@ func (j *spreadJob) result() (*Spread, error) {
 		return nil, err
 	}
 	r := &Spread{
-		Schema: "steadytick/spread/1", Loop: j.l.Name, Draw: j.o.Draw, Trials: j.trials, Seed: j.o.Seed, Simulated: j.want.any(),
+		Schema: "steadytick/spread/1", Loop: j.l.Name, PeriodS: seconds(j.l.Timing.Period), Map: mapName(j.l), Draw: j.o.Draw, Trials: j.trials, Seed: j.o.Seed, Simulated: j.want.any(),
 		CornersNote: j.cornersNote(), Failures: append([]SpreadFailure{}, j.tally.failures...), StepPercent: 100 * sensitivityStep,
 		Warnings: []Warning{}, Units: Units{j.l.Output, j.l.Effort}, LoopFile: string(j.l.Source), File: j.l.File, Version: j.o.Version,
 	}

@@ -9,6 +9,9 @@ type Spread struct {
 	Loop    string `json:"loop"`
 	Verdict string `json:"verdict"` // the yield, what fails most, which symbol drives it
 
+	PeriodS float64 `json:"period_s"`
+	Map     string  `json:"map"` // of the controller, as the file or --map has it
+
 	Draw      string         `json:"draw"`   // uniform, normal or corners
 	Trials    int64          `json:"trials"` // how many were run
 	Seed      uint64         `json:"seed"`   // of the draws; corners need none

@@ -14,7 +14,8 @@ import (
 func printSpread(w io.Writer, r *study.Spread) error {
 	t := &table{w: w}
 	t.line("%s", r.Loop)
-	t.line("  %s", drawText(r))
+	t.wrapped("  ", fmt.Sprintf("a tick of %s, map %s", seconds(r.PeriodS), r.Map))
+	t.wrapped("  ", drawText(r))
 	t.line("")
 	t.wrapped("", r.Verdict)
 	printSpreadSymbols(t, r)
@@ -117,11 +118,15 @@ func percentText(p float64) string {
 
 // printWorstCases prints the symbols of the worst trial and the worst corner of each requirement.
 func printWorstCases(t *table, r *study.Spread) {
-	t.line("")
-	t.line("Worst cases")
+	title := "Worst cases"
 	for _, q := range r.Requirements {
-		if !q.Judged || q.Name == "stable" && len(r.Requirements) > 1 && r.Yield.Unstable == 0 {
+		if !q.Judged || q.Name == "stable" && r.Yield.Unstable == 0 || unchanged(r, q) {
 			continue
+		}
+		if title != "" {
+			t.line("")
+			t.line("%s", title)
+			title = ""
 		}
 		t.line("  %s", q.Requirement)
 		if w := q.Worst; w != nil && r.Draw != study.DrawCorners {
@@ -131,6 +136,17 @@ func printWorstCases(t *table, r *study.Spread) {
 			t.wrapped("    ", fmt.Sprintf("corner %d: %s, %s", w.Trial, withUnit(worstFigure(q, w), q, w), w.Levels))
 		}
 	}
+}
+
+// unchanged tells whether the figure of a requirement is the same in every trial and every corner, so that none is the worst.
+func unchanged(r *study.Spread, q study.SpreadRequirement) bool {
+	for _, m := range r.Metrics {
+		if m.Name != q.Name || m.Lowest == nil || m.Lowest.Value != m.Top.Value || m.Without > 0 {
+			continue
+		}
+		return m.LowCor == nil || m.LowCor.Value == m.Lowest.Value && m.TopCor.Value == m.Lowest.Value
+	}
+	return false
 }
 
 func withUnit(text string, q study.SpreadRequirement, w *study.WorstCase) string {
