@@ -23,6 +23,13 @@ type gridRow struct {
 type gridCell struct {
 	Class string
 	Parts []figure
+	Bar   *signedBar // nil: none
+}
+
+// signedBar is a bar to the right of the middle, or to the left of it.
+type signedBar struct {
+	Share float64 // of half the cell, 0 to 1
+	Minus bool
 }
 
 // heads makes column heads; one that begins with # stands over numbers.

@@ -391,6 +391,8 @@ map of the controller (not of prefilter and feedforward), with every check again
 frequency of the file counts only under a map that asks for it. A model in z takes no other
 rate. Numbers stored with_period stay as stored, so that Ki and Kd change. Tick times of a measured file
 stay as measured and must still be 0.01 to 100 ticks long.
+WithSymbols gives it with other values of symbols; those computed from them follow, unless they are given a value
+themselves. DrawSymbols computes such values in the order of the file.
 
 Loops made from each other share their numbers: nobody changes a number or a slice of a Loop.
 */

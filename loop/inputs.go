@@ -110,6 +110,12 @@ func moveTime(m *Move) float64 {
 
 // fileInput reads a CSV file with the header t_s,r and rising times.
 func (r *reader) fileInput(in *Input, n *node) bool {
+	if n != nil && n.kind == textNode {
+		if t := r.table(n.text); t != nil {
+			in.File, in.Times, in.Values = n.text, t.Times, t.Values
+			return true
+		}
+	}
 	name, src, ok := r.openCSV(n, "t_s,r")
 	in.File = name
 	if !ok {

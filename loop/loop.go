@@ -33,7 +33,8 @@ type Loop struct {
 	open     func(path string) ([]byte, error) // as given to Parse, for WithRate and WithMap
 	options  Options
 	prewarp  prewarp
-	periodic bool // more than Timing.Period depends on the period
+	periodic bool  // more than Timing.Period depends on the period
+	tree     *node // of the file, for WithSymbols; nobody changes it
 }
 
 // Symbol is a named number of the symbols section.

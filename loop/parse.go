@@ -17,6 +17,8 @@ type Options struct {
 	// Map replaces the maps of the controller's model or pid: a method, or "prewarped
 	// at 40 Hz"; "" keeps them. Prefilter and feedforward keep their own.
 	Map string
+	// Symbols replaces the values of symbols by name; nil keeps them. Symbols computed from them follow.
+	Symbols map[string]*big.Rat
 }
 
 // maxSymbols bounds the symbols section.
@@ -92,7 +94,7 @@ func ParseWith(file string, src []byte, open func(path string) ([]byte, error), 
 	if len(r.problems) > 0 {
 		return nil, r.problems.sorted(file)
 	}
-	l.File, l.Source, l.open, l.options, l.periodic = file, append([]byte(nil), src...), open, o, r.periodic
+	l.File, l.Source, l.open, l.options, l.periodic, l.tree = file, append([]byte(nil), src...), open, o, r.periodic, root
 	return l, nil
 }
 
@@ -134,6 +136,7 @@ func (r *reader) loop(root *node) *Loop {
 
 // readSymbols reads the symbols in order: an expression may use the earlier ones.
 func (r *reader) readSymbols(l *Loop, n *node) {
+	defer r.checkGiven(l)
 	if n == nil {
 		return
 	}
@@ -178,6 +181,9 @@ func (r *reader) symbol(l *Loop, e entry) {
 		out.Value = big.NewRat(1, 1) // reported; later expressions that use it are still read
 	}
 	if good {
+		if ok {
+			out.Value = r.taken(e, out)
+		}
 		r.symbols[e.key] = out.Value
 		r.known = append(r.known, e.key)
 		l.Symbols = append(l.Symbols, out)

@@ -17,6 +17,9 @@ type reader struct {
 		line []rune
 	}
 	options Options
+	draw    func(Symbol) *big.Rat // see DrawSymbols, nil: none
+	source  func() []string       // gives lines when they are needed, nil: they are there
+	tables  []Input               // of the loop that the tree was read for
 	open    func(path string) ([]byte, error)
 	evaluator
 	own        []string // the unit names of output and effort
@@ -28,7 +31,15 @@ type reader struct {
 	period     *big.Rat // seconds in force: the option's or the file's, nil when wrong
 }
 
+// fetch gets the lines when they are needed first.
+func (r *reader) fetch() {
+	if r.source != nil {
+		r.lines, r.source = r.source(), nil
+	}
+}
+
 func (r *reader) line(n int) string {
+	r.fetch()
 	if n < 1 || n > len(r.lines) {
 		return ""
 	}
@@ -40,6 +51,7 @@ func (r *reader) clamp(p place) place {
 	if p.line < 1 {
 		return place{}
 	}
+	r.fetch()
 	p.line = min(p.line, max(1, len(r.lines)))
 	p.column = min(max(p.column, 1), len(r.runes(p.line))+1)
 	return p

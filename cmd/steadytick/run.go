@@ -37,7 +37,7 @@ func run(ctx context.Context, stdout, stderr io.Writer, args []string) error {
 		DisableSliceFlagSeparator: true,
 		HideHelpCommand:           true,
 		Suggest:                   true,
-		Commands:                  []*cli.Command{compareCommand(), gateCommand(), rateCommand(), newCommand()},
+		Commands:                  []*cli.Command{compareCommand(), gateCommand(), rateCommand(), spreadCommand(), newCommand()},
 		OnUsageError:              usageError,
 		CommandNotFound:           nil,
 		Action: func(c *cli.Context) error {
