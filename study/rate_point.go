@@ -34,6 +34,7 @@ func newSweeper(l *loop.Loop, cont *analyzed) (*sweeper, error) {
 type ratePoint struct {
 	hz     float64
 	period *big.Rat
+	words  bool   // effort_noise and stuck_error are wanted, whether a requirement names them or not
 	why    string // why it cannot run, "" where it does
 	loop   *loop.Loop
 	right  complex128 // the rightmost equivalent pole
@@ -111,7 +112,7 @@ func (p *ratePoint) analyse(shared *heldAt, between bool) error {
 	p.c = &Compare{PeriodS: T, Units: Units{p.loop.Output, p.loop.Effort}}
 	p.c.Sampled = a.figures(p.loop, between)
 	p.c.Sampled.GainCrossings, p.c.Sampled.PhaseCrossings = nil, nil
-	if requiresWords(p.loop) {
+	if p.words || requiresWords(p.loop) {
 		return p.c.Sampled.addWords(context.Background(), p.loop, a) // a solution, not a run: nothing to interrupt
 	}
 	return nil

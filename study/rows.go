@@ -45,7 +45,7 @@ func ComparisonRows(c *Compare) []ComparisonRow {
 		name := string(rune('0' + k))
 		rows = append(rows, fig("loop_series."+name, "loop series c"+name, u, func(c *Column) Figure { return c.LoopSeries[k] }))
 	}
-	return append(rows,
+	rows = append(rows,
 		fig("phase_margin_deg", "phase margin", "deg", func(c *Column) Figure { return c.PhaseMarginDeg }),
 		fig("gain_margin_db", "gain margin (up)", "dB", func(c *Column) Figure { return c.GainMarginDB }),
 		fig("gain_reduction_db", "gain reduction (down)", "dB", func(c *Column) Figure { return c.GainReductionDB }),
@@ -59,6 +59,8 @@ func ComparisonRows(c *Compare) []ComparisonRow {
 		step("settling_time_s", "settling time", "s", func(t *Transient) Figure { return t.SettlingTimeS }),
 		step("peak_time_s", "peak time", "s", func(t *Transient) Figure { return t.PeakTimeS }),
 		step("peak_effort", "peak effort", c.Units.Effort, func(t *Transient) Figure { return t.PeakEffort }),
+	)
+	for _, r := range []ComparisonRow{
 		step("recovery_time_s", "recovery after the limit", "s", func(t *Transient) Figure { return t.RecoveryTimeS }),
 		built(fig("effort_noise", "effort noise, rms", c.Units.Effort, func(c *Column) Figure { return c.EffortNoise }),
 			func(b *AsBuilt) Figure { return b.Effort }),
@@ -66,7 +68,22 @@ func ComparisonRows(c *Compare) []ComparisonRow {
 			func(b *AsBuilt) Figure { return b.Output }),
 		built(fig("stuck_error", "stuck error at most", c.Units.Output, func(c *Column) Figure { return c.StuckError }),
 			func(b *AsBuilt) Figure { return b.rest(func(r *Rest) Figure { return r.StuckError }) }),
-	)
+	} {
+		if r.says(c) { // most files have none of these
+			rows = append(rows, r)
+		}
+	}
+	return rows
+}
+
+// says tells whether some column has the figure.
+func (r ComparisonRow) says(c *Compare) bool {
+	for _, col := range []*Column{c.Continuous, c.Sampled} {
+		if col != nil && r.Figure(col).OK {
+			return true
+		}
+	}
+	return c.AsBuilt != nil && r.Built(c.AsBuilt).OK
 }
 
 // SteadyRow is one line of the steady-error table for one input.

@@ -144,6 +144,8 @@ func spreadMetrics(l *loop.Loop, simulate bool, list []*constraint) []string {
 			continue
 		case needsOf(m.Name).any() && !simulate:
 			continue
+		case !declares(l, m.Name):
+			continue
 		}
 		out = append(out, m.Name)
 	}

@@ -4,6 +4,7 @@ import (
 	"errors"
 	"math"
 	"math/big"
+	"slices"
 
 	"steadytick/loop"
 )
@@ -53,7 +54,7 @@ func (j *spreadJob) point(l *loop.Loop) (*ratePoint, error) {
 		return nil, err
 	}
 	hz, _ := new(big.Rat).Inv(l.Timing.Period).Float64()
-	p := &ratePoint{hz: hz, period: l.Timing.Period, loop: l}
+	p := &ratePoint{hz: hz, period: l.Timing.Period, loop: l, words: slices.Contains(j.metrics, "effort_noise") || slices.Contains(j.metrics, "stuck_error")}
 	if err := p.analyse(held, j.between); err != nil {
 		return nil, err
 	}

@@ -157,3 +157,18 @@ func requiresWords(l *loop.Loop) bool {
 	}
 	return false
 }
+
+// declares tells whether the file says what a metric of the hardware comes from; a limit cycle is searched for by compare alone.
+func declares(l *loop.Loop, metric string) bool {
+	switch metric {
+	case "effort_noise":
+		return noisy(l)
+	case "stuck_error":
+		return quantizes(l) || l.Sensor.Offset != 0 || l.Sensor.Curve != nil
+	case "limit_cycle":
+		return false
+	case "recovery_time":
+		return l.Actuator.Limits != nil
+	}
+	return true
+}
