@@ -87,6 +87,7 @@ modules:
 reference:
 	$(PYTHON) testdata/reference/generate.py --check
 	$(PYTHON) testdata/reference/antiwindup.py --check
+	$(PYTHON) testdata/reference/friction.py --check
 
 clean:
 	rm -rf bin report.html charts/runtime/node_modules $(RUNTIME)
