@@ -88,6 +88,7 @@ reference:
 	$(PYTHON) testdata/reference/generate.py --check
 	$(PYTHON) testdata/reference/antiwindup.py --check
 	$(PYTHON) testdata/reference/friction.py --check
+	$(PYTHON) testdata/reference/quantized.py --check
 	$(PYTHON) testdata/reference/backlash.py --check
 
 clean:
