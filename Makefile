@@ -86,6 +86,10 @@ modules:
 # The reference figures: known values, and a sample derived afresh.
 reference:
 	$(PYTHON) testdata/reference/generate.py --check
+	$(PYTHON) testdata/reference/antiwindup.py --check
+	$(PYTHON) testdata/reference/friction.py --check
+	$(PYTHON) testdata/reference/quantized.py --check
+	$(PYTHON) testdata/reference/backlash.py --check
 
 clean:
 	rm -rf bin report.html charts/runtime/node_modules $(RUNTIME)
