@@ -109,6 +109,8 @@ func newSpreadJob(ctx context.Context, l *loop.Loop, o SpreadOptions) (*spreadJo
 			ErrTooManyCorners, len(j.symbols), mostCornerSymbols)
 	case o.Draw == DrawCorners:
 		j.trials = 1 << len(j.symbols)
+	case o.Draw != DrawUniform && o.Draw != DrawNormal:
+		return nil, fmt.Errorf("%q is no way to draw; the choices are %s, %s and %s", o.Draw, DrawUniform, DrawNormal, DrawCorners)
 	}
 	if j.trials == 0 {
 		j.trials = DefaultTrials

@@ -28,10 +28,6 @@ func (j *spreadJob) result() (*Spread, error) {
 	}
 	t := j.tally
 	r.Yield = SpreadYield{j.counted(t.met, t.count, j.o.Draw != DrawCorners), t.stable, t.unstable, t.failed}
-	if j.o.Required.OK {
-		reached := r.Yield.Percent >= j.o.Required.Value && len(j.refused) == 0
-		r.Yield.Required, r.Yield.Reached = j.o.Required, &reached
-	}
 	if corners != nil {
 		r.Corners = &SpreadCorners{j.counted(corners.met, corners.count, false), corners.stable, corners.unstable, corners.failed}
 	}
@@ -39,7 +35,13 @@ func (j *spreadJob) result() (*Spread, error) {
 		r.Metrics = append(r.Metrics, j.metricResult(i, corners, sens))
 	}
 	j.requirementResults(r, corners)
-	j.warnings(r)
+	if j.o.Required.OK {
+		reached := r.Yield.Percent >= j.o.Required.Value && len(leftOut(r)) == 0
+		r.Yield.Required, r.Yield.Reached = j.o.Required, &reached
+	}
+	if err := j.warnings(r); err != nil {
+		return nil, err
+	}
 	binding := j.binding(r)
 	r.Verdict = spreadVerdict(r, binding)
 	if j.o.Curves {
@@ -130,8 +132,19 @@ func (j *spreadJob) worstOf(c *constraint, q *judgedTally, corner bool) *WorstCa
 	return j.seen(q.worst, value, corner)
 }
 
-// warnings tells what puts the result in doubt.
-func (j *spreadJob) warnings(r *Spread) {
+// leftOut names the requirements that no trial can be held to; what cannot be judged is no pass.
+func leftOut(r *Spread) []string {
+	var out []string
+	for _, q := range r.Requirements {
+		if !q.Judged {
+			out = append(out, q.Requirement)
+		}
+	}
+	return out
+}
+
+// warnings tells what puts the result in doubt, and what a comparison of the loop as written warns of.
+func (j *spreadJob) warnings(r *Spread) error {
 	warn := func(code, format string, args ...any) {
 		r.Warnings = append(r.Warnings, Warning{code, fmt.Sprintf(format, args...)})
 	}
@@ -155,4 +168,14 @@ func (j *spreadJob) warnings(r *Spread) {
 	if c := r.Corners; c != nil && j.o.Draw != DrawCorners && r.Yield.Met == r.Yield.Of && c.Met < c.Of {
 		warn("corners_fail", "every trial meets all requirements, but %d of the %d corners do not: the trials came nowhere near them", c.Of-c.Met, c.Of)
 	}
+	c, err := RunCompare(j.ctx, j.l, Options{})
+	if err != nil {
+		return err
+	}
+	for _, w := range c.Warnings {
+		if w.Code != "no_continuous_column" && w.Code != "requirement_not_judged" {
+			warn(w.Code, "as written: %s", w.Text)
+		}
+	}
+	return nil
 }

@@ -96,14 +96,20 @@ func loopHash(l *loop.Loop, flags ...string) string {
 	for _, f := range flags {
 		write([]byte(f))
 	}
-	for _, in := range l.Inputs {
-		for _, list := range [][]float64{in.Times, in.Values} {
+	rows := func(lists ...[]float64) {
+		for _, list := range lists {
 			b := make([]byte, 0, 8*len(list))
 			for _, v := range list {
 				b = binary.LittleEndian.AppendUint64(b, math.Float64bits(v))
 			}
 			write(b)
 		}
+	}
+	for _, in := range l.Inputs {
+		rows(in.Times, in.Values)
+	}
+	for _, d := range l.Disturbances {
+		rows(d.Times, d.Values)
 	}
 	return hex.EncodeToString(h.Sum(nil))
 }

@@ -145,17 +145,6 @@ type SpreadMetric struct {
 	Sensitivities []Sensitivity `json:"sensitivities"` // a symbol each, in the order of the file
 }
 
-// worst is the trial and the corner on the bad side, nil where neither side is.
-func (m *SpreadMetric) worst() (trial, corner *WorstCase) {
-	switch m.Worse {
-	case WorseUp:
-		return m.Top, m.TopCor
-	case WorseDown:
-		return m.Lowest, m.LowCor
-	}
-	return nil, nil
-}
-
 // SpreadQuantiles are in the unit of the metric.
 type SpreadQuantiles struct {
 	P1  Figure `json:"p1"`

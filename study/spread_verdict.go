@@ -91,9 +91,7 @@ func spreadVerdict(r *Spread, b bound) string {
 		text += fmt.Sprintf("; the yield lies between %s and %s %% with 95 %% confidence", share(y.Interval[0].Value), share(y.Interval[1].Value))
 	}
 	text += "."
-	if y.Reached != nil {
-		text += map[bool]string{true: " That reaches", false: " That does not reach"}[*y.Reached] + fmt.Sprintf(" the %s %% asked for.", number(y.Required.Value))
-	}
+	text += reachedText(r)
 	q := b.requirement
 	switch missed := y.Of - q.Met; {
 	case missed > 0:
@@ -102,6 +100,22 @@ func spreadVerdict(r *Spread, b bound) string {
 		text += fmt.Sprintf(" %q comes nearest to failing.", q.Requirement)
 	}
 	return text + driverText(r, b) + worstText(r, b)
+}
+
+// reachedText says whether the yield asked for is reached.
+func reachedText(r *Spread) string {
+	y := r.Yield
+	if y.Reached == nil {
+		return ""
+	}
+	asked := fmt.Sprintf(" the %s %% asked for.", number(y.Required.Value))
+	switch list := leftOut(r); {
+	case *y.Reached:
+		return " That reaches" + asked
+	case y.Percent >= y.Required.Value:
+		return fmt.Sprintf(" Whether that reaches the %s %% asked for cannot be told, and does not count as reached: %s is not judged.", number(y.Required.Value), strings.Join(quoted(list), ", "))
+	}
+	return " That does not reach" + asked
 }
 
 // share writes per cent so that 99.98 is not rounded to 100.
