@@ -31,7 +31,7 @@ func ComparisonRows(c *Compare) []ComparisonRow {
 			}
 			return "NO"
 		}},
-		fig("type", "type (integrators in the loop)", "", func(c *Column) Figure { return Fig(float64(c.Type)) }),
+		fig("type", "type (loop integrators)", "", func(c *Column) Figure { return Fig(float64(c.Type)) }),
 		fig("position_constant", "position constant Kp", "", func(c *Column) Figure { return c.PositionConstant }),
 		fig("velocity_constant", "velocity constant Kv", "1/s", func(c *Column) Figure { return c.VelocityConstant }),
 		fig("acceleration_constant", "acceleration constant Ka", "1/s²", func(c *Column) Figure { return c.AccelerationConstant }),
