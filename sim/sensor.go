@@ -4,7 +4,8 @@ import "errors"
 
 // Sensor is the way from an output to the number that the firmware computes with. In this order: disturbances
 // are added; a curve that is not straight is followed; offset and noise are added; the converter
-// quantizes; the firmware's table straightens the curve again. Or an encoder counts. The zero value passes the output on.
+// quantizes; the firmware's table straightens the curve again. Or an encoder counts: then disturbances, offset and noise are
+// added to the position that it counts, or to the velocity that it gives. The zero value passes the output on.
 type Sensor struct {
 	Disturbances []Signal // in output units
 	Random       []Random // in output units, new values at every sample
@@ -85,7 +86,15 @@ func (s *sensorState) measure(x, at, now, period float64, k int64) float64 {
 		extra += s.random[i].next()
 	}
 	if s.encoder != nil {
-		s.last = s.encoder.read(at, now, period) + extra
+		extra += s.Offset
+		if s.Noise > 0 {
+			extra += s.Noise * s.dice.normal(k)
+		}
+		if s.Encoder.Velocity {
+			s.last = s.encoder.read(at, now, period) + extra
+		} else {
+			s.last = s.encoder.read(at+extra, now, period)
+		}
 		return s.last
 	}
 	x += extra
