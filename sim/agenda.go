@@ -16,6 +16,7 @@ type agenda struct {
 	end     dd.Float
 	tick    int64 // the next point at a tick of the first task
 	periods []dd.Float
+	delays  []dd.Float // of the channels
 	clocks  []clock
 	out     instant
 }
@@ -36,6 +37,9 @@ func newAgenda(e *engine) (*agenda, error) {
 		a.periods = append(a.periods, dd.FromRat(t.Period))
 		a.clocks = append(a.clocks, clock{offset: dd.FromRat(orZero(t.Offset)), delay: dd.FromRat(orZero(t.Delay))})
 		t.skip, t.applied = 0, 0
+	}
+	for _, c := range e.cfg.System.channels {
+		a.delays = append(a.delays, dd.FromRat(c.Delay))
 	}
 	for k := range e.layout.held {
 		e.layout.held[k].next = 0
@@ -97,7 +101,7 @@ func (a *agenda) arrival(h *held) (at dd.Float, ok bool) {
 	if k < 0 || k >= int64(len(c.due)) {
 		return dd.Zero, false
 	}
-	return c.due[k].Add(dd.FromRat(a.e.cfg.System.channels[h.channel].Delay)), true
+	return c.due[k].Add(a.delays[h.channel]), true
 }
 
 // update is when the next effort of task i is applied.

@@ -20,6 +20,8 @@ type flow struct {
 	scale []float64
 	norm  float64 // of aug
 	byExp map[int]*advance
+	dx    []float64 // scratch of advanceBy and series: a flow serves one run
+	work  [3][]float64
 }
 
 // advance is one prepared step: x += E·z, z = (x, w).
@@ -184,7 +186,13 @@ func (f *flow) scratch() []float64 { return make([]float64, (f.n+3)/4*4) }
 // 2^k seconds, kept, and the rest, where norm·h <= 1/4, by the series. w is taken along; carry as
 // in apply. Error as for step.
 func (f *flow) advanceBy(z, carry []float64, h float64) error {
-	dx := f.scratch()
+	if f.dx == nil {
+		f.dx = f.scratch()
+		for i := range f.work {
+			f.work[i] = make([]float64, f.n+f.m)
+		}
+	}
+	dx := f.dx
 	w := z[f.n:]
 	for h*f.norm > 0.25 {
 		_, k := math.Frexp(h)
@@ -208,7 +216,8 @@ func (f *flow) advanceBy(z, carry []float64, h float64) error {
 // series adds Σ (M·h)^k/k!·z for norm·h <= 1/4: 14 terms leave 4^-14/14! = 4e-20.
 func (f *flow) series(z, carry []float64, h float64) {
 	N := f.n + f.m
-	v, next, sum := make([]float64, N), make([]float64, N), make([]float64, N)
+	v, next, sum := f.work[0], f.work[1], f.work[2]
+	clear(sum)
 	copy(v, z)
 	for j := f.n; j < N; j++ {
 		v[j] /= f.scale[j-f.n]
