@@ -1,5 +1,6 @@
 // Package sim runs a loop in time: the sampled loop along the time-line of a
-// tick (Run), and the continuous loop as designed beside it (Twin).
+// tick (Run), and the continuous loop as designed beside it (Twin). Noise and Peaks say what noise and bounded
+// disturbances do to the linear sampled loop without a run.
 //
 // The time-line of a tick, for each task on its own period:
 //
@@ -17,6 +18,12 @@
 // exponential in increments x += (Φ−I)·x + Γ·u; dead times and loop delays are queues, so
 // 10 000 ticks of them cost what one costs. Instants are exact rational phases within a
 // common period, so nothing drifts: the time printed is k·T from the integer k.
+//
+// Hardware, where it is declared: a Sensor quantizes, counts, bends and adds noise; ticks come late, are missed or stale; an
+// effort goes through limits, slew, quantizer, dead zone and play; Friction and Play switch the plant between
+// linear laws, each propagated exactly, at instants found by value and slope at the ends of stretches and located to
+// the last digits. Noise is a function of seed, stream and number alone, so that nothing depends on the order in which it is asked for.
+// A run without any of that takes a shorter way with the same operations (runPlain).
 //
 // The twin is the loop as designed, with the same limits and anti-windup. Its closed loop is
 // followed in polynomial pieces by collocation of order 19, which end at every kink of the
