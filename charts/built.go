@@ -157,6 +157,7 @@ func (t tables) built() []builtGroup {
 		rows := []builtItem{kind, size}
 		rows = append(rows, item(path+"tracking_error", "mean tracking error", u.Output, s.TrackingError),
 			item(path+"swing", "rms about it, at the ticks", u.Output, s.Swing),
+			item(path+"ripple", "ripple, peak to peak", u.Output, s.Ripple),
 			item(path+"worst_error", "worst, at and between ticks", u.Output, s.WorstError),
 			item(path+"peak_tracking_error", "peak tracking error", u.Output, s.PeakError),
 			item(path+"rms_tracking_error", "rms tracking error", u.Output, s.RMSError))

@@ -198,7 +198,7 @@ func asBuilt() *study.AsBuilt {
 			Bound: none, StuckError: study.Fig(3.9e-4)}}
 	for _, s := range column(true).Steady {
 		b.Steady = append(b.Steady, study.BuiltSteady{Input: s.Input, Size: s.Size, TrackingError: study.Fig(0.0123), WorstError: study.Fig(0.0456),
-			Swing: study.Fig(7.89e-4), AtLimit: s.Input == "parabola"})
+			Swing: study.Fig(7.89e-4), Ripple: study.Fig(0.0021), AtLimit: s.Input == "parabola"})
 	}
 	b.Steady = append(b.Steady, study.BuiltSteady{Input: "move", PeakError: study.Fig(0.033), RMSError: study.Fig(0.011)})
 	return b

@@ -5,14 +5,14 @@ const maxReads = 64
 
 // marks follows an encoder that times its marks through a run.
 type marks struct {
-	encoder    *encoderState
-	probe      *probe // the position
-	z          []float64
-	at         []float64 // a state within the stretch
-	carry      []float64
-	slope      []float64
-	flow       *flow // that the slope belongs to
-	p0, d0, p1 float64
+	encoder *encoderState
+	probe   *probe // the position
+	z       []float64
+	at      []float64 // a state within the stretch
+	carry   []float64
+	slope   []float64
+	flow    *flow // that the slope belongs to
+	p0, d0  float64
 }
 
 // timeMarks finds the encoders that need the instants of their marks.

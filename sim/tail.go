@@ -8,6 +8,7 @@ type Tail struct {
 	Ticks                       int64
 	MeanError, ErrorRMS         float64 // of r − y at the ticks; rms about the mean
 	WorstError                  float64 // largest magnitude of r − y
+	ErrorSpan                   float64 // highest less lowest r − y
 	Swing                       float64 // of y: highest less lowest
 	MeanEffort, EffortRMS       float64 // rms about the mean
 	LowestEffort, HighestEffort float64
@@ -20,6 +21,7 @@ type tail struct {
 	err, effort     moments
 	worst           float64
 	low, high       float64
+	least, most     float64 // of r − y
 	lowest, highest float64
 }
 
@@ -41,12 +43,13 @@ func (m *moments) rms() float64 {
 
 func newTail(from float64) *tail {
 	inf := math.Inf(1)
-	return &tail{from: from * (1 - 1e-12), low: inf, high: -inf, lowest: inf, highest: -inf}
+	return &tail{from: from * (1 - 1e-12), low: inf, high: -inf, least: inf, most: -inf, lowest: inf, highest: -inf}
 }
 
 // look takes a point.
 func (t *tail) look(y, err float64) {
 	t.worst = math.Max(t.worst, math.Abs(err))
+	t.least, t.most = math.Min(t.least, err), math.Max(t.most, err)
 	t.low, t.high = math.Min(t.low, y), math.Max(t.high, y)
 }
 
@@ -63,7 +66,7 @@ func (t *tail) figures() Tail {
 		return Tail{}
 	}
 	return Tail{
-		Ticks: t.n, MeanError: t.err.mean, ErrorRMS: t.err.rms(), WorstError: t.worst, Swing: math.Max(0, t.high-t.low),
+		Ticks: t.n, MeanError: t.err.mean, ErrorRMS: t.err.rms(), WorstError: t.worst, ErrorSpan: math.Max(0, t.most-t.least), Swing: math.Max(0, t.high-t.low),
 		MeanEffort: t.effort.mean, EffortRMS: t.effort.rms(), LowestEffort: t.lowest, HighestEffort: t.highest,
 	}
 }

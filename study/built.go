@@ -28,6 +28,7 @@ type BuiltSteady struct {
 	TrackingError Figure `json:"tracking_error"` // mean at the ticks
 	WorstError    Figure `json:"worst_error"`    // largest magnitude, at and between the ticks
 	Swing         Figure `json:"swing"`          // of the error at the ticks, rms about its mean
+	Ripple        Figure `json:"ripple"`         // of the error at and between the ticks, peak to peak; null for a sine
 	PeakError     Figure `json:"peak_tracking_error"`
 	RMSError      Figure `json:"rms_tracking_error"`
 	AtLimit       bool   `json:"effort_at_limit"`
@@ -127,5 +128,8 @@ func builtSteady(ctx context.Context, l *loop.Loop, in loop.Input, sampled *anal
 		return out, nil
 	}
 	out.TrackingError, out.WorstError, out.Swing = Fig(t.Tail.MeanError), Fig(t.Tail.WorstError), Fig(t.Tail.ErrorRMS)
+	if in.Kind != "sine" {
+		out.Ripple = Fig(t.Tail.ErrorSpan)
+	}
 	return out, nil
 }

@@ -48,6 +48,8 @@ func (b *AsBuilt) steadyMetric(name string) Figure {
 			f = s.PeakError
 		case name == "rms_tracking_error":
 			f = s.RMSError
+		case name == "ripple" && !s.AtLimit:
+			f = s.Ripple
 		case kinds[name] == s.Input && !s.AtLimit:
 			return s.WorstError
 		}

@@ -184,6 +184,7 @@ func BuiltRows(c *Compare) []BuiltRow {
 		}
 		add("tracking_error", label+": mean tracking", c.Units.Output, s.TrackingError)
 		add("swing", "  rms about it, at the ticks", c.Units.Output, s.Swing)
+		add("ripple", "  ripple, p-p", c.Units.Output, s.Ripple)
 		add("worst_error", "  worst, at and between ticks", c.Units.Output, s.WorstError)
 	}
 	return rows
