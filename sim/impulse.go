@@ -33,6 +33,11 @@ func impulse(ctx context.Context, cfg Config, k *kick, take func(u, y float64) (
 	t := cfg.Tasks[0]
 	t.Sensors, t.Limits, t.Bits, t.Step, t.Slew, t.Deadband, t.Play = nil, Limits{}, 0, 0, 0, 0, 0
 	t.Jitter, t.UpdateShift, t.Missed, t.Stale, t.MeasuredPeriod = nil, nil, nil, nil, false
+	if c := *t.Controller; c.antiWindup != NoAntiWindup {
+		// Its integrators stand apart; without limits this rule lets them run as the linear loop has them.
+		c.antiWindup, c.trackGain, c.timed = Tracking, 0, nil
+		t.Controller = &c
+	}
 	cfg.Tasks = []Task{t}
 	e, err := newEngine(&cfg)
 	if err != nil {

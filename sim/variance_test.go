@@ -126,3 +126,44 @@ func TestPeakGains(t *testing.T) {
 	near(t, "measurement", g.Measurement, 3*b/(1+p), 1e-13)
 	near(t, "effort", g.Effort, b/(1+p), 1e-13)
 }
+
+// Limits and anti-windup are no part of the linear loop: every rule gives the variances and peak gains of none.
+func TestNoiseKnowsNoLimits(t *testing.T) {
+	cfg := func(rule AntiWindup) Config {
+		c, err := NewController(ControllerConfig{
+			Period: rat("1/10"), AntiWindup: rule, TrackingTime: 0.1, Low: -1e-3, High: 1e-3,
+			Terms: []Term{{Model: inZ(t, rats("2"), one(), "1/10"), Weight: 1}, integralInZ(t, 0.5, "1", "1/10")},
+		})
+		if err != nil {
+			t.Fatal(err)
+		}
+		return Config{
+			System: plantOf(t, model(t, one(), rats("1", "1"), "7"), unit(t)), Ticks: 1, // a long dead time: by the impulse response
+			Tasks: []Task{{
+				Period: rat("1/10"), Controller: c, Reads: []int{OutputM}, Drives: []int{InputEffort}, Limits: Limits{true, -1e-3, 1e-3},
+			}},
+		}
+	}
+	// 2 + 1/s with 7 s of dead time on 1/(s + 1) is unstable; scaled down to a gain of 1/20 it is not.
+	scaled := func(rule AntiWindup) Config {
+		c := cfg(rule)
+		c.System = plantOf(t, model(t, rats("1/20"), rats("1", "1"), "7"), unit(t))
+		return c
+	}
+	want := noise(t, scaled(NoAntiWindup), false)
+	peaks, err := Peaks(context.Background(), scaled(NoAntiWindup))
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, rule := range []AntiWindup{StopOutward, Stop, Clamp, Tracking} {
+		got := noise(t, scaled(rule), false)
+		near(t, "effort", got.Effort/want.Effort, 1, 1e-9) // the tail left out of the impulse response
+		near(t, "output", got.Output/want.Output, 1, 1e-9)
+		p, err := Peaks(context.Background(), scaled(rule))
+		if err != nil {
+			t.Fatal(err)
+		}
+		near(t, "measurement", p.Measurement/peaks.Measurement, 1, 1e-9)
+		near(t, "effort peak", p.Effort/peaks.Effort, 1, 1e-9)
+	}
+}

@@ -2,7 +2,6 @@ package study
 
 import (
 	"context"
-	"errors"
 	"math"
 
 	"steadytick/loop"
@@ -48,8 +47,15 @@ func built(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyze
 	if !declaresHardware(l) || !sampled.stable {
 		return nil, nil
 	}
+	if why := mechanicsFit(l); why != "" {
+		c.warn("not_simulated_as_built", "%s", why)
+		return nil, nil
+	}
 	out := &AsBuilt{Seed: o.seed(), Steady: make([]BuiltSteady, len(l.Inputs))}
 	h := horizon(l, loop.Input{Kind: "step", Size: 1}, sampled)
+	if ticks := builtLonger * h / c.PeriodS; ticks > mostTicksBuilt*(1+1e-9) {
+		c.warn("as_built_cut", "the loop as built is simulated for %d ticks, and %.3g would be wanted for its transients to die out: its steady figures still hold a part of them; a lower rate would do for so slow a loop", mostTicksBuilt, ticks)
+	}
 	err := parallel(len(l.Inputs)+3, func(i int) (err error) {
 		switch k := i - len(l.Inputs); k {
 		case 0:
@@ -63,9 +69,10 @@ func built(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyze
 		out.Steady[i], err = builtSteady(ctx, l, l.Inputs[i], sampled, o.seed()+uint64(i)+1)
 		return err
 	})
-	if errors.Is(err, sim.ErrMechanism) {
-		c.warn("not_simulated_as_built", "the loop as built cannot be simulated: %v", err)
-		return nil, nil
+	for _, in := range l.Inputs {
+		if sensorSees(l, in) < horizon(l, in, sampled) {
+			c.warn("as_built_out_of_range", "%s: the output leaves the range of the sensor before transients are gone: the loop as built has no steady figures there", inputTitle(l, in))
+		}
 	}
 	if curve := l.Sensor.Curve; curve != nil && err == nil {
 		var table *sim.Curve
@@ -112,6 +119,11 @@ func builtSteady(ctx context.Context, l *loop.Loop, in loop.Input, sampled *anal
 	length, whole := endLength(l, in)
 	if !whole {
 		length = builtLonger * horizon(l, in, sampled)
+		if seen := sensorSees(l, in); seen < length/builtLonger {
+			return out, nil // out of the sensor's range before transients are gone
+		} else {
+			length = math.Min(length, seen)
+		}
 	}
 	cfg, err := builtConfig(l, sampled.block, in, cut(l, length, mostTicksBuilt), seed, asDeclared)
 	if err != nil {
@@ -132,4 +144,27 @@ func builtSteady(ctx context.Context, l *loop.Loop, in loop.Input, sampled *anal
 		out.Ripple = Fig(t.Tail.ErrorSpan)
 	}
 	return out, nil
+}
+
+// sensorSees is how long, in seconds, a reference that grows stays within nine tenths of the range of the sensor.
+func sensorSees(l *loop.Loop, in loop.Input) float64 {
+	s := l.Sensor
+	low, high := math.Inf(-1), math.Inf(1)
+	switch {
+	case s.Curve != nil:
+		low, high = s.Curve.Output[0], s.Curve.Output[len(s.Curve.Output)-1]
+	case s.Bits > 0:
+		low, high = s.Range[0], s.Range[1]
+	}
+	end := 0.9 * high
+	if in.Size < 0 {
+		end = 0.9 * low
+	}
+	switch in.Kind {
+	case "ramp":
+		return math.Max(0, end/in.Size)
+	case "parabola":
+		return math.Sqrt(math.Max(0, 2*end/in.Size))
+	}
+	return math.Inf(1)
 }

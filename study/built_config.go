@@ -35,6 +35,15 @@ func quantizes(l *loop.Loop) bool {
 		l.Actuator.Bits > 0 || l.Actuator.Step > 0 || l.Actuator.Deadband > 0 || l.Friction != nil || l.Backlash != nil
 }
 
+// mechanicsFit says why friction or play of the file cannot be simulated, "" where they can: the reader has checked all but this.
+func mechanicsFit(l *loop.Loop) string {
+	moves := l.Friction != nil || l.Backlash != nil && l.Backlash.AtOutput
+	if moves && positive(l.Sensor.Model.Delay) {
+		return "friction and play cannot be simulated beside a dead time of the sensor: write it as dead_time of the plant, or as part of conversion"
+	}
+	return ""
+}
+
 func positive(r *big.Rat) bool { return r != nil && r.Sign() > 0 }
 
 // builtConfig is the run of a sampled block with an input for about length seconds on the hardware of the file.

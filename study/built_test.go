@@ -196,3 +196,58 @@ func TestLatencyInTheLedger(t *testing.T) {
 		t.Errorf("%v, %v", got, c.LoopDelayS)
 	}
 }
+
+// A pick that the sampled loop allows and the hardware does not is given with a warning that says so.
+func TestPickThatTheHardwareMisses(t *testing.T) {
+	l := parsed(t, loopFile("plant: {model: 1/(s*(0.1*s + 1))}", "controller: {model: 2}", "sensor: {step: 0.05}",
+		"timing: {rate: 50 Hz, compute: 1 ms}", "inputs: [{step: 1.01}]", "requirements: [step_error <= 0.001, phase_margin >= 40 deg]"))
+	r, err := RunRate(context.Background(), l, RateOptions{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	warned := false
+	for _, w := range r.Warnings {
+		warned = warned || w.Code == "as_built_misses"
+	}
+	if r.Pick == nil || !warned {
+		t.Errorf("pick %+v, note %q, warnings %v", r.Pick, r.PickNote, r.Warnings)
+	}
+}
+
+// A loop too slow for its rate is cut, and says so.
+func TestBuiltRunThatIsCut(t *testing.T) {
+	c := compared(t, loopFile("plant: {model: 1/(40*s + 1)}", "controller: {model: 1}", "sensor: {step: 0.05}",
+		"timing: {rate: 20 kHz, compute: 1 us}", "inputs: [{step: 1}]"))
+	for _, w := range c.Warnings {
+		if w.Code == "as_built_cut" {
+			return
+		}
+	}
+	t.Errorf("%v", c.Warnings)
+}
+
+// Friction beside a dead time of the sensor is no reason to give no comparison; and a ramp that leaves the range of the
+// sensor has no steady figures as built.
+func TestWhatIsNotSimulatedAsBuilt(t *testing.T) {
+	has := func(c *Compare, code string) bool {
+		for _, w := range c.Warnings {
+			if w.Code == code {
+				return true
+			}
+		}
+		return false
+	}
+	for _, part := range []string{"friction: {coulomb: 0.1}", "backlash: {gap: 0.1, at: output}"} {
+		c := compared(t, loopFile("plant: {model: 1/(s*(0.1*s + 1)), "+part+"}", "controller: {model: 2}", "sensor: {model: exp(-0.01*s)}",
+			"timing: {rate: 50 Hz, compute: 1 ms}", "inputs: [{step: 1}]"))
+		if c.AsBuilt != nil || !has(c, "not_simulated_as_built") {
+			t.Errorf("%s: %+v, %v", part, c.AsBuilt, c.Warnings)
+		}
+	}
+	c := compared(t, loopFile("plant: {model: 1/(s*(0.1*s + 1))}", "controller: {model: 2}", "sensor: {bits: 10, range: [-2, 2]}",
+		"timing: {rate: 50 Hz, compute: 1 ms}", "inputs: [{ramp: 1}, {ramp: 0.001}, {ramp: -1}]"))
+	s := c.AsBuilt.Steady
+	if s[0].WorstError.OK || s[2].WorstError.OK || !s[1].WorstError.OK || !has(c, "as_built_out_of_range") {
+		t.Errorf("%+v, %v", s, c.Warnings)
+	}
+}

@@ -2,6 +2,7 @@ package study
 
 import (
 	"context"
+	"errors"
 	"io"
 
 	"steadytick/loop"
@@ -24,6 +25,9 @@ func Simulate(ctx context.Context, l *loop.Loop, i int, o Options) (SimulationCS
 	cont, sampled, err := bothColumns(l, &Compare{})
 	if err != nil {
 		return SimulationCSV{}, err
+	}
+	if why := mechanicsFit(l); why != "" {
+		return SimulationCSV{}, errors.New(why)
 	}
 	in := l.Inputs[i]
 	length := cut(l, horizon(l, in, cont, sampled), mostTicksRun)

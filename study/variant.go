@@ -54,7 +54,11 @@ func variants(l *loop.Loop, own *analyzed, d Degrade, seed uint64) []variant {
 		out = append(out, v)
 	}
 	if declaresHardware(l) {
-		out = append(out, variant{name: asBuilt, loop: l, run: own, built: true, seed: seed})
+		v := variant{name: asBuilt, loop: l, run: own, built: true, seed: seed}
+		if v.note = mechanicsFit(l); v.note != "" {
+			v.run = nil
+		}
+		out = append(out, v)
 	}
 	return out
 }

@@ -304,5 +304,9 @@ func brief(c study.Candidate, name string, cells int) string {
 	case math.IsInf(f.Value, 0):
 		return padLeft("inf", cells)
 	}
-	return padLeft(fmt.Sprintf("%.4g", f.Value), cells)
+	text := fmt.Sprintf("%.4g", f.Value)
+	for digits := 3; len(text) >= cells && digits > 0; digits-- {
+		text = fmt.Sprintf("%.*g", digits, f.Value)
+	}
+	return padLeft(text, cells)
 }
