@@ -25,7 +25,8 @@ type Figures struct {
 	PeakTime         Maybe // seconds; not applicable without overshoot
 	PeakEffort       Maybe
 	// RecoveryTime is how long the response takes, from its first moment within the settling band, to stay in it,
-	// in seconds: what is left of an effort that was at its limit. Not applicable when it was not, or when the run ends outside.
+	// in seconds: what is left of an effort that was at its limit; 0 when it never was. Not applicable without limits, or when the
+	// run ends outside.
 	RecoveryTime Maybe
 }
 
@@ -163,8 +164,8 @@ func (f *finder) enter(t float64) {
 	}
 }
 
-// figures ends the search; effort is its peak, limited tells that it was at a limit.
-func (f *finder) figures(effort float64, limited bool) Figures {
+// figures ends the search; effort is its peak, limits tells that it has limits, limited that it was at one.
+func (f *finder) figures(effort float64, limits, limited bool) Figures {
 	out := Figures{PeakEffort: some(effort)}
 	if f.has10 && f.has90 {
 		out.RiseTime = some(f.t90 - f.t10)
@@ -179,8 +180,11 @@ func (f *finder) figures(effort float64, limited bool) Figures {
 	}
 	if !f.outside {
 		out.SettlingTime = some(f.settled)
-		if limited && f.inside {
+		switch {
+		case limited && f.inside:
 			out.RecoveryTime = some(math.Max(0, f.settled-f.entered))
+		case limits && !limited:
+			out.RecoveryTime = some(0)
 		}
 	}
 	return out

@@ -168,9 +168,13 @@ func TestRecoveryTime(t *testing.T) {
 	if !(took[NoAntiWindup] > 1.5*took[Tracking]) || !(took[Tracking] > 0) {
 		t.Errorf("recovery %v", took)
 	}
-	// An effort that never meets its limit has nothing to recover from.
+	// An effort without limits has nothing to recover from, one that never meets them recovers at once.
 	cfg := proportional(t, plantOf(t, model(t, one(), rats("1", "0"), "0"), unit(t)), "1/10", "0", "1", 100)
 	if f, _, err := StepFigures(context.Background(), cfg, StepSpec{Final: 1}); err != nil || f.RecoveryTime.OK {
+		t.Errorf("recovery %v, %v", f.RecoveryTime, err)
+	}
+	cfg.Tasks[0].Limits = Limits{true, -9, 9}
+	if f, _, err := StepFigures(context.Background(), cfg, StepSpec{Final: 1}); err != nil || f.RecoveryTime != some(0) {
 		t.Errorf("recovery %v, %v", f.RecoveryTime, err)
 	}
 }

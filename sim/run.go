@@ -99,7 +99,7 @@ func (e *engine) trace(diverged bool) *Trace {
 	}
 	t.Tail = e.tail.figures()
 	if e.watch != nil && !diverged {
-		t.Step = e.watch.find.figures(e.effort, e.tasks[0].act.limited)
+		t.Step = e.watch.find.figures(e.effort, e.tasks[0].Limits.On, e.tasks[0].act.limited)
 	}
 	last := e.points.last
 	t.FinalT, t.FinalR, t.FinalY, t.FinalM, t.FinalU = last.t, last.r, last.y, last.m, last.u

@@ -231,7 +231,7 @@ func (o *twinOut) trace(diverged bool, pieces int) *TwinTrace {
 			t.FinalT, t.FinalR, t.FinalY, t.FinalM, t.FinalU = t.T[n-1], t.R[n-1], t.Y[n-1], t.M[n-1], t.U[n-1]
 		}
 	} else if o.find != nil {
-		t.Step = o.find.figures(o.effort, o.limited)
+		t.Step = o.find.figures(o.effort, o.cfg.Limits.On, o.limited)
 	}
 	return t
 }

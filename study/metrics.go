@@ -70,7 +70,7 @@ func noFigure(l *loop.Loop, c *Compare, name string) string {
 	case "limit_cycle":
 		return "the file declares nothing that quantizes or sticks"
 	case "recovery_time":
-		return "the effort does not reach a limit, or the response does not settle"
+		return "the actuator has no limits, or the response does not settle"
 	}
 	return "the loop has no such figure"
 }

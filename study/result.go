@@ -142,7 +142,7 @@ type Transient struct {
 	SettlingTimeS    Figure `json:"settling_time_s"`
 	PeakTimeS        Figure `json:"peak_time_s"`
 	PeakEffort       Figure `json:"peak_effort"`
-	RecoveryTimeS    Figure `json:"recovery_time_s"` // after an effort at its limit: see sim.Figures; null when it is not limited
+	RecoveryTimeS    Figure `json:"recovery_time_s"` // after an effort at its limit, 0 when it never is: see sim.Figures; null without limits
 }
 
 // LedgerItem is one contribution to lag around the loop.

@@ -114,7 +114,10 @@ func stuckError(l *loop.Loop, a *analyzed) Figure {
 			measured, _ = table.TableError()
 		}
 	}
-	measured += sensorBin(l)/2 + math.Abs(s.Offset)*scale
+	if s.Encoder == nil || !s.Encoder.Velocity { // a velocity from counts is right in the mean: no count is lost
+		measured += sensorBin(l) / 2
+	}
+	measured += math.Abs(s.Offset) * scale
 	h := leadingOf(s.Model.Ratio)
 	through := 0.0
 	if h.c != nil && h.order == 0 {
