@@ -151,7 +151,11 @@ func newEngine(cfg *Config) (*engine, error) {
 		e.watch = newStepWatch(e, cfg.Step)
 	}
 	if cfg.TailFrom > 0 {
-		e.tail = newTail(float64(cfg.TailFrom) * e.tasks[0].Controller.period)
+		keep := int64(0)
+		if cfg.TailKeep {
+			keep = min(max(cfg.Ticks-cfg.TailFrom+2, 1), 1<<20)
+		}
+		e.tail = newTail(float64(cfg.TailFrom)*e.tasks[0].Controller.period, keep)
 	}
 	e.timeMarks()
 	if e.parts, err = newMechanism(e); err != nil {
@@ -320,7 +324,8 @@ func (e *engine) compute(i int, t *taskState, now, period float64) {
 		t.held = u // tasks later in the list see it at once
 	}
 	if e.tail != nil && i == 0 && now >= e.tail.from {
-		e.tail.tick(u, r-e.y.value(e.z))
+		y := e.y.value(e.z)
+		e.tail.tick(u, y, r-y)
 	}
 	if i == 0 {
 		e.ticks.add(&row{t: now, r: r, y: e.y.value(e.z), m: t.m[0], u: u})

@@ -12,6 +12,7 @@ type Tail struct {
 	Swing                       float64 // of y: highest less lowest
 	MeanEffort, EffortRMS       float64 // rms about the mean
 	LowestEffort, HighestEffort float64
+	Outputs                     []float64 // y at every tick, when Config.TailKeep asks for it
 }
 
 // tail gathers a Tail. Means and squares by Welford's update (Technometrics 4, 1962; from memory).
@@ -23,6 +24,8 @@ type tail struct {
 	low, high       float64
 	least, most     float64 // of r − y
 	lowest, highest float64
+	keep            bool
+	outputs         []float64
 }
 
 type moments struct{ n, mean, square float64 }
@@ -41,9 +44,9 @@ func (m *moments) rms() float64 {
 	return math.Sqrt(math.Max(0, m.square/m.n))
 }
 
-func newTail(from float64) *tail {
+func newTail(from float64, keep int64) *tail {
 	inf := math.Inf(1)
-	return &tail{from: from * (1 - 1e-12), low: inf, high: -inf, least: inf, most: -inf, lowest: inf, highest: -inf}
+	return &tail{keep: keep > 0, outputs: make([]float64, 0, keep), from: from * (1 - 1e-12), low: inf, high: -inf, least: inf, most: -inf, lowest: inf, highest: -inf}
 }
 
 // look takes a point.
@@ -54,8 +57,11 @@ func (t *tail) look(y, err float64) {
 }
 
 // tick takes a tick.
-func (t *tail) tick(u, err float64) {
+func (t *tail) tick(u, y, err float64) {
 	t.n++
+	if t.keep {
+		t.outputs = append(t.outputs, y)
+	}
 	t.err.add(err)
 	t.effort.add(u)
 	t.lowest, t.highest = math.Min(t.lowest, u), math.Max(t.highest, u)
@@ -67,6 +73,6 @@ func (t *tail) figures() Tail {
 	}
 	return Tail{
 		Ticks: t.n, MeanError: t.err.mean, ErrorRMS: t.err.rms(), WorstError: t.worst, ErrorSpan: math.Max(0, t.most-t.least), Swing: math.Max(0, t.high-t.low),
-		MeanEffort: t.effort.mean, EffortRMS: t.effort.rms(), LowestEffort: t.lowest, HighestEffort: t.highest,
+		MeanEffort: t.effort.mean, EffortRMS: t.effort.rms(), LowestEffort: t.lowest, HighestEffort: t.highest, Outputs: t.outputs,
 	}
 }

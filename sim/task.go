@@ -145,6 +145,8 @@ type Config struct {
 	MaxPoints int
 	// TailFrom, when positive, is the first tick of the part of the run that Trace.Tail is about.
 	TailFrom int64
+	// TailKeep: Trace.Tail.Outputs is wanted.
+	TailKeep bool
 	// Step, when set, asks for the step figures of output 0 (its first value being 0).
 	Step *StepSpec
 	// Progress, when set, is called now and then with the part done, 0 to 1.

@@ -97,14 +97,14 @@ func restFor(ctx context.Context, l *loop.Loop, sampled *analyzed, ticks float64
 	if err != nil {
 		return out, false, err
 	}
-	cfg.Reference, cfg.Disturbances, cfg.PointsPerTick = r, nil, 2
-	cfg.TailFrom, cfg.MaxPoints = max(1, cfg.Ticks-cfg.Ticks/3), int(cfg.Ticks)+16
+	cfg.Reference, cfg.Disturbances, cfg.PointsPerTick = r, nil, 1
+	cfg.TailFrom, cfg.TailKeep = max(1, cfg.Ticks-cfg.Ticks/3), true
 	t, err := sim.Run(ctx, cfg)
 	if err != nil || t.Diverged {
 		return out, false, err
 	}
 	out = restRun{mean: t.Tail.MeanError, swing: t.Tail.Swing, effort: t.Tail.HighestEffort - t.Tail.LowestEffort}
-	period, early, late := cycleOf(t.TickT, t.TickY, float64(cfg.TailFrom)*T)
+	period, early, late := cycleOf(t.Tail.Outputs, T)
 	moves := out.swing > stillSwing*math.Max(math.Abs(place), out.swing*1e-3)
 	// What is still dying out is no cycle: its swing falls.
 	out.cycles, out.period = moves && late > 0.7*early, period
@@ -113,14 +113,9 @@ func restFor(ctx context.Context, l *loop.Loop, sampled *analyzed, ticks float64
 	return out, drifts && !(out.cycles && period.OK), nil
 }
 
-// cycleOf is the mean time between the upward passings of the middle of y from the instant on, and the swings in both halves
-// of that time.
-func cycleOf(t, y []float64, from float64) (period Figure, early, late float64) {
-	first := 0
-	for first < len(t) && t[first] < from {
-		first++
-	}
-	t, y = t[first:], y[first:]
+// cycleOf is the mean time between the upward passings of the middle of y, given at every tick of T seconds, and the swings in
+// both halves of that time.
+func cycleOf(y []float64, T float64) (period Figure, early, late float64) {
 	span := func(y []float64) (low, high float64) {
 		low, high = math.Inf(1), math.Inf(-1)
 		for _, v := range y {
@@ -135,11 +130,11 @@ func cycleOf(t, y []float64, from float64) (period Figure, early, late float64) 
 	c, d := span(y[len(y)/2:])
 	low, high := math.Min(a, c), math.Max(b, d)
 	upper, lower := low+0.6*(high-low), low+0.4*(high-low)
-	up, passed := false, []float64{}
+	up, passed := false, []int{}
 	for i, v := range y {
 		if v > upper && !up {
 			if i > 0 {
-				passed = append(passed, t[i])
+				passed = append(passed, i)
 			}
 			up = true
 		} else if v < lower {
@@ -147,7 +142,7 @@ func cycleOf(t, y []float64, from float64) (period Figure, early, late float64) 
 		}
 	}
 	if n := len(passed); n > 1 {
-		period = Fig((passed[n-1] - passed[0]) / float64(n-1))
+		period = Fig(T * float64(passed[n-1]-passed[0]) / float64(n-1))
 	}
 	return period, b - a, d - c
 }
