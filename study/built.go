@@ -37,7 +37,7 @@ const (
 	// builtLonger: the loop as built is run this many times longer than the others, and looked at in the last third.
 	builtLonger = 3
 	// mostTicksBuilt bounds its runs: with friction or jitter a tick takes microseconds.
-	mostTicksBuilt = 120_000
+	mostTicksBuilt = 60_000
 	// noiseTicks are wanted for the rms of noise: its own relative error is then 1 % or so.
 	noiseTicks = 20_000
 )
