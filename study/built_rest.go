@@ -13,12 +13,12 @@ import (
 // or hunts in a limit cycle.
 type Rest struct {
 	Starts     int    `json:"starts"`      // runs to rest, from different sides to places within a code of the sensor
-	Cycling    int    `json:"cycling"`     // of these, the runs that did not come to rest
-	LimitCycle Figure `json:"limit_cycle"` // largest swing of y, peak to peak; 0 when all came to rest
+	Cycling    int    `json:"cycling"`     // of these, the runs that did not come to rest: y or the effort goes on moving
+	LimitCycle Figure `json:"limit_cycle"` // largest swing of y, peak to peak; 0 when all came to rest, null when it is slower than the runs are long
 	PeriodS    Figure `json:"limit_cycle_period_s"`
 	EffortPP   Figure `json:"limit_cycle_effort"` // swing of the effort in that run, peak to peak
 	Bound      Figure `json:"limit_cycle_bound"`  // no limit cycle of the words can be larger; null where theory gives none
-	StuckError Figure `json:"stuck_error"`        // largest mean error of the runs
+	StuckError Figure `json:"stuck_error"`        // largest error of those that came to rest; null when none did
 }
 
 const (
@@ -42,15 +42,19 @@ func restOf(ctx context.Context, l *loop.Loop, sampled *analyzed, h float64) (*R
 	if err != nil {
 		return nil, err
 	}
-	out := &Rest{Starts: restStarts, LimitCycle: Fig(0), StuckError: Fig(0)}
+	out := &Rest{Starts: restStarts, LimitCycle: Fig(0)}
 	for _, r := range runs {
-		out.StuckError.Value = math.Max(out.StuckError.Value, math.Abs(r.mean))
-		if !r.cycles {
+		if r.still {
+			out.StuckError = Fig(math.Max(out.StuckError.Value, math.Abs(r.mean)))
 			continue
 		}
-		if out.Cycling++; r.swing >= out.LimitCycle.Value {
+		out.Cycling++
+		if r.cycles && r.swing >= out.LimitCycle.Value {
 			out.LimitCycle, out.PeriodS, out.EffortPP = Fig(r.swing), r.period, Fig(r.effort)
 		}
+	}
+	if out.Cycling > 0 && out.LimitCycle.Value == 0 { // the effort creeps, and no swing was seen to its end
+		out.LimitCycle = Figure{}
 	}
 	out.Bound, err = cycleBound(ctx, l, sampled)
 	return out, err
@@ -58,7 +62,8 @@ func restOf(ctx context.Context, l *loop.Loop, sampled *analyzed, h float64) (*R
 
 // restRun is one run to rest.
 type restRun struct {
-	cycles bool
+	cycles bool // y swings and goes on swinging
+	still  bool // neither y nor the effort moves any more
 	mean   float64
 	swing  float64
 	effort float64
@@ -110,6 +115,7 @@ func restFor(ctx context.Context, l *loop.Loop, sampled *analyzed, ticks float64
 	out.cycles, out.period = moves && late > 0.7*early, period
 	// An effort that goes on while the output stands, or a swing without a period: the cycle may be longer than the run.
 	drifts := out.effort > stillSwing*math.Max(math.Abs(t.Tail.MeanEffort), 1e-300)
+	out.still = !drifts && !out.cycles
 	return out, drifts && !(out.cycles && period.OK), nil
 }
 
