@@ -6,7 +6,7 @@
 GO       ?= go
 NPM      ?= npm
 PYTHON   ?= /usr/bin/python3
-FUZZTIME ?= 60s
+FUZZTIME ?= 40s
 
 STATICCHECK := bin/staticcheck
 RUNTIME     := charts/runtime/echarts.min.js
