@@ -53,7 +53,11 @@ func impulse(ctx context.Context, cfg Config, k *kick, take func(u, y float64) (
 	next := int64(64)
 	for _, h := range e.layout.held {
 		delay, _ := e.cfg.System.channels[h.channel].Delay.Float64()
-		next = max(next, int64(8*delay/t.Controller.period)+64)
+		late, _ := orZero(t.Delay).Float64()
+		next = max(next, int64(8*(delay+late)/t.Controller.period)+64)
+	}
+	for i := range t.Controller.terms {
+		next += 8 * int64(t.Controller.terms[i].ticks)
 	}
 	for n := int64(0); ; {
 		in, err := e.line.next()

@@ -18,6 +18,9 @@ type AsBuilt struct {
 	Output     Figure        `json:"output_noise"`
 	Rest       *Rest         `json:"rest"` // null when nothing in the loop quantizes or sticks
 	TableError Figure        `json:"sensor_table_error"`
+
+	stepAway, noiseAway bool
+	away                bool // some run grew without bound: such a loop meets nothing
 }
 
 // BuiltSteady is one input once transients are gone, in the last third of a long run; of a move or file, the whole of it.
@@ -31,6 +34,8 @@ type BuiltSteady struct {
 	PeakError     Figure `json:"peak_tracking_error"`
 	RMSError      Figure `json:"rms_tracking_error"`
 	AtLimit       bool   `json:"effort_at_limit"`
+
+	away bool
 }
 
 const (
@@ -69,6 +74,13 @@ func built(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyze
 		out.Steady[i], err = builtSteady(ctx, l, l.Inputs[i], sampled, o.seed()+uint64(i)+1)
 		return err
 	})
+	out.away = out.stepAway || out.noiseAway || out.Rest != nil && out.Rest.away
+	for i := range out.Steady {
+		out.away = out.away || out.Steady[i].away
+	}
+	if out.away {
+		c.warn("as_built_runs_away", "the loop as built grows without bound, though the sampled loop is stable: what the file declares of the hardware breaks the loop, and it meets no requirement")
+	}
 	for _, in := range l.Inputs {
 		if sensorSees(l, in) < horizon(l, in, sampled) {
 			c.warn("as_built_out_of_range", "%s: the output leaves the range of the sensor before transients are gone: the loop as built has no steady figures there", inputTitle(l, in))
@@ -91,8 +103,9 @@ func (b *AsBuilt) step(ctx context.Context, l *loop.Loop, cont, sampled *analyze
 	if err != nil {
 		return err
 	}
-	f, _, err := sim.StepFigures(ctx, cfg, sampled.stepSpec(l, in))
+	f, t, err := sim.StepFigures(ctx, cfg, sampled.stepSpec(l, in))
 	b.Transient = transientOf(f)
+	b.stepAway = err == nil && t.Diverged
 	return err
 }
 
@@ -107,6 +120,7 @@ func (b *AsBuilt) noise(ctx context.Context, l *loop.Loop, sampled *analyzed, h 
 	}
 	cfg.PointsPerTick, cfg.TailFrom = 1, int64(math.Round(settle/T))
 	t, err := sim.Run(ctx, cfg)
+	b.noiseAway = err == nil && t.Diverged
 	if err == nil && !t.Diverged {
 		b.NoiseTicks, b.Effort, b.Output = t.Tail.Ticks, Fig(t.Tail.EffortRMS), Fig(t.Tail.ErrorRMS)
 	}
@@ -132,6 +146,7 @@ func builtSteady(ctx context.Context, l *loop.Loop, in loop.Input, sampled *anal
 	cfg.TailFrom = max(1, cfg.Ticks-cfg.Ticks/builtLonger)
 	t, err := sim.Run(ctx, cfg)
 	if err != nil || t.Diverged {
+		out.away = err == nil
 		return out, err
 	}
 	out.AtLimit = atLimit(l, t.FinalU)

@@ -77,3 +77,18 @@ func worse(l *loop.Loop, c *Compare, r loop.Requirement, v Figure, why string) (
 	}
 	return v, why, "sampled"
 }
+
+// failsAsBuilt tells whether the loop as built misses a requirement by having no figure: it grows without bound, or its step, of which
+// the sampled loop has the figures, does not settle.
+func failsAsBuilt(c *Compare, name string) bool {
+	b := c.AsBuilt
+	switch {
+	case b == nil:
+		return false
+	case b.away:
+		return true
+	case name == "overshoot" || name == "settling_time":
+		return c.Sampled.Transient.SettlingTimeS.OK && !b.Transient.SettlingTimeS.OK
+	}
+	return false
+}

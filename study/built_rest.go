@@ -18,7 +18,8 @@ type Rest struct {
 	PeriodS    Figure `json:"limit_cycle_period_s"`
 	EffortPP   Figure `json:"limit_cycle_effort"` // swing of the effort in that run, peak to peak
 	Bound      Figure `json:"limit_cycle_bound"`  // no limit cycle of the words can be larger; null where theory gives none
-	StuckError Figure `json:"stuck_error"`        // largest error of those that came to rest; null when none did
+	away       bool
+	StuckError Figure `json:"stuck_error"` // largest error of those that came to rest; null when none did
 }
 
 const (
@@ -44,6 +45,10 @@ func restOf(ctx context.Context, l *loop.Loop, sampled *analyzed, h float64) (*R
 	}
 	out := &Rest{Starts: restStarts, LimitCycle: Fig(0)}
 	for _, r := range runs {
+		if out.away = out.away || r.away; r.away {
+			out.Cycling++
+			continue
+		}
 		if r.still {
 			out.StuckError = Fig(math.Max(out.StuckError.Value, math.Abs(r.mean)))
 			continue
@@ -63,6 +68,7 @@ func restOf(ctx context.Context, l *loop.Loop, sampled *analyzed, h float64) (*R
 // restRun is one run to rest.
 type restRun struct {
 	cycles bool // y swings and goes on swinging
+	away   bool // it grew without bound
 	still  bool // neither y nor the effort moves any more
 	mean   float64
 	swing  float64
@@ -106,9 +112,9 @@ func restFor(ctx context.Context, l *loop.Loop, sampled *analyzed, ticks float64
 	cfg.TailFrom, cfg.TailKeep = max(1, cfg.Ticks-cfg.Ticks/3), true
 	t, err := sim.Run(ctx, cfg)
 	if err != nil || t.Diverged {
-		return out, false, err
+		return restRun{away: err == nil}, false, err
 	}
-	out = restRun{mean: t.Tail.MeanError, swing: t.Tail.Swing, effort: t.Tail.HighestEffort - t.Tail.LowestEffort}
+	out = restRun{mean: t.Tail.MeanError - sampled.tracking[0]*place, swing: t.Tail.Swing, effort: t.Tail.HighestEffort - t.Tail.LowestEffort}
 	period, early, late := cycleOf(t.Tail.Outputs, T)
 	moves := out.swing > stillSwing*math.Max(math.Abs(place), out.swing*1e-3)
 	// What is still dying out is no cycle: its swing falls.
@@ -228,7 +234,12 @@ func cycleBound(ctx context.Context, l *loop.Loop, sampled *analyzed) (Figure, e
 	}
 	bound := g.Measurement*measured + g.Effort*effort
 	if b := l.Backlash; b != nil && b.AtOutput {
-		bound += (1 + g.Measurement) * b.Gap / 2
+		gain, static := staticSensor(l.Sensor)
+		if !static {
+			return Figure{}, nil
+		}
+		h, _ := gain.Float64()
+		bound += (1 + g.Measurement*math.Abs(h)) * b.Gap / 2
 	}
 	return Fig(2 * bound), nil
 }

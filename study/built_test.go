@@ -251,3 +251,40 @@ func TestWhatIsNotSimulatedAsBuilt(t *testing.T) {
 		t.Errorf("%+v, %v", s, c.Warnings)
 	}
 }
+
+// A loop that only its hardware breaks meets nothing: the response leaves the converter's range and does not come back, the
+// plant being unstable by itself.
+func TestLoopThatRunsAwayAsBuilt(t *testing.T) {
+	l := parsed(t, loopFile("plant: {model: 1/((s - 5)*(0.01*s + 1))}", "controller: {model: 12*(1 + 0.05/s), map: tustin}",
+		"sensor: {bits: 12, range: [-1.2, 1.2]}", "timing: {rate: 500 Hz, compute: 0 s}", "inputs: [{step: 1}]",
+		"requirements: [phase_margin >= 1 deg, step_error <= 5, settling_time <= 1000 s]"))
+	g, err := RunGate(context.Background(), l, GateOptions{})
+	if err != nil || g.Met {
+		t.Fatalf("met %v, %v", g.Met, err)
+	}
+	for _, r := range g.Requirements[1:] {
+		if r.Met == nil || *r.Met || r.Cause == nil || r.From != asBuilt {
+			t.Errorf("%+v", r)
+		}
+	}
+}
+
+// The bounds see an update that is late by many ticks: with 1/s, k = 0.3 and 200 ticks at 1 kHz a code of 0.001 can move the output by
+// 1e-3 peak to peak, the response to the measurement being of one sign: its sum of magnitudes is that of its values, T(0) = 1.
+func TestLateUpdateIsInTheBounds(t *testing.T) {
+	c := compared(t, loopFile("plant: {model: 1/s}", "controller: {model: 0.3}", "sensor: {step: 0.001}",
+		"timing: {rate: 1 kHz, compute: 0 s, update: {after: 200 ms}}", "inputs: [{step: 1}]"))
+	if b := c.AsBuilt.Rest.Bound; !(math.Abs(b.Value/1e-3-1) <= 1e-6) {
+		t.Errorf("bound %v, want 1e-3", b)
+	}
+}
+
+// The steady error of the linear loop is not the doing of its words: a P loop with 1/(1 + 4) of it and a code of 0.01 is held off by
+// half a code at most, times 4/5.
+func TestStuckErrorIsOfTheWordsAlone(t *testing.T) {
+	c := compared(t, loopFile("plant: {model: 1/(s + 1)}", "controller: {model: 4}", "sensor: {step: 0.01}",
+		"timing: {rate: 20 Hz, compute: 0 s}", "inputs: [{step: 1}]"))
+	if s := c.AsBuilt.Rest.StuckError; !(s.Value <= 0.004+1e-9) || !s.OK {
+		t.Errorf("stuck %v", s)
+	}
+}

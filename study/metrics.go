@@ -165,6 +165,9 @@ func judge(l *loop.Loop, c *Compare) {
 		switch {
 		case !judged(r.Name):
 			c.warn("requirement_not_judged", "requirement %q cannot be judged: %s", r.Text, why)
+		case c.Sampled.Stable && failsAsBuilt(c, r.Name):
+			met := false
+			out.Met, out.Value, out.From = &met, Figure{}, asBuilt
 		case !c.Sampled.Stable: // an unstable loop meets nothing, whatever its figures
 			met := false
 			out.Met = &met
