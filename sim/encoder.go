@@ -31,7 +31,7 @@ func (e *Encoder) Counts(at float64) float64 { return math.Floor(at/e.Count + 0.
 // encoderState is an encoder while it runs.
 type encoderState struct {
 	*Encoder
-	counts         float64 // at the sample before
+	counts         float64 // at the sample before; by time, when the mark then was seen
 	mark, markThen float64 // instant of the last mark; that at the sample before
 	velocity       float64 // what the last marks gave
 }
@@ -42,18 +42,22 @@ func (s *encoderState) read(at, now, period float64) float64 {
 		return n * s.Count
 	}
 	moved := (n - s.counts) * s.Count
-	s.counts = n
 	if !s.ByTime {
+		s.counts = n
 		return moved / period
 	}
 	last := s.tick(s.mark)
 	then := s.markThen
-	if last != then {
-		s.markThen = last
+	if last != then { // else counts wait until the clock can tell their marks from those before
+		s.counts, s.markThen = n, last
 		s.velocity = moved / (last - then)
 		return s.velocity
 	}
-	if most := s.Count / math.Max(s.tick(now)-last, s.least()); math.Abs(s.velocity) > most {
+	silent := s.tick(now) - last
+	if moved != 0 || silent <= 0 {
+		return s.velocity // the clock cannot tell yet
+	}
+	if most := s.Count / silent; math.Abs(s.velocity) > most {
 		return math.Copysign(most, s.velocity)
 	}
 	return s.velocity
@@ -65,14 +69,6 @@ func (e *Encoder) tick(t float64) float64 {
 		return t
 	}
 	return math.Floor(t*e.Clock) / e.Clock
-}
-
-// least is the shortest time that the clock can tell.
-func (e *Encoder) least() float64 {
-	if e.Clock == 0 {
-		return math.SmallestNonzeroFloat64
-	}
-	return 1 / e.Clock
 }
 
 // follow notes the last mark passed in a stretch of h seconds from t, given positions and their slopes at

@@ -42,12 +42,12 @@ type taskState struct {
 	reads     []*probe
 	sensors   []sensorState // none: all outputs are read as they are
 	positions []*probe      // of the encoders, nil for other sensors
-	m         []float64
-	count     int64   // samples so far, missed ones too
-	sampled   float64 // instant of the last sample that was taken
-	begun     bool    // one was taken
-	effort    float64 // last computed, as held
-	skip      int64   // instants of the cycle before the first sample
+	m, kept   []float64     // the measurements; those of the tick before, while they are wanted
+	count     int64         // samples so far, missed ones too
+	sampled   float64       // instant of the last sample that was taken
+	begun     bool          // one was taken
+	effort    float64       // last computed, as held
+	skip      int64         // instants of the cycle before the first sample
 	efforts   efforts
 	applied   int64 // number of the sample whose effort is applied next
 	held      float64
@@ -167,7 +167,7 @@ func newEngine(cfg *Config) (*engine, error) {
 
 func (e *engine) newTask(i int, t *Task) taskState {
 	s := taskState{
-		Task: t, state: t.Controller.start(t.MeasuredPeriod), m: make([]float64, len(t.Reads)),
+		Task: t, state: t.Controller.start(t.MeasuredPeriod), m: make([]float64, len(t.Reads)), kept: make([]float64, len(t.Reads)),
 		act:       actuator{limits: t.Limits, converter: t.effortConverter(), rise: math.Inf(1)},
 		reference: cursor{signal: &e.cfg.Reference},
 	}
@@ -268,6 +268,9 @@ func (e *engine) sample(i int, t *taskState, now float64) {
 	k := t.count
 	t.count++
 	if t.Missed != nil && t.Missed(k) {
+		for j := range t.sensors {
+			t.sensors[j].pass()
+		}
 		t.efforts.push(t.effort, e.oldest(i, t))
 		return
 	}
@@ -276,7 +279,11 @@ func (e *engine) sample(i int, t *taskState, now float64) {
 		period = now - t.sampled
 	}
 	t.sampled, t.begun = now, true
-	if k == 0 || t.Stale == nil || !t.Stale(k) {
+	if k > 0 && t.Stale != nil && t.Stale(k) {
+		copy(t.kept, t.m)
+		e.read(t, now, period, k) // the sensor goes on all the same; what it gives is lost
+		copy(t.m, t.kept)
+	} else {
 		e.read(t, now, period, k)
 	}
 	e.compute(i, t, now, period)
@@ -475,6 +482,7 @@ func (e *engine) look(t float64) (err float64, ok bool) {
 		return 0, false
 	}
 	e.points.add(&p)
+	e.kick.look(p.y)
 	err = p.r - p.y
 	if e.tail != nil && t >= e.tail.from {
 		e.tail.look(p.y, err)

@@ -27,7 +27,10 @@ func impulseNoise(ctx context.Context, cfg Config, difference bool) (NoiseGains,
 // impulse runs the linear loop of the one task of cfg after a kick until what take returns of each sample, two
 // numbers that are not negative, has died out: when a good part of the run has added no more than 1e-18 to each sum.
 func impulse(ctx context.Context, cfg Config, k *kick, take func(u, y float64) (float64, float64)) error {
-	cfg.PointsPerTick, cfg.MaxPoints, cfg.Step, cfg.Progress, cfg.TailFrom = 1, 16, nil, nil, 0
+	if k.looked == nil {
+		cfg.PointsPerTick = 1
+	}
+	cfg.MaxPoints, cfg.Step, cfg.Progress, cfg.TailFrom, cfg.TailKeep = 16, nil, nil, 0, false
 	cfg.Ticks, cfg.Reference, cfg.Disturbances, cfg.Random = mostTicks, Zero(), nil, nil
 	cfg.Friction, cfg.Play = nil, nil
 	t := cfg.Tasks[0]
@@ -64,7 +67,11 @@ func impulse(ctx context.Context, cfg Config, k *kick, take func(u, y float64) (
 		if err != nil {
 			return err
 		}
+		if in.tick {
+			k.at = 0
+		}
 		e.act(in)
+		k.look(e.y.value(e.z))
 		if in.length == 0 || !(sum[0]+sum[1] < 1e200) {
 			return ErrNoVariance
 		}
@@ -92,7 +99,17 @@ func impulse(ctx context.Context, cfg Config, k *kick, take func(u, y float64) (
 type kick struct {
 	value, after float64
 	effort       bool
-	took         func(u, y float64)
+	took         func(u, y float64)     // at every sample
+	looked       func(i int, y float64) // at every point, number i of its tick; nil: not wanted
+	at           int
+}
+
+// look tells of a point.
+func (k *kick) look(y float64) {
+	if k != nil && k.looked != nil {
+		k.looked(k.at, y)
+		k.at++
+	}
 }
 
 // measured and given are what to add at this sample.

@@ -75,6 +75,13 @@ func newSensor(s *Sensor, seed, stream uint64, period float64) sensorState {
 	return out
 }
 
+// pass is a sample that is not taken: noise with a memory goes on.
+func (s *sensorState) pass() {
+	for i := range s.random {
+		s.random[i].next()
+	}
+}
+
 // measure is the number that the firmware gets at sample k, at the instant now, when the output is x and
 // the position of the encoder, if any, is at; period is what the firmware takes for the time since its last sample.
 func (s *sensorState) measure(x, at, now, period float64, k int64) float64 {

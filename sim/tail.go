@@ -5,7 +5,7 @@ import "math"
 // Tail is about the last part of a run, once transients are gone: at the ticks of the first task, and the
 // extremes between them too.
 type Tail struct {
-	Ticks                       int64
+	Ticks                       int64   // 0: none of the figures at the ticks applies
 	MeanError, ErrorRMS         float64 // of r − y at the ticks; rms about the mean
 	WorstError                  float64 // largest magnitude of r − y
 	ErrorSpan                   float64 // highest less lowest r − y
@@ -68,8 +68,11 @@ func (t *tail) tick(u, y, err float64) {
 }
 
 func (t *tail) figures() Tail {
-	if t == nil || t.n == 0 {
+	if t == nil || math.IsInf(t.low, 1) {
 		return Tail{}
+	}
+	if t.n == 0 { // no tick of the task ran in it
+		return Tail{WorstError: t.worst, ErrorSpan: t.most - t.least, Swing: t.high - t.low}
 	}
 	return Tail{
 		Ticks: t.n, MeanError: t.err.mean, ErrorRMS: t.err.rms(), WorstError: t.worst, ErrorSpan: math.Max(0, t.most-t.least), Swing: math.Max(0, t.high-t.low),

@@ -121,7 +121,7 @@ func (b *AsBuilt) noise(ctx context.Context, l *loop.Loop, sampled *analyzed, h 
 	cfg.PointsPerTick, cfg.TailFrom = 1, int64(math.Round(settle/T))
 	t, err := sim.Run(ctx, cfg)
 	b.noiseAway = err == nil && t.Diverged
-	if err == nil && !t.Diverged {
+	if err == nil && !t.Diverged && t.Tail.Ticks > 0 {
 		b.NoiseTicks, b.Effort, b.Output = t.Tail.Ticks, Fig(t.Tail.EffortRMS), Fig(t.Tail.ErrorRMS)
 	}
 	return err
@@ -154,7 +154,10 @@ func builtSteady(ctx context.Context, l *loop.Loop, in loop.Input, sampled *anal
 		out.PeakError, out.RMSError = Fig(t.PeakError), Fig(t.RMSError)
 		return out, nil
 	}
-	out.TrackingError, out.WorstError, out.Swing = Fig(t.Tail.MeanError), Fig(t.Tail.WorstError), Fig(t.Tail.ErrorRMS)
+	out.WorstError = Fig(t.Tail.WorstError)
+	if t.Tail.Ticks > 0 {
+		out.TrackingError, out.Swing = Fig(t.Tail.MeanError), Fig(t.Tail.ErrorRMS)
+	}
 	if in.Kind != "sine" {
 		out.Ripple = Fig(t.Tail.ErrorSpan)
 	}

@@ -108,7 +108,7 @@ func restFor(ctx context.Context, l *loop.Loop, sampled *analyzed, ticks float64
 	if err != nil {
 		return out, false, err
 	}
-	cfg.Reference, cfg.Disturbances, cfg.PointsPerTick = r, nil, 1
+	cfg.Reference, cfg.Disturbances, cfg.PointsPerTick = r, nil, swingPoints(l)
 	cfg.TailFrom, cfg.TailKeep = max(1, cfg.Ticks-cfg.Ticks/3), true
 	t, err := sim.Run(ctx, cfg)
 	if err != nil || t.Diverged {
@@ -116,6 +116,9 @@ func restFor(ctx context.Context, l *loop.Loop, sampled *analyzed, ticks float64
 	}
 	out = restRun{mean: t.Tail.MeanError - sampled.tracking[0]*place, swing: t.Tail.Swing, effort: t.Tail.HighestEffort - t.Tail.LowestEffort}
 	period, early, late := cycleOf(t.Tail.Outputs, T)
+	if late > 3*early && out.swing > math.Abs(place) { // it grows, and the run is too short for that to end it
+		return restRun{away: true}, false, nil
+	}
 	moves := out.swing > stillSwing*math.Max(math.Abs(place), out.swing*1e-3)
 	// What is still dying out is no cycle: its swing falls.
 	out.cycles, out.period = moves && late > 0.7*early, period
@@ -123,6 +126,21 @@ func restFor(ctx context.Context, l *loop.Loop, sampled *analyzed, ticks float64
 	drifts := out.effort > stillSwing*math.Max(math.Abs(t.Tail.MeanEffort), 1e-300)
 	out.still = !drifts && !out.cycles
 	return out, drifts && !(out.cycles && period.OK), nil
+}
+
+// swingPoints is how many points of a tick show the swing of y between the ticks: two, and eight of each period of the fastest mode
+// of the plant, forty at most. At a rate that hides a mode nearly all of a swing lies between the ticks.
+func swingPoints(l *loop.Loop) int {
+	g, err := l.Plant.TF()
+	if err != nil {
+		return fewPoints
+	}
+	fastest := 0.0
+	for _, p := range g.Poles {
+		fastest = math.Max(fastest, math.Abs(p.Im.Float64()))
+	}
+	T, _ := l.Timing.Period.Float64()
+	return int(math.Min(manyPoints, math.Max(fewPoints, math.Ceil(8*fastest*T/(2*math.Pi)))))
 }
 
 // cycleOf is the mean time between the upward passings of the middle of y, given at every tick of T seconds, and the swings in
@@ -221,6 +239,7 @@ func cycleBound(ctx context.Context, l *loop.Loop, sampled *analyzed) (Figure, e
 	if err != nil {
 		return Figure{}, err
 	}
+	cfg.PointsPerTick = swingPoints(l)
 	g, err := sim.Peaks(ctx, cfg)
 	if errors.Is(err, sim.ErrNoVariance) {
 		return Figure{}, nil

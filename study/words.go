@@ -13,7 +13,7 @@ import (
 // wordFigures are the figures of the linear loop that follow from the words and the noise of the file.
 type wordFigures struct{ effort, output, stuck Figure }
 
-// noiseInputs are the variances of what is added to the measurement: white, and as the difference of white noise over
+// noiseInputs are the standard deviations of what is added to the measurement: white, and as the difference of white noise over
 // the period. A quantizer that is kept busy adds q²/12 (Widrow; IEEE Std 1241; from memory).
 func noiseInputs(l *loop.Loop) (white, differenced float64) {
 	s := l.Sensor
@@ -22,19 +22,19 @@ func noiseInputs(l *loop.Loop) (white, differenced float64) {
 		scale = steepest(l)
 	}
 	q := sim.Converter{Bits: s.Bits, Low: s.Range[0], High: s.Range[1], Step: s.Step}.Bin()
-	white = scale * scale * (s.Noise*s.Noise + q*q/12)
+	white = scale * math.Hypot(s.Noise, q/math.Sqrt(12))
 	for _, d := range l.Disturbances {
 		if d.Kind == "noise" && d.At == "sensor" && d.Band == nil {
-			white += d.Size * d.Size
+			white = math.Hypot(white, d.Size)
 		}
 	}
 	if e := s.Encoder; e != nil {
 		count := e.Count()
 		switch {
 		case !e.Velocity:
-			white += count * count / 12
+			white = math.Hypot(white, count/math.Sqrt(12))
 		case !e.ByTime:
-			differenced = count * count / 12
+			differenced = count / math.Sqrt(12)
 		}
 	}
 	return white, differenced
@@ -64,10 +64,10 @@ func words(ctx context.Context, l *loop.Loop, a *analyzed) (wordFigures, error) 
 	}
 	effort, output := 0.0, 0.0
 	for _, x := range []struct {
-		variance   float64
+		deviation  float64
 		difference bool
 	}{{white, false}, {differenced, true}} {
-		if x.variance == 0 {
+		if x.deviation == 0 {
 			continue
 		}
 		g, err := sim.Noise(ctx, cfg, x.difference)
@@ -77,10 +77,10 @@ func words(ctx context.Context, l *loop.Loop, a *analyzed) (wordFigures, error) 
 		if err != nil {
 			return out, err
 		}
-		effort += g.Effort * g.Effort * x.variance
-		output += g.Output * g.Output * x.variance
+		effort = math.Hypot(effort, g.Effort*x.deviation)
+		output = math.Hypot(output, g.Output*x.deviation)
 	}
-	out.effort, out.output = Fig(math.Sqrt(effort)), Fig(math.Sqrt(output))
+	out.effort, out.output = Fig(effort), Fig(output)
 	return out, nil
 }
 
@@ -89,7 +89,7 @@ func words(ctx context.Context, l *loop.Loop, a *analyzed) (wordFigures, error) 
 //	|y/d|·(half a code of the effort, dead zone, play, static friction) + |y/m|·(half a code of the sensor + |offset| + table error)
 //
 // the two gains at rest being those of the linear loop from the plant's input and from the measurement to the output; play at
-// the output adds half its gap. An integrator in the controller makes the first gain 0: then the loop hunts instead.
+// the output adds half its gap times 1/(1 + L), which an integrator anywhere makes 0. An integrator in the controller makes the first gain 0: then the loop hunts instead.
 // Not applicable where the file declares nothing of that kind, or friction that gives no bound.
 func stuckError(l *loop.Loop, a *analyzed) Figure {
 	s := l.Sensor
@@ -122,16 +122,16 @@ func stuckError(l *loop.Loop, a *analyzed) Figure {
 	through := 0.0
 	if h.c != nil && h.order == 0 {
 		hc, _ := h.c.Float64()
-		through = atRestGain(a) / math.Abs(hc)
+		through = math.Abs(atRestGain(a) / hc)
 	}
 	total := math.Abs(load)*effort + through*measured
 	if b := l.Backlash; b != nil && b.AtOutput {
-		total += b.Gap / 2
+		total += math.Abs(1-atRestGain(a)) * b.Gap / 2
 	}
 	return Fig(total)
 }
 
-// atRestGain is |L/(1 + L)| at rest.
+// atRestGain is L/(1 + L) at rest.
 func atRestGain(a *analyzed) float64 {
 	order, c := lti.Leading(a.block.open)
 	lead := c.Float64()
@@ -141,7 +141,7 @@ func atRestGain(a *analyzed) float64 {
 	case order > 0:
 		return 0
 	}
-	return math.Abs(lead / (1 + lead))
+	return lead / (1 + lead)
 }
 
 // addWords fills the figures of words and noise.
