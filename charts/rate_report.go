@@ -1,7 +1,6 @@
 package charts
 
 import (
-	"bytes"
 	_ "embed"
 	"errors"
 	"fmt"
@@ -47,13 +46,7 @@ func RateReport(w io.Writer, r *study.Rate) error {
 	if err != nil {
 		return fmt.Errorf("report: %w", err)
 	}
-	var b bytes.Buffer
-	b.Grow(v.size())
-	if err := ratePage.Execute(&b, v); err != nil {
-		return fmt.Errorf("report: %w", err)
-	}
-	_, err = w.Write(b.Bytes())
-	return err
+	return writePage(w, ratePage, v)
 }
 
 func newRateView(r *study.Rate) (*rateView, error) {

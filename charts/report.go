@@ -101,12 +101,20 @@ func Report(w io.Writer, c *study.Compare) error {
 	if err != nil {
 		return fmt.Errorf("report: %w", err)
 	}
+	return writePage(w, page, v)
+}
+
+// sized is what a page shows, with a guess of how long the page gets.
+type sized interface{ size() int }
+
+// writePage writes a page whole, or nothing when it fails.
+func writePage(w io.Writer, page *template.Template, v sized) error {
 	var b bytes.Buffer
 	b.Grow(v.size())
 	if err := page.Execute(&b, v); err != nil {
 		return fmt.Errorf("report: %w", err)
 	}
-	_, err = w.Write(b.Bytes())
+	_, err := w.Write(b.Bytes())
 	return err
 }
 

@@ -1,7 +1,6 @@
 package charts
 
 import (
-	"bytes"
 	_ "embed"
 	"errors"
 	"fmt"
@@ -42,13 +41,7 @@ func SpreadReport(w io.Writer, r *study.Spread) error {
 	if err != nil {
 		return fmt.Errorf("report: %w", err)
 	}
-	var b bytes.Buffer
-	b.Grow(v.size())
-	if err := spreadPage.Execute(&b, v); err != nil {
-		return fmt.Errorf("report: %w", err)
-	}
-	_, err = w.Write(b.Bytes())
-	return err
+	return writePage(w, spreadPage, v)
 }
 
 func newSpreadView(r *study.Spread) (*spreadView, error) {

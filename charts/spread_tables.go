@@ -135,20 +135,29 @@ func caseCells(path string, w *study.WorstCase) []gridCell {
 func (t spreadTables) worst() grid {
 	g := grid{ID: "worst-cases", Caption: "Worst cases of each requirement", Heads: heads("requirement", "case", "#number", "#figure", "unit", "symbols")}
 	for i, q := range t.r.Requirements {
-		name := q.Requirement
-		for _, c := range []struct {
-			what, path string
-			at         *study.WorstCase
-		}{{"trial", "worst_trial.", q.Worst}, {"corner", "worst_corner.", q.Corner}} {
-			if c.at == nil {
-				continue
-			}
-			cells := caseCells(fmt.Sprintf("requirements.%d.%s", i, c.path), c.at)
-			g.Rows = append(g.Rows, gridRow{Cells: []gridCell{text(name), text(c.what), cells[0], cells[1], {Class: "unit", Parts: []figure{word(q.Unit)}}, cells[2]}})
-			name = ""
-		}
+		g.Rows = append(g.Rows, caseRows(q.Requirement, q.Unit, fmt.Sprintf("requirements.%d.", i), []spreadCase{
+			{"trial", "worst_trial.", q.Worst}, {"corner", "worst_corner.", q.Corner}})...)
 	}
 	return g
+}
+
+// spreadCase is a trial or a corner that is worth a row.
+type spreadCase struct {
+	what, path string
+	at         *study.WorstCase // nil: there is none
+}
+
+// caseRows are the rows of the cases that there are; the name stands in the first.
+func caseRows(name, unit, path string, cases []spreadCase) (rows []gridRow) {
+	for _, c := range cases {
+		if c.at == nil {
+			continue
+		}
+		cells := caseCells(path+c.path, c.at)
+		rows = append(rows, gridRow{Cells: []gridCell{text(name), text(c.what), cells[0], cells[1], {Class: "unit", Parts: []figure{word(unit)}}, cells[2]}})
+		name = ""
+	}
+	return rows
 }
 
 // metrics is the table of distributions.
@@ -178,18 +187,9 @@ func (t spreadTables) quantiles() grid {
 func (t spreadTables) extremes() grid {
 	g := grid{ID: "extremes-table", Caption: "Lowest and highest figures", Heads: heads("metric", "case", "#number", "#figure", "unit", "symbols")}
 	for i, m := range t.r.Metrics {
-		name := words(m.Name)
-		for _, c := range []struct {
-			what, path string
-			at         *study.WorstCase
-		}{{"lowest, trial", "lowest_trial.", m.Lowest}, {"highest, trial", "highest_trial.", m.Top}, {"lowest, corner", "lowest_corner.", m.LowCor}, {"highest, corner", "highest_corner.", m.TopCor}} {
-			if c.at == nil {
-				continue
-			}
-			cells := caseCells(fmt.Sprintf("metrics.%d.%s", i, c.path), c.at)
-			g.Rows = append(g.Rows, gridRow{Cells: []gridCell{text(name), text(c.what), cells[0], cells[1], {Class: "unit", Parts: []figure{word(m.Unit)}}, cells[2]}})
-			name = ""
-		}
+		g.Rows = append(g.Rows, caseRows(words(m.Name), m.Unit, fmt.Sprintf("metrics.%d.", i), []spreadCase{
+			{"lowest, trial", "lowest_trial.", m.Lowest}, {"highest, trial", "highest_trial.", m.Top},
+			{"lowest, corner", "lowest_corner.", m.LowCor}, {"highest, corner", "highest_corner.", m.TopCor}})...)
 	}
 	return g
 }

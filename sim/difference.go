@@ -31,10 +31,7 @@ func (s *blockState) output(e float64) float64 {
 		}
 	}
 	s.in = e
-	sum := s.chain.d * e
-	for j, c := range s.chain.c {
-		sum += c * s.x[j]
-	}
+	sum := s.chain.output(s.x, e)
 	if len(s.i) > 0 {
 		sum += s.i[0]
 	}
@@ -45,13 +42,8 @@ func (s *blockState) output(e float64) float64 {
 //
 //	x ← x + T·(A·x + B·in)
 func (s *blockState) next(period float64) {
-	n := s.chain.n
 	for i := range s.dx {
-		sum := s.chain.b[i] * s.in
-		for j, a := range s.chain.a[i*n : (i+1)*n] {
-			sum += a * s.x[j]
-		}
-		s.dx[i] = period * sum
+		s.dx[i] = period * s.chain.rate(i, s.x, s.in)
 	}
 	accumulate(s.x, s.carry, s.dx)
 	for i, v := range s.x {

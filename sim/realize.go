@@ -135,6 +135,24 @@ func (m *chain) check() error {
 	return nil
 }
 
+// output is C·x + D·in.
+func (m *chain) output(x []float64, in float64) float64 {
+	sum := m.d * in
+	for j, c := range m.c {
+		sum += c * x[j]
+	}
+	return sum
+}
+
+// rate is row i of A·x + B·in.
+func (m *chain) rate(i int, x []float64, in float64) float64 {
+	sum := m.b[i] * in
+	for j, a := range m.a[i*m.n : (i+1)*m.n] {
+		sum += a * x[j]
+	}
+	return sum
+}
+
 // after returns the chain that feeds the output of m into q; its states are those of m
 // and then those of q.
 func (m *chain) after(q *chain) *chain {

@@ -123,10 +123,7 @@ func (s *timedState) output(in, period float64) float64 {
 		s.iRate[j] = rate
 	}
 	s.withheld = false
-	out := s.chain.d * in
-	for j, c := range s.chain.c {
-		out += c * s.x[j]
-	}
+	out := s.chain.output(s.x, in)
 	if len(s.i) > 0 {
 		out += s.i[0]
 	}
@@ -147,11 +144,7 @@ func (s *timedState) states(in, h float64) {
 	}
 	copy(s.x, s.rest)
 	for i := range s.rate {
-		sum := s.chain.b[i] * in
-		for j, a := range s.chain.a[i*n : (i+1)*n] {
-			sum += a * s.x[j]
-		}
-		s.rate[i] = sum
+		s.rate[i] = s.chain.rate(i, s.x, in)
 	}
 }
 
