@@ -208,7 +208,7 @@ func TestReportInTheBrowser(t *testing.T) {
 			for path, f := range eval[map[string][3]string](t, b, figuresScript) {
 				have[path] = shown{f[0], f[1], f[2]}
 			}
-			checkFigures(t, have, c.result)
+			checkFigures(t, have, c.result, notFigure)
 			if w := eval[int64](t, b, `document.scrollingElement.scrollWidth`); w > c.width {
 				t.Errorf("the page is %d pixels wide on a screen of %d", w, c.width)
 			}

@@ -76,33 +76,11 @@ func notRateFigure(path string, v any) bool {
 	return path == "pick.timer.wanted_hz" || strings.HasPrefix(path, "searched_hz.") || strings.HasPrefix(path, "maps.") && strings.Contains(path, ".windows.")
 }
 
-func checkRateFigures(t *testing.T, have map[string]shown, r *study.Rate) {
-	t.Helper()
-	n := 0
-	for path, want := range leaves(t, r) {
-		if notRateFigure(path, want) {
-			continue
-		}
-		n++
-		got, ok := have[path]
-		if !ok {
-			t.Errorf("%s (%v) is not in the page", path, want)
-			continue
-		}
-		if err := sameFigure(got, want); err != nil {
-			t.Errorf("%s: %v", path, err)
-		}
-	}
-	if n < 100 {
-		t.Errorf("only %d figures compared", n)
-	}
-}
-
 func TestRateReportHoldsTheResult(t *testing.T) {
 	for name, text := range map[string]string{"a window": turntable, "no window": contradicting()} {
 		r := ratesOf(t, text)
 		page := renderRate(t, r)
-		checkRateFigures(t, figuresIn(page), r)
+		checkFigures(t, figuresIn(page), r, notRateFigure)
 		if page != renderRate(t, r) {
 			t.Errorf("%s: the same result gives other bytes", name)
 		}
@@ -152,7 +130,7 @@ func TestRateReportInTheBrowser(t *testing.T) {
 				for path, f := range eval[map[string][3]string](t, b, figuresScript) {
 					have[path] = shown{f[0], f[1], f[2]}
 				}
-				checkRateFigures(t, have, r)
+				checkFigures(t, have, r, notRateFigure)
 				if w := eval[int64](t, b, `document.scrollingElement.scrollWidth`); w > width {
 					t.Errorf("the page is %d pixels wide on a screen of %d", w, width)
 				}

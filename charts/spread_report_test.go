@@ -87,32 +87,10 @@ func notSpreadFigure(path string, v any) bool {
 	return false
 }
 
-func checkSpreadFigures(t *testing.T, have map[string]shown, r *study.Spread) {
-	t.Helper()
-	n := 0
-	for path, want := range leaves(t, r) {
-		if notSpreadFigure(path, want) {
-			continue
-		}
-		n++
-		got, ok := have[path]
-		if !ok {
-			t.Errorf("%s (%v) is not in the page", path, want)
-			continue
-		}
-		if err := sameFigure(got, want); err != nil {
-			t.Errorf("%s: %v", path, err)
-		}
-	}
-	if n < 100 {
-		t.Errorf("only %d figures compared", n)
-	}
-}
-
 func TestSpreadReportHoldsTheResult(t *testing.T) {
 	for name, r := range spreadCases(t) {
 		page := renderSpread(t, r)
-		checkSpreadFigures(t, figuresIn(page), r)
+		checkFigures(t, figuresIn(page), r, notSpreadFigure)
 		if page != renderSpread(t, r) {
 			t.Errorf("%s: the same result gives other bytes", name)
 		}
@@ -168,7 +146,7 @@ func TestSpreadReportInTheBrowser(t *testing.T) {
 				for path, f := range eval[map[string][3]string](t, b, figuresScript) {
 					have[path] = shown{f[0], f[1], f[2]}
 				}
-				checkSpreadFigures(t, have, r)
+				checkFigures(t, have, r, notSpreadFigure)
 				if w := eval[int64](t, b, `document.scrollingElement.scrollWidth`); w > width {
 					t.Errorf("the page is %d pixels wide on a screen of %d", w, width)
 				}

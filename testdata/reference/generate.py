@@ -68,6 +68,7 @@ from mpmath import mp
 sys.dont_write_bytecode = True  # leave no files beside the sources
 
 import analysis  # noqa: E402
+import kept  # noqa: E402
 import knownvalues  # noqa: E402
 import loops  # noqa: E402
 
@@ -127,20 +128,9 @@ def entries():
             yield name, spec, timing
 
 
-def agree(a, b, path=""):
-    """Every number of a equals that of b to AGREE digits; structure exactly."""
-    if isinstance(a, dict):
-        assert a.keys() == b.keys(), path
-        for k in a:
-            agree(a[k], b[k], path + "/" + k)
-    elif isinstance(a, (list, tuple)):
-        assert len(a) == len(b), path
-        for i, (x, y) in enumerate(zip(a, b)):
-            agree(x, y, path + "/%d" % i)
-    elif isinstance(a, mp.mpf):
-        assert a == b or abs(a - b) <= max(abs(b), ZERO) * mp.mpf(10) ** -AGREE, "%s: %s, %s" % (path, mp.nstr(a, 45), mp.nstr(b, 45))
-    else:
-        assert a == b, "%s: %r, %r" % (path, a, b)
+def close(a, b):
+    """Equal to AGREE digits."""
+    return a == b or abs(a - b) <= max(abs(b), ZERO) * mp.mpf(10) ** -AGREE
 
 
 def written(v):
@@ -162,7 +152,7 @@ def entry(name, spec, timing, both):
     loop, low = derive(spec, timing, LOW)
     if both:
         with mp.workdps(LOW):
-            agree(low, derive(spec, timing, HIGH)[1], name)
+            kept.agree(low, derive(spec, timing, HIGH)[1], name, close)
     return {
         "name": name, "loop": loop_text(name, spec, timing), "order": loop.order,
         "period_s": str(loop.T), "loop_delay_s": str(loop.delay), "dead_time_s": str(loop.dead),

@@ -36,17 +36,22 @@ def num(text):
     return mpf(top) / mpf(bottom or "1")
 
 
-def agree(a, b, path):
+def close(a, b):
+    return abs(a - b) <= AGREE * max(1, abs(b))
+
+
+def agree(a, b, path="", close=close):
+    """Every number of a is close to that of b; structure, words and whole numbers exactly."""
     if isinstance(a, dict):
         assert a.keys() == b.keys(), path
         for k in a:
-            agree(a[k], b[k], path + "/" + k)
+            agree(a[k], b[k], path + "/" + k, close)
     elif isinstance(a, (list, tuple)):
         assert len(a) == len(b), path
         for i, (x, y) in enumerate(zip(a, b)):
-            agree(x, y, path + "/%d" % i)
+            agree(x, y, path + "/%d" % i, close)
     elif isinstance(a, mpf):
-        assert abs(a - b) <= AGREE * max(1, abs(b)), "%s: %s, %s" % (path, mp.nstr(a, 40), mp.nstr(b, 40))
+        assert close(a, b), "%s: %s, %s" % (path, mp.nstr(a, 45), mp.nstr(b, 45))
     else:
         assert type(a) is type(b) and a == b, "%s: %r, %r" % (path, a, b)
 
