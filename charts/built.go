@@ -131,7 +131,7 @@ func (t tables) built() []builtGroup {
 		item("sensor_table_error", "error of the sensor's table", u.Output, b.TableError),
 	}
 	if b.Rest == nil {
-		runs = append(runs, builtItem{"at rest: nothing quantizes or sticks", "", figure{Path: "as_built.rest", Value: "null", Text: notApplicable}})
+		runs = append(runs, builtItem{"at rest: nothing sticks, or it takes too long", "", figure{Path: "as_built.rest", Value: "null", Text: notApplicable}})
 	}
 	out := []builtGroup{{"The simulation", runs}}
 	if r := b.Rest; r != nil {

@@ -16,10 +16,11 @@ type AsBuilt struct {
 	NoiseTicks int64         `json:"noise_ticks"`  // over which effort_noise and output_noise were taken
 	Effort     Figure        `json:"effort_noise"` // rms about the mean, holding the step's end
 	Output     Figure        `json:"output_noise"`
-	Rest       *Rest         `json:"rest"` // null when nothing in the loop quantizes or sticks
+	Rest       *Rest         `json:"rest"` // null when nothing in the loop quantizes or sticks, or when its rest is too far off to simulate
 	TableError Figure        `json:"sensor_table_error"`
 
 	stepAway, noiseAway bool
+	stepCut             bool // the step is longer than it was simulated
 	away                bool // some run grew without bound: such a loop meets nothing
 }
 
@@ -41,8 +42,11 @@ type BuiltSteady struct {
 const (
 	// builtLonger: the loop as built is run this many times longer than the others, and looked at in the last third.
 	builtLonger = 3
-	// mostTicksBuilt bounds its runs: with friction or jitter a tick takes microseconds.
-	mostTicksBuilt = 60_000
+	// builtLeast times the settling of the slowest mode must fit into such a run, e^−12 of its transients: else it says nothing of what is left
+	// once they are gone.
+	builtLeast = 2
+	// mostTicksBuilt bounds the runs: with friction or jitter a tick takes microseconds.
+	mostTicksBuilt = 200_000
 	// noiseTicks are wanted for the rms of noise: its own relative error is then 1 % or so.
 	noiseTicks = 20_000
 )
@@ -58,8 +62,14 @@ func built(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyze
 	}
 	out := &AsBuilt{Seed: o.seed(), Steady: make([]BuiltSteady, len(l.Inputs))}
 	h := horizon(l, loop.Input{Kind: "step", Size: 1}, sampled)
-	if ticks := builtLonger * h / c.PeriodS; ticks > mostTicksBuilt*(1+1e-9) {
-		c.warn("as_built_cut", "the loop as built is simulated for %d ticks, and %.3g would be wanted for its transients to die out: its steady figures still hold a part of them; a lower rate would do for so slow a loop", mostTicksBuilt, ticks)
+	for _, x := range []struct {
+		what string
+		most float64
+		asks bool
+	}{{"at rest", mostTicksRest, quantizes(l)}, {"in steady state", mostTicksBuilt, true}} {
+		if ticks := builtLeast * h / c.PeriodS; x.asks && ticks > x.most {
+			c.warn("as_built_cut", "the loop as built takes more than %.3g ticks until its transients are gone, longer than it is simulated (%.0f): it has no figures %s; a lower rate would do for so slow a loop", ticks, x.most, x.what)
+		}
 	}
 	err := parallel(len(l.Inputs)+3, func(i int) (err error) {
 		switch k := i - len(l.Inputs); k {
@@ -68,7 +78,9 @@ func built(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyze
 		case 1:
 			return out.noise(ctx, l, sampled, h)
 		case 2:
-			out.Rest, err = restOf(ctx, l, sampled, h)
+			if quantizes(l) && builtLeast*h <= mostTicksRest*c.PeriodS {
+				out.Rest, err = restOf(ctx, l, sampled, h)
+			}
 			return err
 		}
 		out.Steady[i], err = builtSteady(ctx, l, l.Inputs[i], sampled, o.seed()+uint64(i)+1)
@@ -99,7 +111,9 @@ func built(ctx context.Context, l *loop.Loop, c *Compare, cont, sampled *analyze
 // step fills the step figures.
 func (b *AsBuilt) step(ctx context.Context, l *loop.Loop, cont, sampled *analyzed) error {
 	in, length := stepRun(l, cont, sampled)
-	cfg, err := builtConfig(l, sampled.block, in, cut(l, length, mostTicksBuilt), b.Seed, asDeclared)
+	shown := cut(l, length, mostTicksBuilt)
+	b.stepCut = shown < length*(1-1e-9)
+	cfg, err := builtConfig(l, sampled.block, in, shown, b.Seed, asDeclared)
 	if err != nil {
 		return err
 	}
@@ -113,7 +127,10 @@ func (b *AsBuilt) step(ctx context.Context, l *loop.Loop, cont, sampled *analyze
 func (b *AsBuilt) noise(ctx context.Context, l *loop.Loop, sampled *analyzed, h float64) error {
 	in, _ := stepRun(l, nil, sampled)
 	T := sampled.seconds()
-	settle := cut(l, 2*h, mostTicksBuilt/2)
+	settle := builtLeast * h
+	if settle > mostTicksBuilt*T {
+		return nil
+	}
 	cfg, err := builtConfig(l, sampled.block, in, settle+noiseTicks*T, b.Seed, asDeclared)
 	if err != nil {
 		return err
@@ -132,7 +149,11 @@ func builtSteady(ctx context.Context, l *loop.Loop, in loop.Input, sampled *anal
 	out := BuiltSteady{Input: in.Kind, Size: blankSteady(in).Size}
 	length, whole := endLength(l, in)
 	if !whole {
-		length = builtLonger * horizon(l, in, sampled)
+		h := horizon(l, in, sampled)
+		if builtLeast*h > mostTicksBuilt*sampled.seconds() {
+			return out, nil
+		}
+		length = builtLonger * h
 		if seen := sensorSees(l, in); seen < length/builtLonger {
 			return out, nil // out of the sensor's range before transients are gone
 		} else {

@@ -88,7 +88,7 @@ func failsAsBuilt(c *Compare, name string) bool {
 	case b.away:
 		return true
 	case name == "overshoot" || name == "settling_time":
-		return c.Sampled.Transient.SettlingTimeS.OK && !b.Transient.SettlingTimeS.OK
+		return !b.stepCut && c.Sampled.Transient.SettlingTimeS.OK && !b.Transient.SettlingTimeS.OK
 	}
 	return false
 }

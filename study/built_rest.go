@@ -26,15 +26,12 @@ const (
 	restStarts = 12
 	// stillSwing: a swing below this part of the reference is rounding, not a limit cycle.
 	stillSwing = 1e-9
-	// restTicks are looked at at least.
-	restTicks = 512
+	// restTicks are looked at at least, mostTicksRest run at most.
+	restTicks, mostTicksRest = 512, 60_000
 )
 
-// restOf searches for limit cycles; nil when nothing quantizes or sticks.
+// restOf searches for limit cycles.
 func restOf(ctx context.Context, l *loop.Loop, sampled *analyzed, h float64) (*Rest, error) {
-	if !quantizes(l) {
-		return nil, nil
-	}
 	runs := make([]restRun, restStarts)
 	err := parallel(restStarts, func(i int) (err error) {
 		runs[i], err = rest(ctx, l, sampled, h, i)
@@ -80,13 +77,13 @@ type restRun struct {
 // neither stands still nor has passed through a whole cycle is made longer.
 func rest(ctx context.Context, l *loop.Loop, sampled *analyzed, h float64, start int) (restRun, error) {
 	T := sampled.seconds()
-	ticks := math.Min(math.Max(3*h/T, 3*restTicks), mostTicksBuilt/3)
+	ticks := math.Min(math.Max(3*h/T, 3*restTicks), mostTicksRest/3)
 	for {
 		r, going, err := restFor(ctx, l, sampled, math.Floor(ticks), start)
-		if err != nil || !going || ticks >= mostTicksBuilt {
+		if err != nil || !going || ticks >= mostTicksRest {
 			return r, err
 		}
-		ticks = math.Min(5*ticks, mostTicksBuilt)
+		ticks = math.Min(5*ticks, mostTicksRest)
 	}
 }
 

@@ -68,7 +68,7 @@ func noFigure(l *loop.Loop, c *Compare, name string) string {
 	case "stuck_error":
 		return "the file declares nothing that could hold the loop off its place, or friction that no bound is known for"
 	case "limit_cycle":
-		return "the file declares nothing that quantizes or sticks, or the loop hunts more slowly than the simulation is long"
+		return "the file declares nothing that quantizes or sticks, or the loop settles or hunts more slowly than the simulation is long"
 	case "recovery_time":
 		return "the actuator has no limits, or the response does not settle"
 	}
