@@ -207,3 +207,25 @@ func TestMechanismOfNothing(t *testing.T) {
 	}
 	near(t, "rms", got.RMSError, want.RMSError, 1e-12)
 }
+
+// Step figures of a loop with friction are those of its own curve: a mass of 1 against 0.5 under held efforts, by hand. y = t²/2 up
+// to t = 1, then it slows down by 0.9 and stands at 1 + 10/9, y = 1/2 + 1/1.8, held by −0.4.
+func TestStepFiguresWithFriction(t *testing.T) {
+	cfg := scripted(t, mass(t), "1", []float64{1.5, -0.4, -0.4, 0}, 4)
+	cfg.Friction = &Friction{Coulomb: 0.5, Static: 0.5}
+	final := 0.5 + 1/(2*0.9)
+	f, _, err := StepFigures(context.Background(), cfg, StepSpec{Final: final})
+	if err != nil {
+		t.Fatal(err)
+	}
+	up := func(level float64) float64 { // y = level·final on the first piece, or on the second
+		y := level * final
+		if y <= 0.5 {
+			return math.Sqrt(2 * y)
+		}
+		return 1 + (1-math.Sqrt(1-1.8*(y-0.5)))/0.9
+	}
+	near(t, "rise", f.RiseTime.Value, up(0.9)-up(0.1), 1e-13)
+	near(t, "settled", f.SettlingTime.Value, up(0.98), 1e-12)
+	near(t, "overshoot", f.OvershootPercent.Value, 0, 0)
+}
